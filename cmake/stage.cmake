@@ -1,0 +1,16 @@
+# foundleft_stage(NAME STAGES a b ... LIBRARIES x y ...): a static library foundleft_NAME from src/NAME/*.c.
+# A stage links only what it may call, so that a forbidden call fails to link.
+function(foundleft_stage name)
+	cmake_parse_arguments(ARG "" "" "STAGES;LIBRARIES" ${ARGN})
+	file(GLOB sources CONFIGURE_DEPENDS ${PROJECT_SOURCE_DIR}/src/${name}/*.c)
+	list(FILTER sources EXCLUDE REGEX "/main\\.c$")
+	if(NOT sources)
+		return()
+	endif()
+	add_library(foundleft_${name} STATIC ${sources})
+	target_include_directories(foundleft_${name} PUBLIC ${PROJECT_SOURCE_DIR}/include)
+	foreach(stage IN LISTS ARG_STAGES)
+		target_link_libraries(foundleft_${name} PUBLIC foundleft_${stage})
+	endforeach()
+	target_link_libraries(foundleft_${name} PUBLIC ${ARG_LIBRARIES})
+endfunction()
