@@ -1,0 +1,138 @@
+/* foundleft/procedure.h - a procedure: what is done, at which points, how often, within which band, by which rule.
+ *
+ * SPDX-License-Identifier: GPL-3.0-or-later
+ *
+ * Procedures are templates: YAML files that people edit (templates/, or a bench's own). Everything in an fl_procedure
+ * is borrowed from its arena. Values are in the unit that the field name says.
+ */
+#ifndef FOUNDLEFT_PROCEDURE_H
+#define FOUNDLEFT_PROCEDURE_H
+
+#include "foundleft/base.h"
+
+typedef enum fl_medium {
+	FL_MEDIUM_OIL,     /* reference oils flow through the capillary */
+	FL_MEDIUM_PRESSURE /* a differential pressure from a pressure standard is injected into the transmitter alone */
+} fl_medium;
+
+/* How a result is compared with its tolerance (ILAC-G8:09/2019). */
+typedef enum fl_rule {
+	FL_RULE_NONE,       /* no rule agreed: no verdict word anywhere */
+	FL_RULE_SIMPLE,     /* simple acceptance: |e| <= T */
+	FL_RULE_GUARDED,    /* guard band w = U: |e| <= T - U */
+	FL_RULE_FOUR_STATES /* pass, conditional pass, conditional fail, fail with w = U */
+} fl_rule;
+
+typedef enum fl_band_basis {
+	FL_BAND_NONE,
+	FL_BAND_PERCENT_SPAN,
+	FL_BAND_PERCENT_READING,
+	FL_BAND_DIAL_UNITS
+} fl_band_basis;
+
+/* A symmetric band about the ideal value. */
+typedef struct fl_band {
+	fl_band_basis basis;
+	double half_width; /* in the unit of the basis */
+} fl_band;
+
+typedef enum fl_linearity { FL_LINEARITY_INDEPENDENT, FL_LINEARITY_TERMINAL, FL_LINEARITY_ZERO_BASED } fl_linearity;
+
+/* One place on the scale where the instrument is tested. */
+typedef struct fl_plan_point {
+	double position_pct_span;
+	double oil_low_pct_span, oil_high_pct_span; /* an oil is suitable for the point between these */
+} fl_plan_point;
+
+typedef enum fl_ask {
+	FL_ASK_CONFIRM, /* yes or no; "no" stops the step until it is yes, unless `may_decline` */
+	FL_ASK_AMOUNT,  /* a number with unit */
+	FL_ASK_TEXT
+} fl_ask;
+
+/* A question of the procedure: a safety gate, a condition, a restoring step. */
+typedef struct fl_question {
+	const char *id;      /* unique in the procedure: letters, digits, hyphen */
+	const char *ask;     /* the question, one line */
+	const char *caution; /* the usual caution, NULL if none */
+	fl_ask kind;
+	fl_unit unit;                         /* FL_ASK_AMOUNT */
+	double possible_low, possible_high;   /* outside: refused. In `unit`; -INFINITY, INFINITY if open */
+	double plausible_low, plausible_high; /* outside: asked again */
+	bool required;                        /* an empty answer is refused */
+	bool may_decline;                     /* "no", with a reason, is recorded and printed as unfinished */
+} fl_question;
+
+/* When a reading counts as settled. */
+typedef struct fl_settle {
+	int readings;           /* judged over at least this many of the last ones (watch values and readings) */
+	double window_s;        /* that span at least this time, where times are known */
+	double drift_pct_span;  /* slope * span of time must stay within this */
+	double temp_k_per_min;  /* and the temperature within this */
+	bool watch_required;    /* the first reading of a point needs a settled watch before it */
+	int identical_readings; /* so many identical to the last digit raise a question; 0: never */
+} fl_settle;
+
+typedef enum fl_distribution {
+	FL_DIST_NORMAL,
+	FL_DIST_RECTANGULAR,
+	FL_DIST_TRIANGULAR,
+	FL_DIST_STUDENT
+} fl_distribution;
+
+/* A contribution that the procedure adds to every point's budget. */
+typedef struct fl_extra_term {
+	const char *name;
+	double value;    /* half width, or U with k for a normal distribution */
+	double coverage; /* k for FL_DIST_NORMAL, else 0 */
+	fl_distribution distribution;
+	fl_band_basis basis; /* FL_BAND_PERCENT_SPAN or FL_BAND_PERCENT_READING */
+} fl_extra_term;
+
+typedef struct fl_procedure {
+	fl_arena arena;
+	const char *id, *version, *title;
+	const char *source;      /* where the procedure comes from */
+	const char *maintenance; /* who keeps it and when it is looked at again */
+	const char *method;      /* the sentence for the certificate */
+	fl_medium medium;
+	bool stopped_zero;           /* the zero with the pump stopped is read at the start and end of each cycle */
+	const fl_plan_point *points; /* rising */
+	int point_count;
+	int cycles;              /* rising and falling pass each; 1 with `falling` false: one traverse */
+	bool falling;            /* false: rising passes only, hysteresis not determined */
+	int readings;            /* at each point and pass */
+	double bath_c;           /* temperature of the oils; NAN for pressure */
+	double bath_tolerance_k; /* a bath temperature further off is asked about */
+	fl_settle settle;
+	fl_band tolerance;                /* used where the instrument states none */
+	fl_band adjust_limit;             /* inside: leave alone */
+	double hysteresis_limit_pct_span; /* NAN if none */
+	double linearity_limit_pct_span;  /* NAN if none */
+	fl_linearity deciding_linearity;
+	fl_rule rule;
+	double coverage_probability;             /* 0.9545 usual */
+	double oil_interpolation_half_width_rel; /* D341 between certified temperatures, fraction of nu, rectangular */
+	double oil_ageing_per_year_rel;          /* fraction of nu a year since certified, half width, rectangular */
+	double minimum_tur;                      /* below: no conformity statement (verdict withheld); 0 for never */
+	const fl_extra_term *extra;
+	int extra_count;
+	const fl_question *gates; /* before the first reading */
+	int gate_count;
+	const fl_question *conditions;
+	int condition_count;
+	const fl_question *restore; /* at the end */
+	int restore_count;
+	const char *text; /* the file's bytes as read (valid UTF-8): goes into the journal */
+} fl_procedure;
+
+/* Reads a template from memory. `file` is used in errors. On success *out is complete and to be freed. */
+fl_status fl_procedure_parse(const char *text, const char *file, fl_procedure *out, fl_error *err) FL_MUST_USE;
+fl_status fl_procedure_load(const fl_io *io, const char *path, fl_procedure *out, fl_error *err) FL_MUST_USE;
+void fl_procedure_free(fl_procedure *procedure);
+
+/* The rule in words, as the certificate states it. Never NULL. */
+const char *fl_procedure_rule_words(fl_rule rule);
+const char *fl_procedure_linearity_word(fl_linearity linearity);
+
+#endif
