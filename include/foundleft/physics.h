@@ -64,7 +64,8 @@ typedef struct fl_oil_state {
 	double outside_k;   /* how far T is outside the certified span, 0 inside */
 } fl_oil_state;
 
-/* FL_E_RANGE more than 5 K outside the certified span; FL_WARNING within 5 K outside (nearest pair used). */
+/* FL_E_RANGE more than 5 K outside the certified span; FL_WARNING within 5 K outside (nearest pair used;
+ * `err` is left alone, out->outside_k says how far). FL_E_VALUE for a table that does not rise and fall as stated. */
 fl_status fl_physics_oil_at(const fl_oil_table *table, double temp_c, fl_oil_state *out, fl_error *err) FL_MUST_USE;
 /* Leave-one-out misfit of the D341 line at the certified points (needs count >= 3): largest relative misfit over the
  * inner points, each predicted from its two neighbours, and where. With two points: 0 and *at = SIZE_MAX. */
@@ -77,10 +78,12 @@ double fl_physics_density_from_15(double rho15_kg_m3, double k0, double k1, doub
 /* ---- empirical seconds ------------------------------------------------------------------------------------------ */
 
 /* Redwood No. 1 seconds: nu = 0.260 t - 179/t (34 <= t <= 100), 0.247 t - 50/t (t > 100), mm2/s; the lower branch
- * rules in the overlap, so that round trips hold. */
+ * rules in the overlap, so that viscosity to seconds and back is exact; seconds just above 100 (to 100.04) come back
+ * up to 0.04 s smaller. FL_E_RANGE below 34 s (3.575 mm2/s). */
 fl_status fl_physics_redwood_to_nu(double seconds, double *nu_m2_s, fl_error *err) FL_MUST_USE;
 fl_status fl_physics_nu_to_redwood(double nu_m2_s, double *seconds, fl_error *err) FL_MUST_USE;
-/* Saybolt Universal seconds at temp_c, ASTM D2161 (equation of section 5 with its temperature factor). */
+/* Saybolt Universal seconds at temp_c, ASTM D2161 (equation of section 5 with its temperature factor).
+ * From 1.77 mm2/s, the beginning of the standard's tables; -18 to 177 C. */
 fl_status fl_physics_nu_to_saybolt(double nu_m2_s, double temp_c, double *seconds, fl_error *err) FL_MUST_USE;
 fl_status fl_physics_saybolt_to_nu(double seconds, double temp_c, double *nu_m2_s, fl_error *err) FL_MUST_USE;
 
@@ -93,7 +96,7 @@ typedef struct fl_signal_range {
 	fl_unit unit;                         /* mA, bar, psi */
 	double low, high;                     /* in that unit: IEC 60381-1, IEC 60382, and 3 to 15 psi of the trade */
 	double measuring_low, measuring_high; /* outside: saturated (NAMUR NE 43 for the current; 2.5 % beyond else) */
-	double failure_low, failure_high;     /* at or beyond: a failure signal, never data */
+	double failure_low, failure_high;     /* beyond: a failure signal, never data */
 } fl_signal_range;
 const fl_signal_range *fl_physics_signal_range(fl_signal signal);
 
@@ -117,7 +120,7 @@ fl_unit fl_physics_dial_unit(fl_dial_unit unit);
 /* What a correct instrument shows for an oil of dynamic viscosity mu. */
 typedef struct fl_ideal {
 	double equivalent_m2_s; /* mu / dial density: the equivalent viscosity; for a dial in mPa.s mu / 1000 kg/m3 */
-	double dial;            /* in dial units */
+	double dial;            /* in dial units; FL_E_RANGE where a dial in seconds has no division for it */
 	double x;               /* fraction of the measuring span, 0 at low, 1 at high: linear in equivalent viscosity
 	                           (in mu for mPa.s), because the capillary is; the dial's seconds are only its divisions */
 	double output;          /* in the signal's unit */
