@@ -1,0 +1,50 @@
+/* foundleft/certificate.h - from a session and its result to the certificate: content (facts, rounding, wording), then
+ * PDF/A-1b bytes.
+ *
+ * SPDX-License-Identifier: GPL-3.0-or-later
+ *
+ * Two halves. Content turns the record into a sheet: ordered blocks of text, tables and charts in which every number is
+ * already rounded and worded. Pdf sets a sheet on pages and knows no calibration word. Same input, same bytes.
+ */
+#ifndef FOUNDLEFT_CERTIFICATE_H
+#define FOUNDLEFT_CERTIFICATE_H
+
+#include "foundleft/analysis.h"
+#include "foundleft/base.h"
+#include "foundleft/journal.h"
+#include "foundleft/procedure.h"
+#include "foundleft/stock.h"
+
+/* What the record does not hold: said when the certificate is issued. Borrowed; "" or NULL where absent. */
+typedef struct fl_issue {
+	const char *number; /* unique number, on every page */
+	fl_day issued_on;
+	fl_utc issued_at;   /* goes into the PDF's dates */
+	int utc_offset_min; /* local time beside UTC */
+	const char *issuer, *issuer_address;
+	const char *authorised_by;
+	const char *journal_digest; /* 64 hex */
+	const char *journal_name;
+	const char *program_version;
+} fl_issue;
+
+/* Opaque to all but the certificate stage: the content as blocks (src/certificate/sheet.h). */
+typedef struct fl_sheet fl_sheet;
+
+fl_status fl_certificate_content(const fl_session *session, const fl_procedure *procedure, const fl_stock *stock,
+                                 const fl_result *result, const fl_issue *issue, fl_sheet **out,
+                                 fl_error *err) FL_MUST_USE;
+void fl_sheet_free(fl_sheet *sheet);
+/* The content as plain text, block by block: what tests and `certify --text` read. */
+void fl_sheet_text(const fl_sheet *sheet, fl_text *out);
+
+/* Folder with the faces, their coverage and the colour profile (installed with the program). */
+typedef struct fl_faces {
+	const char *folder;
+} fl_faces;
+/* Sets the sheet on A4 pages. *bytes is malloc'ed, the caller frees. A character that the face cannot show is refused
+ * by name (FL_E_VALUE: the text, the character, its code point). Nothing is written to disk here. */
+fl_status fl_certificate_pdf(const fl_sheet *sheet, const fl_io *io, const fl_faces *faces, unsigned char **bytes,
+                             size_t *length, fl_error *err) FL_MUST_USE;
+
+#endif
