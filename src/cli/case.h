@@ -1,0 +1,27 @@
+/* case.h - everything about one session, loaded from its journal.
+ * SPDX-License-Identifier: GPL-3.0-or-later */
+#ifndef FOUNDLEFT_CLI_CASE_H
+#define FOUNDLEFT_CLI_CASE_H
+
+#include "foundleft/analysis.h"
+#include "foundleft/base.h"
+#include "foundleft/journal.h"
+#include "foundleft/procedure.h"
+#include "foundleft/stock.h"
+
+typedef struct fl_case {
+	char path[512];
+	char head[FL_DIGEST_HEX_SIZE]; /* the journal's digest */
+	bool torn;                     /* an unfinished last line was ignored */
+	fl_session session;
+	fl_procedure procedure;
+	fl_stock stock;
+	const fl_instrument *instrument;
+	fl_result result;
+} fl_case;
+
+/* Reads and verifies the journal, replays it, and computes the result. On failure nothing needs freeing. */
+fl_status fl_case_load(const fl_io *io, const char *path, fl_case *out, fl_error *err) FL_MUST_USE;
+void fl_case_free(fl_case *one);
+
+#endif
