@@ -125,9 +125,11 @@ bool fl_utf8_valid(const char *bytes, size_t length);
 uint32_t fl_utf8_next(const char **cursor);
 /* Number of code points of a valid string, combining marks (U+0300..U+036F) not counted: columns for our texts. */
 int fl_utf8_columns(const char *text);
-/* True if the text has a control character (C0, DEL, C1) or a bidirectional override: refused in names. */
+/* True if the text has a control character (C0, DEL, C1), a line or paragraph separator (U+2028, U+2029) or a
+ * bidirectional embedding, override or isolate: refused in names. */
 bool fl_text_has_control(const char *text);
-/* Copies `text` without leading and trailing white space (also U+00A0) into out[size]; false if it does not fit. */
+/* Copies `text` without leading and trailing white space (also U+00A0, U+202F) into out[size]; false if it does not
+ * fit. */
 bool fl_text_trim(const char *text, char *out, size_t size);
 
 /* ---- decimals as typed ------------------------------------------------------------------------------------- */
@@ -138,7 +140,7 @@ bool fl_text_trim(const char *text, char *out, size_t size);
 typedef struct fl_decimal {
 	char typed[FL_TYPED_SIZE]; /* the digits as typed, trimmed, without the unit */
 	double value;
-	int decimals; /* digits behind the decimal mark, for showing it again */
+	int decimals; /* places that show it again: digits behind the decimal mark, an exponent taken into account */
 } fl_decimal;
 
 /* Reads one decimal: optional sign (+, -, U+2212), digits with one decimal mark (comma or point), optional
@@ -153,7 +155,8 @@ typedef struct fl_decimal {
 fl_status fl_decimal_parse(const char *text, fl_decimal *out, double *thousands, fl_error *err) FL_MUST_USE;
 
 /* Writes `value` with `decimals` places, round half to even on the exact binary value, "-0.00" never: it becomes
- * "0.00". Point as decimal mark whatever the locale. Returns out. */
+ * "0.00". Point as decimal mark whatever the locale. "#" where it does not fit, "nan" and "inf" by name; at most 60
+ * places. Returns out. */
 char *fl_decimal_format(double value, int decimals, char *out, size_t size);
 /* Same with a sign always ("+0.25", "-0.25", "0.00" for zero); U+2212 for the minus when `typographic`. */
 char *fl_decimal_format_signed(double value, int decimals, bool typographic, char *out, size_t size);
@@ -265,9 +268,11 @@ typedef struct fl_io {
 	int (*close)(void *self, int fd);
 	int (*truncate)(void *self, int fd, int64_t length);
 	int (*rename)(void *self, const char *from, const char *to);
+	int (*rename_new)(void *self, const char *from, const char *to); /* EEXIST where `to` exists, in one step */
 	int (*unlink)(void *self, const char *path);
 	int (*make_folder)(void *self, const char *path, unsigned mode);
 	int (*lock)(void *self, int fd); /* exclusive, without waiting */
+	int64_t (*size)(void *self, int fd);
 	void *self;
 } fl_io;
 
@@ -298,10 +303,15 @@ typedef struct fl_append {
 } fl_append;
 
 /* Opens for appending with an exclusive lock. `create` makes a new file (FL_E_EXISTS if there is one). `keep` is
- * the length up to which the file is good (ignored with `create`): what stands behind it is cut off. */
+ * the length up to which the file is good (ignored with `create`): what stands behind it is cut off. A negative
+ * `keep` leaves all of it: the way to read and check the file under its lock and then call fl_append_cut, so that
+ * what another program wrote in between is never cut. FL_E_STATE when another program has it open. */
 fl_status fl_append_open(fl_append *append, const fl_io *io, const char *path, bool create, int64_t keep,
                          fl_error *err) FL_MUST_USE;
+/* Cuts the file back to `length`, the end of what was found good; FL_E_STATE if the file is shorter than that. */
+fl_status fl_append_cut(fl_append *append, int64_t length, fl_error *err) FL_MUST_USE;
 fl_status fl_append_bytes(fl_append *append, const char *bytes, size_t length, fl_error *err) FL_MUST_USE;
+/* Closes and lets the lock go; a handle that is all zero or closed already is fine. */
 void fl_append_close(fl_append *append);
 
 #endif

@@ -1,0 +1,98 @@
+/* arena.c - memory with one owner: blocks in a list, freed together.
+ * SPDX-License-Identifier: GPL-3.0-or-later */
+#include <stdarg.h>
+#include <stdio.h>
+#include <stdlib.h>
+#include <string.h>
+
+#include "foundleft/base.h"
+
+#define BLOCK_BYTES ((size_t)16 * 1024)
+#define FIRST_CAPACITY ((size_t)8)
+
+struct fl_arena_block {
+	struct fl_arena_block *next;
+	size_t used;
+	size_t size;
+	max_align_t bytes[];
+};
+
+static struct fl_arena_block *new_block(fl_arena *arena, size_t size) {
+	struct fl_arena_block *block = calloc(1, sizeof *block + size);
+	if (!block)
+		return NULL;
+	block->size = size;
+	/* A block made to measure goes behind the current one, which may still have room. */
+	if (arena->head && size > BLOCK_BYTES) {
+		block->next = arena->head->next;
+		arena->head->next = block;
+	} else {
+		block->next = arena->head;
+		arena->head = block;
+	}
+	return block;
+}
+
+void *fl_arena_alloc(fl_arena *arena, size_t count, size_t size) {
+	size_t total;
+	const size_t unit = sizeof(max_align_t);
+	if (__builtin_mul_overflow(count, size, &total) || total > SIZE_MAX / 2)
+		return NULL;
+	total = (total / unit + (total % unit != 0 || total == 0)) * unit;
+	struct fl_arena_block *block = arena->head;
+	if (!block || block->size - block->used < total)
+		block = new_block(arena, total > BLOCK_BYTES ? total : BLOCK_BYTES);
+	if (!block)
+		return NULL;
+	void *place = (char *)block->bytes + block->used;
+	block->used += total;
+	return place;
+}
+
+char *fl_arena_strndup(fl_arena *arena, const char *text, size_t length) {
+	length = strnlen(text, length);
+	char *copy = fl_arena_alloc(arena, length + 1, 1);
+	if (copy)
+		memcpy(copy, text, length);
+	return copy;
+}
+
+char *fl_arena_strdup(fl_arena *arena, const char *text) {
+	return fl_arena_strndup(arena, text, strlen(text));
+}
+
+char *fl_arena_printf(fl_arena *arena, const char *format, ...) {
+	va_list values, again;
+	va_start(values, format);
+	va_copy(again, values);
+	int length = vsnprintf(NULL, 0, format, values);
+	va_end(values);
+	char *text = length < 0 ? NULL : fl_arena_alloc(arena, (size_t)length + 1, 1);
+	if (text)
+		vsnprintf(text, (size_t)length + 1, format, again);
+	va_end(again);
+	return text;
+}
+
+void *fl_arena_grow(fl_arena *arena, void *items, size_t count, size_t *capacity, size_t size) {
+	if (items && count < *capacity)
+		return items;
+	if (count > SIZE_MAX / 4)
+		return NULL;
+	size_t room = count < FIRST_CAPACITY ? FIRST_CAPACITY : 2 * count;
+	void *larger = fl_arena_alloc(arena, room, size);
+	if (!larger)
+		return NULL;
+	if (items && count > 0)
+		memcpy(larger, items, count * size);
+	*capacity = room;
+	return larger;
+}
+
+void fl_arena_free(fl_arena *arena) {
+	while (arena->head) {
+		struct fl_arena_block *next = arena->head->next;
+		free(arena->head);
+		arena->head = next;
+	}
+}
