@@ -25,9 +25,12 @@ fl_status fl_numeric_line(const double *x, const double *y, size_t n, fl_line *o
 /* Weighted least squares with known standard deviations u[n] > 0. */
 fl_status fl_numeric_line_weighted(const double *x, const double *y, const double *u, size_t n, fl_line *out,
                                    fl_error *err) FL_MUST_USE;
+/* The line's value at x and that value's standard uncertainty, from the full covariance. JCGM 100 H.3.4. */
+void fl_numeric_line_at(const fl_line *line, double x, double *y, double *u);
 
 /* General linear least squares y = X c. X is row-major n by p. Fills c[p], covariance[p*p] scaled by s^2, *s.
- * Columns are scaled before the QR/SVD decomposition, so that high powers of a large x keep their digits. */
+ * Columns are scaled before the QR/SVD decomposition, so that high powers of a large x keep their digits.
+ * n >= p; with n == p nothing is left to judge the scatter by: *s and covariance are 0. */
 fl_status fl_numeric_least_squares(const double *X, const double *y, size_t n, size_t p, double *c, double *covariance,
                                    double *s, double *sum_sq, fl_error *err) FL_MUST_USE;
 
@@ -42,7 +45,7 @@ typedef struct fl_reference_line {
  * IEC 61298-2, ANSI/ISA-51.1. n >= 2. */
 fl_status fl_numeric_line_independent(const double *x, const double *y, size_t n, fl_reference_line *out,
                                       fl_error *err) FL_MUST_USE;
-/* Terminal-based: through the points of lowest and highest x. */
+/* Terminal-based: through the points of lowest and highest x (the mean of several at the same x). */
 fl_status fl_numeric_line_terminal(const double *x, const double *y, size_t n, fl_reference_line *out,
                                    fl_error *err) FL_MUST_USE;
 /* Zero-based: through the point of lowest x, slope that minimises the largest absolute deviation. */
@@ -56,7 +59,13 @@ typedef struct fl_spread {
 } fl_spread;
 fl_status fl_numeric_spread(const double *v, size_t n, fl_spread *out, fl_error *err) FL_MUST_USE;
 
-/* Two-sided Student factor: t with P(|T| <= t) = probability. dof may be fractional or INFINITY. dof >= 1. */
+/* The largest |a[i] - b[i]| and where: hysteresis of two traverses over the same places. NAN marks a place that one
+ * of them lacks; FL_E_NUMERIC if no place has both. */
+fl_status fl_numeric_largest_gap(const double *a, const double *b, size_t n, double *gap, size_t *at,
+                                 fl_error *err) FL_MUST_USE;
+
+/* Two-sided Student factor: t with P(|T| <= t) = probability. dof may be fractional or INFINITY. dof >= 1.
+ * NAN outside: probability and p strictly between 0 and 1. */
 double fl_numeric_student(double probability, double dof);
 double fl_numeric_normal_cdf(double z);
 double fl_numeric_normal_quantile(double p);
@@ -92,7 +101,8 @@ typedef struct fl_trend {
 	double time_constant_s;
 } fl_trend;
 /* t_s[n] rising, v[n], n >= 2; the end value needs n >= 4 (Aitken's delta-squared on equally spaced, least squares
- * over the time constant otherwise). */
+ * over the time constant otherwise), and a series that slows down noticeably: a time constant of at most ten times its
+ * length. */
 fl_status fl_numeric_trend(const double *t_s, const double *v, size_t n, fl_trend *out, fl_error *err) FL_MUST_USE;
 
 #endif
