@@ -4,7 +4,8 @@
  * SPDX-License-Identifier: GPL-3.0-or-later
  *
  * Read with libyaml. Refused with their place: duplicate keys, aliases and anchors, tags, several documents,
- * text that is not UTF-8, control characters, more than 32 levels, files over 4 MiB.
+ * text that is not UTF-8, control characters, more than 32 levels, 1000 fields in one map or 100 000 values, field
+ * names over 64 characters, files over 4 MiB.
  */
 #ifndef FOUNDLEFT_DOCUMENT_H
 #define FOUNDLEFT_DOCUMENT_H
@@ -20,11 +21,14 @@ typedef struct fl_node {
 	const struct fl_node **items; /* list: elements; map: values */
 	const char **keys;            /* map: keys, else NULL */
 	size_t count;
-	const char *path; /* field path: "oils[2].k" */
+	const char *path; /* field path, lists counted from 1: "oils[2].k" */
 	const char *file;
-	int line, column;  /* 1-based */
-	size_t start, end; /* byte range in the source */
+	int line, column;         /* 1-based; columns count characters */
+	int key_line, key_column; /* value of a map: where its key stands; else 0 */
+	size_t start, end;        /* byte range in the source */
 } fl_node;
+
+#define FL_DOCUMENT_MAX ((size_t)4 * 1024 * 1024)
 
 /* Parses `text`; everything is allocated in `arena` (the source text is copied there too). */
 fl_status fl_document_parse(fl_arena *arena, const char *text, const char *file, const fl_node **root,
@@ -49,6 +53,15 @@ fl_status fl_node_day(const fl_node *map, const char *key, bool required, fl_day
 /* "2.2 mm": a number with a unit of `quantity`; *inside in the inside unit, *unit as written. */
 fl_status fl_node_amount(const fl_node *map, const char *key, bool required, fl_quantity quantity, double *inside,
                          fl_unit *unit, fl_error *err) FL_MUST_USE;
+/* One scalar as a number with unit, both as written; a number alone gives FL_U_NONE. Any quantity. A point is the
+ * decimal mark of a file; a comma is taken too, unless it could mean thousands ("1,234": refused). */
+fl_status fl_node_measure(const fl_node *scalar, double *value, fl_unit *unit, fl_error *err) FL_MUST_USE;
+/* "0 to 50 mm2/s": two numbers, low < high, one unit (of `quantity`, or any if FL_Q_NONE); values in *unit. Where
+ * `open` is true "at least 5 bar" and "at most 60 degC" are taken too; the open end is then infinite. */
+fl_status fl_node_span(const fl_node *map, const char *key, bool required, fl_quantity quantity, bool open, double *low,
+                       double *high, fl_unit *unit, fl_error *err) FL_MUST_USE;
+/* The units of a quantity as a sentence part: "mm or m". Returns out. */
+char *fl_document_units(fl_quantity quantity, char *out, size_t size);
 /* One of words[] (NULL-terminated): its index. */
 fl_status fl_node_choice(const fl_node *map, const char *key, bool required, const char *const *words, int *out,
                          fl_error *err) FL_MUST_USE;
