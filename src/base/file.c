@@ -246,7 +246,7 @@ fl_status fl_append_open(fl_append *append, const fl_io *io, const char *path, b
 	fl_status status = take(&opened, create, keep, err);
 	if (status < 0) {
 		close_quietly(io, opened.fd);
-		if (create)
+		if (create && status != FL_E_STATE) /* locked by another program already: then it is theirs now */
 			unlink_quietly(io, path);
 		return status;
 	}
