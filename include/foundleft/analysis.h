@@ -24,8 +24,10 @@ typedef enum fl_verdict {
 } fl_verdict;
 /* "pass", "conditional pass", "conditional fail", "fail"; "" for FL_VERDICT_NONE. */
 const char *fl_verdict_word(fl_verdict verdict);
-/* Compares |error| with the tolerance by the rule. Limits are inclusive. `expanded` is U; all in one unit.
- * ILAC-G8:09/2019, 4.2.1 to 4.2.3, w = U. */
+/* Compares |error| with the tolerance by the rule. `expanded` is U; all in one unit. Limits are inclusive, judged on
+ * unrounded numbers: 2^-40 of the tolerance (9e-13 of it) is allowed for the rounding of binary arithmetic, so that a
+ * decimal input that lies exactly on the limit passes. NaN, or no rule, gives FL_VERDICT_NONE.
+ * ILAC-G8:09/2019, 4.2.1 to 4.2.3, w = U; by the guarded rule everything beyond T - U is a fail. */
 fl_verdict fl_analysis_decide(fl_rule rule, double error, double expanded, double tolerance);
 
 /* One reading brought to its reference. */
@@ -70,8 +72,8 @@ typedef struct fl_point_result {
 	double x;                    /* mean */
 	double ideal_output, output; /* mean, in the signal's unit */
 	double error_span, error_dial, error_reading;
-	double s_span; /* standard deviation of the errors, n - 1, same direction */
-	double range_span;
+	double s_span;     /* standard deviation of the errors, n - 1, same direction */
+	double range_span; /* of the cycle means, or of the readings: see repeatability_of_cycles; NAN */
 	const fl_budget_line *budget;
 	size_t budget_count;
 	fl_budget_sum sum;     /* uc, dof, k, U: fractions of span; U never below the reference's own */
@@ -81,6 +83,7 @@ typedef struct fl_point_result {
 	fl_verdict verdict;
 	fl_flow flow; /* capillary check at this point, if the geometry is known */
 	bool has_flow;
+	double kinetic_span; /* kinetic term of the flow as a fraction of span; NAN without flow or full-scale pressure */
 } fl_point_result;
 
 /* What one run gives. NAN and false where not determined; the sentence stands in `not_determined`. */
@@ -95,11 +98,15 @@ typedef struct fl_run_result {
 	size_t point_count;
 	fl_point_result *combined; /* both directions together, zero first */
 	size_t combined_count;
-	double stopped_zero_span;   /* mean of the stopped zero */
-	double stopped_zero_u_span; /* U of it */
-	double running_zero_span;   /* intercept of the least-squares line through the running points */
-	double running_zero_u_span; /* standard uncertainty from the residuals */
-	fl_line line;               /* e = zero + span x through the combined points, the stopped zero included */
+	double stopped_zero_span;               /* mean of the stopped zero */
+	double stopped_zero_u_span;             /* U of it */
+	double running_zero_span;               /* intercept of the least-squares line through the running points */
+	double running_zero_u_span;             /* standard uncertainty from the residuals */
+	double error_high_span, error_low_span; /* highest and lowest error of a single reading (inaccuracy) */
+	const fl_point_result *largest_error;   /* largest |error| among the points per direction; NULL if none */
+	/* e = zero + span x through the combined points, the stopped zero included. A combined point stands at the x of
+	 * its rising pass (of the falling one where there is no other): the two passes differ by hundredths of a kelvin. */
+	fl_line line;
 	bool has_line;
 	double zero_error_span, span_error_span;             /* of that line */
 	double span_between_ends_span;                       /* e(top) - e(zero), as read */
@@ -107,9 +114,11 @@ typedef struct fl_run_result {
 	bool has_linearity;
 	double hysteresis_span; /* largest |falling - rising|; NAN if not determined */
 	int hysteresis_point;
-	double *hysteresis;          /* [combined_count] falling minus rising, signed; NAN where not both */
-	double repeatability_span;   /* largest range of same-direction values over consecutive traverses; NAN */
-	double repeatability_s_span; /* largest s */
+	double *hysteresis;           /* [combined_count] falling minus rising, signed; NAN where not both */
+	double hysteresis_cycle_span; /* largest within a single cycle (ANSI/ISA-51.1 states this one); NAN */
+	double repeatability_span;    /* largest range of same-direction values over consecutive traverses; NAN */
+	bool repeatability_of_cycles; /* the range is of cycle means (two cycles or more); else of single readings */
+	double repeatability_s_span;  /* largest s */
 	int repeatability_point;
 	fl_pass repeatability_pass;
 	fl_verdict verdict;           /* of the worst point */
