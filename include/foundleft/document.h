@@ -33,6 +33,9 @@ typedef struct fl_node {
 /* Parses `text`; everything is allocated in `arena` (the source text is copied there too). */
 fl_status fl_document_parse(fl_arena *arena, const char *text, const char *file, const fl_node **root,
                             fl_error *err) FL_MUST_USE;
+/* Reads a file of at most FL_DOCUMENT_MAX bytes into the arena; refuses one with a zero byte. */
+fl_status fl_document_load(fl_arena *arena, const fl_io *io, const char *path, const char **text,
+                           fl_error *err) FL_MUST_USE;
 /* The source of one node as a document of its own: first line padded so that it parses alone. */
 char *fl_document_excerpt(fl_arena *arena, const char *source, const fl_node *node) FL_MUST_USE;
 
@@ -53,6 +56,9 @@ fl_status fl_node_day(const fl_node *map, const char *key, bool required, fl_day
 /* "2.2 mm": a number with a unit of `quantity`; *inside in the inside unit, *unit as written. */
 fl_status fl_node_amount(const fl_node *map, const char *key, bool required, fl_quantity quantity, double *inside,
                          fl_unit *unit, fl_error *err) FL_MUST_USE;
+/* The same, refused (FL_E_RANGE) outside low to high, which are in the inside unit. */
+fl_status fl_node_amount_within(const fl_node *map, const char *key, bool required, fl_quantity quantity, double low,
+                                double high, double *inside, fl_unit *unit, fl_error *err) FL_MUST_USE;
 /* One scalar as a number with unit, both as written; a number alone gives FL_U_NONE. Any quantity. A point is the
  * decimal mark of a file; a comma is taken too, unless it could mean thousands ("1,234": refused). */
 fl_status fl_node_measure(const fl_node *scalar, double *value, fl_unit *unit, fl_error *err) FL_MUST_USE;

@@ -10,6 +10,8 @@
 
 #include "foundleft/base.h"
 
+struct fl_node; /* foundleft/document.h */
+
 typedef enum fl_medium {
 	FL_MEDIUM_OIL,     /* reference oils flow through the capillary */
 	FL_MEDIUM_PRESSURE /* a differential pressure from a pressure standard is injected into the transmitter alone */
@@ -41,7 +43,7 @@ typedef enum fl_linearity { FL_LINEARITY_INDEPENDENT, FL_LINEARITY_TERMINAL, FL_
 /* One place on the scale where the instrument is tested. */
 typedef struct fl_plan_point {
 	double position_pct_span;
-	double oil_low_pct_span, oil_high_pct_span; /* an oil is suitable for the point between these */
+	double oil_low_pct_span, oil_high_pct_span; /* an oil (or an injected pressure) suits the point between these */
 } fl_plan_point;
 
 typedef enum fl_ask {
@@ -68,7 +70,7 @@ typedef struct fl_settle {
 	int readings;           /* judged over at least this many of the last ones (watch values and readings) */
 	double window_s;        /* that span at least this time, where times are known */
 	double drift_pct_span;  /* slope * span of time must stay within this */
-	double temp_k_per_min;  /* and the temperature within this */
+	double temp_k_per_min;  /* and the temperature within this; INFINITY for pressure */
 	bool watch_required;    /* the first reading of a point needs a settled watch before it */
 	int identical_readings; /* so many identical to the last digit raise a question; 0: never */
 } fl_settle;
@@ -83,10 +85,10 @@ typedef enum fl_distribution {
 /* A contribution that the procedure adds to every point's budget. */
 typedef struct fl_extra_term {
 	const char *name;
-	double value;    /* half width, or U with k for a normal distribution */
-	double coverage; /* k for FL_DIST_NORMAL, else 0 */
-	fl_distribution distribution;
-	fl_band_basis basis; /* FL_BAND_PERCENT_SPAN or FL_BAND_PERCENT_READING */
+	double value;                 /* half width, or U with k for a normal distribution */
+	double coverage;              /* k for FL_DIST_NORMAL, else 0 */
+	fl_distribution distribution; /* never FL_DIST_STUDENT: a template has no degrees of freedom to give */
+	fl_band_basis basis;          /* FL_BAND_PERCENT_SPAN or FL_BAND_PERCENT_READING */
 } fl_extra_term;
 
 typedef struct fl_procedure {
@@ -130,6 +132,11 @@ typedef struct fl_procedure {
 fl_status fl_procedure_parse(const char *text, const char *file, fl_procedure *out, fl_error *err) FL_MUST_USE;
 fl_status fl_procedure_load(const fl_io *io, const char *path, fl_procedure *out, fl_error *err) FL_MUST_USE;
 void fl_procedure_free(fl_procedure *procedure);
+
+/* Reads map[key] as a band: "2.0 % of span", "5 % of reading" or, with `dial` not FL_U_NONE, "1.0 mm2/s" in that unit.
+ * A bare "2.0 %" is refused: nobody can tell of what. Absent and not required: *out stays. For stage stock too. */
+fl_status fl_procedure_band(const struct fl_node *map, const char *key, bool required, fl_unit dial, fl_band *out,
+                            fl_error *err) FL_MUST_USE;
 
 /* The rule in words, as the certificate states it. Never NULL. */
 const char *fl_procedure_rule_words(fl_rule rule);

@@ -337,6 +337,25 @@ fl_status fl_node_amount(const fl_node *map, const char *key, bool required, fl_
 	return FL_OK;
 }
 
+fl_status fl_node_amount_within(const fl_node *map, const char *key, bool required, fl_quantity quantity, double low,
+                                double high, double *inside, fl_unit *unit, fl_error *err) {
+	double value = NAN;
+	fl_unit found = FL_U_NONE;
+	fl_status status = fl_node_amount(map, key, required, quantity, &value, &found, err);
+	if (status != FL_OK || isnan(value))
+		return status;
+	if (value < low || value > high) {
+		const fl_node *scalar = fl_node_get(map, key);
+		return fl_fail_at(err, FL_E_RANGE, fl_node_place(scalar),
+		                  "%.60s is not possible: from %.4g to %.4g %s would be", scalar->text,
+		                  fl_from_inside(low, found), fl_from_inside(high, found), fl_unit_text(found));
+	}
+	*inside = value;
+	if (unit)
+		*unit = found;
+	return FL_OK;
+}
+
 fl_status fl_node_number(const fl_node *map, const char *key, bool required, double low, double high, double *out,
                          fl_error *err) {
 	const fl_node *scalar;

@@ -402,6 +402,19 @@ fl_status fl_document_parse(fl_arena *arena, const char *text, const char *file,
 	return status;
 }
 
+fl_status fl_document_load(fl_arena *arena, const fl_io *io, const char *path, const char **text, fl_error *err) {
+	char *bytes = NULL;
+	size_t length = 0;
+	fl_status status = fl_file_read(io, path, FL_DOCUMENT_MAX, arena, &bytes, &length, err);
+	if (status != FL_OK)
+		return status;
+	if (memchr(bytes, '\0', length))
+		return fl_fail_at(err, FL_E_SYNTAX, (fl_place){path, 0, 0, NULL},
+		                  "the file has a zero byte: it is no text; save it as UTF-8");
+	*text = bytes;
+	return FL_OK;
+}
+
 char *fl_document_excerpt(fl_arena *arena, const char *source, const fl_node *node) {
 	fl_text text = {0};
 	fl_text_printf(&text, "%*s", node->column - 1, "");
