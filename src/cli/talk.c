@@ -1,0 +1,96 @@
+/* talk.c - the thin blocking loop's ear: libedit where both ends are a terminal, getline otherwise.
+ * SPDX-License-Identifier: GPL-3.0-or-later */
+#include "talk.h"
+
+#include <histedit.h>
+#include <stdlib.h>
+#include <string.h>
+
+struct fl_talk {
+	fl_cli *cli;
+	EditLine *edit;
+	History *history;
+	char prompt[256]; /* last line of the prompt, asked for by libedit */
+	char *line;
+	size_t capacity;
+};
+
+static char *edit_prompt(EditLine *edit) {
+	fl_talk *talk = NULL;
+	el_get(edit, EL_CLIENTDATA, &talk);
+	return talk->prompt;
+}
+
+static void start_editing(fl_talk *talk) {
+	HistEvent event;
+	talk->edit = el_init("foundleft", stdin, talk->cli->out, talk->cli->err);
+	if (talk->edit == NULL)
+		return; /* plain lines still work */
+	el_set(talk->edit, EL_CLIENTDATA, talk);
+	el_set(talk->edit, EL_PROMPT, edit_prompt);
+	el_set(talk->edit, EL_EDITOR, "emacs");
+	el_set(talk->edit, EL_SIGNAL, 1); /* an interrupt restores the terminal first */
+	talk->history = history_init();
+	if (talk->history != NULL) {
+		history(talk->history, &event, H_SETSIZE, 200);
+		el_set(talk->edit, EL_HIST, history, talk->history);
+	}
+}
+
+fl_status fl_talk_new(fl_talk **out, fl_cli *cli, fl_error *err) {
+	fl_talk *talk = calloc(1, sizeof *talk);
+	if (talk == NULL)
+		return fl_fail(err, FL_E_MEMORY, "out of memory");
+	talk->cli = cli;
+	if (cli->terminal)
+		start_editing(talk);
+	*out = talk;
+	return FL_OK;
+}
+
+void fl_talk_free(fl_talk *talk) {
+	if (talk == NULL)
+		return;
+	if (talk->history != NULL)
+		history_end(talk->history);
+	if (talk->edit != NULL)
+		el_end(talk->edit);
+	free(talk->line);
+	free(talk);
+}
+
+static bool edited_line(fl_talk *talk, const char **line) {
+	int count = 0;
+	HistEvent event;
+	const char *got = el_gets(talk->edit, &count);
+	if (got == NULL || count <= 0)
+		return false;
+	free(talk->line);
+	talk->line = strdup(got);
+	if (talk->line == NULL)
+		return false;
+	talk->line[strcspn(talk->line, "\r\n")] = '\0';
+	if (talk->history != NULL && *talk->line)
+		history(talk->history, &event, H_ENTER, talk->line);
+	*line = talk->line;
+	return true;
+}
+
+static bool plain_line(fl_talk *talk, const char **line) {
+	if (getline(&talk->line, &talk->capacity, stdin) < 0)
+		return false;
+	talk->line[strcspn(talk->line, "\r\n")] = '\0';
+	*line = talk->line;
+	return true;
+}
+
+bool fl_talk_line(fl_talk *talk, const char *prompt, const char **line) {
+	const char *last = strrchr(prompt, '\n');
+	last = last ? last + 1 : prompt;
+	fwrite(prompt, 1, (size_t)(last - prompt), talk->cli->out);
+	snprintf(talk->prompt, sizeof talk->prompt, "%s", last);
+	if (talk->edit == NULL)
+		fputs(talk->prompt, talk->cli->out);
+	fflush(talk->cli->out);
+	return talk->edit != NULL ? edited_line(talk, line) : plain_line(talk, line);
+}
