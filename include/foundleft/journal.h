@@ -15,6 +15,11 @@
 #include "foundleft/seal.h"
 #include "foundleft/stock.h"
 
+/* The format that this program writes and reads; stands in the `open` line. */
+#define FL_JOURNAL_FORMAT "1"
+/* A journal longer than this is refused. */
+#define FL_JOURNAL_LIMIT ((size_t)64 * 1024 * 1024)
+
 /* ---- events -------------------------------------------------------------------------------------------------- */
 
 /* What can stand in a journal. Word in the file, meaning, fields required (others are optional). */
@@ -166,6 +171,7 @@ typedef struct fl_gate_answer {
 } fl_gate_answer;
 
 typedef struct fl_session_point {
+	int sequence;
 	const char *oil, *lot; /* "" for a pressure point */
 } fl_session_point;
 
@@ -188,6 +194,7 @@ typedef struct fl_indicative {
 
 typedef struct fl_session_run {
 	bool begun, closed, missing;
+	int missing_sequence;
 	const char *missing_reason;
 	fl_utc begun_at, closed_at;
 	const char *closed_by;
@@ -230,6 +237,7 @@ typedef struct fl_session {
 	fl_reading *readings; /* readings and watched values */
 	size_t reading_count, reading_capacity;
 	fl_decision decision;
+	int decision_sequence;
 	const char *decision_reason, *decision_by;
 	fl_adjustment *adjustments;
 	size_t adjustment_count, adjustment_capacity;
@@ -254,6 +262,12 @@ const fl_gate_answer *fl_session_gate(const fl_session *session, const char *id)
 const char *fl_session_equipment_id(const fl_session *session, fl_role role); /* NULL if none */
 /* The body of the text of `kind` and `name` (NULL: the first of that kind); NULL if none. */
 const char *fl_session_text_body(const fl_session *session, const char *kind, const char *name);
+
+/* Does this session need an as-left run: after an adjustment, or where there is no as-found run to stand for it. */
+bool fl_session_wants_as_left(const fl_session *session);
+/* Sequence of the latest entry that an undo line may take back; 0 if there is none. Whatever a closed run, a decision
+ * that was acted on or a chosen oil already read holds fast cannot be taken back. */
+int fl_session_last_undoable(const fl_session *session);
 
 /* Parses the procedure and the stock items that the session carries. */
 fl_status fl_session_procedure(const fl_session *session, fl_procedure *out, fl_error *err) FL_MUST_USE;
