@@ -198,22 +198,20 @@ static size_t find_spelling(const char *plain) {
 
 /* Near enough to be offered: equal but for capitals, one the start of the other, or one letter different. */
 static bool is_near(const char *typed, const char *plain) {
-	size_t typed_length = strlen(typed), plain_length = strlen(plain), same = 0;
-	if (typed_length == 0 || plain_length == 0)
-		return false;
-	while (typed[same] && fold(typed[same]) == fold(plain[same]))
-		same++;
+	size_t typed_length = strlen(typed), plain_length = strlen(plain);
 	size_t shorter = typed_length < plain_length ? typed_length : plain_length;
-	if (same == shorter && shorter >= 2)
-		return true;
-	size_t tail = 0;
-	while (tail < shorter - same && fold(typed[typed_length - 1 - tail]) == fold(plain[plain_length - 1 - tail]))
-		tail++;
 	size_t longer = typed_length > plain_length ? typed_length : plain_length;
-	return longer >= 2 && longer - same - tail <= 1;
+	size_t head = 0, tail = 0;
+	while (head < shorter && fold(typed[head]) == fold(plain[head]))
+		head++;
+	if (shorter < 2)
+		return head == longer;
+	while (tail < shorter - head && fold(typed[typed_length - 1 - tail]) == fold(plain[plain_length - 1 - tail]))
+		tail++;
+	return head == shorter || longer - head - tail <= 1;
 }
 
-/* Adds `text` to a list of units for a sentence. */
+/* Adds the name of `unit` to a list of units for a sentence. */
 static void add_name(char *list, size_t size, fl_unit unit) {
 	size_t used = strlen(list);
 	snprintf(list + used, size - used, "%s%s", used ? ", " : "", fl_unit_text(unit));

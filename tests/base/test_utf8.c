@@ -68,8 +68,8 @@ static void columns(void **state) {
 
 static void controls_are_found(void **state) {
 	(void)state;
-	static const char *const refused[] = {"a\tb",    "\n",      "\x1b[2J", "\x7f",   "\xC2\x80",  "\xC2\x9F", "\u202A",
-	                                      "x\u202E", "\u2066y", "\u2069",  "\u2028", "\u2029z", "\x01"};
+	static const char *const refused[] = {"a\tb",    "\n",      "\x1b[2J", "\x7f",   "\xC2\x80", "\xC2\x9F", "\u202A",
+	                                      "x\u202E", "\u2066y", "\u2069",  "\u2028", "\u2029z",  "\x01"};
 	for (size_t i = 0; i < sizeof refused / sizeof refused[0]; i++)
 		assert_true(fl_text_has_control(refused[i]));
 	static const char *const fine[] = {"", "I. Vossgaard", "Αντωνίου", "Ёлкина", "a\u00A0b", "\u2065", "\u202F", "~"};
