@@ -46,8 +46,8 @@ for folder in src/*/; do
 	[ -f "include/foundleft/$stage.h" ] || [ "$stage" = cli ] || complain "include/foundleft/$stage.h is missing"
 done
 # Only the command line prints, exits, or reads clock, environment and locale.
-for word in 'printf *(' 'exit *(' 'getenv *(' 'time *(NULL' 'setlocale *(' 'gettimeofday *(' 'clock_gettime *('; do
-	grep -nE "(^|[^_a-zA-Z>.])$word" -r src --include='*.c' --include='*.h' | grep -v '^src/cli/' |
+for word in 'printf' 'fputs' 'exit' 'getenv' 'setlocale' 'gettimeofday' 'clock_gettime' 'localtime' 'localtime_r'; do
+	grep -nE "(^|[^_a-zA-Z>.])$word *[(]" -r src --include='*.c' --include='*.h' | grep -v '^src/cli/' |
 		grep -vE '^[^:]*:[0-9]+: *(\*|//|/\*)' | sed 's/^/layout: only src\/cli may do this: /' | grep . && bad=1
 done
 # The order of the table is the direction of dependency: a stage lists only stages above it.

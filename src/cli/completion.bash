@@ -1,0 +1,41 @@
+# bash completion for foundleft; asks the program itself for each command's options.
+# SPDX-License-Identifier: GPL-3.0-or-later
+_foundleft() {
+	local word=${COMP_WORDS[COMP_CWORD]} previous=${COMP_WORDS[COMP_CWORD - 1]} command=${COMP_WORDS[1]}
+	COMPREPLY=()
+	if [ "$COMP_CWORD" -eq 1 ]; then
+		mapfile -t COMPREPLY < <(compgen -W "begin resume replay import assess certify check list help version" -- "$word")
+		return
+	fi
+	case $previous in
+	--procedure)
+		mapfile -t COMPREPLY < <(compgen -W "$(foundleft list procedures 2>/dev/null | awk 'NR > 1 { print $1 }')" -- "$word")
+		return
+		;;
+	--home | --stock)
+		mapfile -t COMPREPLY < <(compgen -d -- "$word")
+		return
+		;;
+	help)
+		mapfile -t COMPREPLY < <(compgen -W "begin resume replay import assess certify check list" -- "$word")
+		return
+		;;
+	esac
+	case $word in
+	-*)
+		mapfile -t COMPREPLY < <(compgen -W "$(foundleft help "$command" 2>/dev/null | grep -o -- '--[a-z-]*' | sort -u)" -- "$word")
+		;;
+	*)
+		case $command in
+		resume | assess | certify)
+			mapfile -t COMPREPLY < <(compgen -W "$(foundleft list sessions 2>/dev/null | awk 'NR > 1 { print $1 }')" -- "$word")
+			;;
+		list)
+			mapfile -t COMPREPLY < <(compgen -W "procedures stock sessions" -- "$word")
+			;;
+		esac
+		[ ${#COMPREPLY[@]} -gt 0 ] || mapfile -t COMPREPLY < <(compgen -f -- "$word")
+		;;
+	esac
+}
+complete -F _foundleft foundleft
