@@ -1,0 +1,199 @@
+/* analysis/decide.c - tolerance and verdict of each point; the worst point and with it the verdict of the run.
+ *
+ * SPDX-License-Identifier: GPL-3.0-or-later
+ */
+#include "work.h"
+
+#include <math.h>
+
+/* Limits are inclusive and judged on unrounded numbers. An error such as (20.32 mA - 20 mA) / 16 mA is 0.02 as
+ * decimals and a few units of the last binary place away from it here; 2^-40 of the tolerance, far below any
+ * resolution, takes that up. */
+static const double rounding_of_tolerance = 0x1p-40;
+/* Below a tenth of span a tolerance in % of reading is not applied (common practice, no source). */
+static const double lowest_x_for_reading = 0.1;
+/* Tolerance to uncertainty ratio below which readers are warned: ANSI/NCSL Z540.3, 5.3, asks for 4:1. */
+static const double comfortable_tur = 4.0;
+
+const char *fl_verdict_word(fl_verdict verdict) {
+	static const char *const words[] = {[FL_VERDICT_NONE] = "",
+	                                    [FL_VERDICT_PASS] = "pass",
+	                                    [FL_VERDICT_CONDITIONAL_PASS] = "conditional pass",
+	                                    [FL_VERDICT_CONDITIONAL_FAIL] = "conditional fail",
+	                                    [FL_VERDICT_FAIL] = "fail"};
+	return words[verdict];
+}
+
+fl_verdict fl_analysis_decide(fl_rule rule, double error, double expanded, double tolerance) {
+	double size = fabs(error), slack = rounding_of_tolerance * tolerance;
+	if (rule == FL_RULE_NONE || isnan(error) || isnan(expanded) || isnan(tolerance))
+		return FL_VERDICT_NONE;
+	bool within_guard = size <= tolerance - expanded + slack;
+	bool within_tolerance = size <= tolerance + slack;
+	bool within_doubt = size <= tolerance + expanded + slack;
+	switch (rule) {
+	case FL_RULE_SIMPLE:
+		return within_tolerance ? FL_VERDICT_PASS : FL_VERDICT_FAIL;
+	case FL_RULE_GUARDED:
+		return within_guard ? FL_VERDICT_PASS : FL_VERDICT_FAIL;
+	case FL_RULE_FOUR_STATES:
+		if (within_guard)
+			return FL_VERDICT_PASS;
+		if (within_tolerance)
+			return FL_VERDICT_CONDITIONAL_PASS;
+		return within_doubt ? FL_VERDICT_CONDITIONAL_FAIL : FL_VERDICT_FAIL;
+	case FL_RULE_NONE:
+		break;
+	}
+	return FL_VERDICT_NONE;
+}
+
+/* ---- a band at a place of the scale ---- */
+
+/* Dial units to a fraction of span there; a dial in seconds is not divided evenly. NAN where it has no division. */
+static double dial_units_as_span(const work *w, double units, double x) {
+	const fl_scale *scale = &w->instrument->scale;
+	if (scale->dial_unit == FL_DIAL_MM2_S || scale->dial_unit == FL_DIAL_MPA_S)
+		return units / (scale->high - scale->low);
+	const double step = 1e-5; /* of span: far below any tolerance, far above rounding */
+	double low = NAN, high = NAN;
+	if (fl_physics_dial_at(scale, x - step, &low, NULL) < 0 || fl_physics_dial_at(scale, x + step, &high, NULL) < 0)
+		return NAN;
+	return units * 2.0 * step / (high - low);
+}
+
+/* Half width of a band at x, fraction of span; NAN where it says nothing. */
+static double band_at(const work *w, const fl_band *band, double x) {
+	switch (band->basis) {
+	case FL_BAND_PERCENT_SPAN:
+		return band->half_width / 100.0;
+	case FL_BAND_PERCENT_READING:
+		return x > lowest_x_for_reading ? band->half_width / 100.0 * x : NAN;
+	case FL_BAND_DIAL_UNITS:
+		return dial_units_as_span(w, band->half_width, x);
+	case FL_BAND_NONE:
+		break;
+	}
+	return NAN;
+}
+
+/* ---- points ---- */
+
+static bool tur_too_small(const work *w, const fl_point_result *point) {
+	return point->tur < w->procedure->minimum_tur * (1.0 - rounding_of_tolerance);
+}
+
+static void decide_point(work *w, fl_point_result *point) {
+	point->tolerance_span = band_at(w, &w->result->tolerance, point->x);
+	point->tur = point->tolerance_span / point->sum.expanded;
+	point->verdict = fl_analysis_decide(w->result->rule, point->error_span, point->sum.expanded, point->tolerance_span);
+	if (tur_too_small(w, point))
+		point->verdict = FL_VERDICT_NONE;
+	const char *name = fl_analysis_point_name(w, point);
+	if (isnan(point->tolerance_span) && w->result->tolerance.basis != FL_BAND_NONE)
+		fl_analysis_say(w->arena, &w->warnings, "%s: the tolerance says nothing at this place of the scale: no verdict",
+		                name);
+	if (point->tur < comfortable_tur)
+		fl_analysis_say(w->arena, &w->warnings, "%s: the tolerance is only %s times the expanded uncertainty", name,
+		                fl_analysis_number(w->arena, point->tur, 2));
+}
+
+/* ---- the run ---- */
+
+/* |error| + U against the tolerance; against nothing where there is none. */
+static double burden(const fl_point_result *point) {
+	double reach = fabs(point->error_span) + point->sum.expanded;
+	return isnan(point->tolerance_span) ? reach : reach / point->tolerance_span;
+}
+
+static bool is_worse(const fl_point_result *point, const fl_point_result *than) {
+	if (!than)
+		return true;
+	bool judged = !isnan(point->tolerance_span), than_judged = !isnan(than->tolerance_span);
+	if (judged != than_judged)
+		return judged;
+	if (point->verdict != than->verdict)
+		return point->verdict > than->verdict;
+	return burden(point) > burden(than);
+}
+
+static const fl_point_result *find_worst(const fl_run_result *run) {
+	const fl_point_result *worst = NULL;
+	for (size_t i = 0; i < run->point_count; i++)
+		if (is_worse(&run->points[i], worst))
+			worst = &run->points[i];
+	for (size_t i = 0; i < run->combined_count; i++)
+		if (run->combined[i].both && is_worse(&run->combined[i], worst))
+			worst = &run->combined[i];
+	return worst;
+}
+
+static const fl_point_result *find_undecidable(const work *w, const fl_run_result *run) {
+	const fl_point_result *found = NULL;
+	for (size_t i = 0; i < run->point_count; i++)
+		if (tur_too_small(w, &run->points[i]) && (!found || run->points[i].tur < found->tur))
+			found = &run->points[i];
+	for (size_t i = 0; i < run->combined_count; i++)
+		if (tur_too_small(w, &run->combined[i]) && (!found || run->combined[i].tur < found->tur))
+			found = &run->combined[i];
+	return found;
+}
+
+static const char *reason_of_worst(const work *w, const fl_point_result *worst) {
+	return fl_arena_printf(w->arena, "%s: error %s of span, U %s, tolerance ±%s: %s by %s",
+	                       fl_analysis_point_name(w, worst), fl_analysis_percent_signed(w->arena, worst->error_span, 3),
+	                       fl_analysis_percent(w->arena, worst->sum.expanded, 3),
+	                       fl_analysis_percent(w->arena, worst->tolerance_span, 3), fl_verdict_word(worst->verdict),
+	                       fl_procedure_rule_words(w->result->rule));
+}
+
+static void withhold(const work *w, fl_run_result *run, const fl_point_result *point) {
+	run->verdict = FL_VERDICT_NONE;
+	run->verdict_reason = fl_arena_printf(
+	    w->arena, "no verdict: at %s the tolerance is %s times the expanded uncertainty, and the procedure asks for %s",
+	    fl_analysis_point_name(w, point), fl_analysis_number(w->arena, point->tur, 3),
+	    fl_analysis_number(w->arena, w->procedure->minimum_tur, 3));
+}
+
+static void decide_run(const work *w, fl_run_result *run) {
+	run->worst = find_worst(run);
+	const fl_point_result *undecidable = find_undecidable(w, run);
+	if (w->result->rule == FL_RULE_NONE) {
+		run->verdict_reason = "no verdict: no decision rule is agreed";
+	} else if (w->result->tolerance.basis == FL_BAND_NONE) {
+		run->verdict_reason = "no verdict: no tolerance is stated";
+	} else if (undecidable) {
+		withhold(w, run, undecidable);
+	} else if (!run->worst || run->worst->verdict == FL_VERDICT_NONE) {
+		run->verdict_reason = "no verdict: the tolerance says nothing at any of the points";
+	} else {
+		run->verdict = run->worst->verdict;
+		run->verdict_reason = reason_of_worst(w, run->worst);
+	}
+}
+
+/* True if every point lies inside the adjust limit; false where none is stated. */
+static bool inside_adjust_limit(const work *w, const fl_run_result *run) {
+	const fl_band *limit =
+	    w->instrument->adjust_limit.basis == FL_BAND_NONE ? &w->procedure->adjust_limit : &w->instrument->adjust_limit;
+	bool any = false;
+	for (size_t i = 0; i < run->point_count; i++) {
+		double half_width = band_at(w, limit, run->points[i].x);
+		if (isnan(half_width))
+			continue;
+		any = true;
+		if (fl_analysis_decide(FL_RULE_SIMPLE, run->points[i].error_span, 0.0, half_width) == FL_VERDICT_FAIL)
+			return false;
+	}
+	return any;
+}
+
+fl_status fl_analysis_verdicts(work *w, fl_run_result *run, fl_error *err) {
+	for (size_t i = 0; i < run->point_count; i++)
+		decide_point(w, &run->points[i]);
+	for (size_t i = 0; i < run->combined_count; i++)
+		decide_point(w, &run->combined[i]);
+	decide_run(w, run);
+	run->inside_adjust_limit = inside_adjust_limit(w, run);
+	return run->verdict_reason ? FL_OK : fl_fail(err, FL_E_MEMORY, "out of memory for the verdict");
+}
