@@ -100,7 +100,7 @@ fl_status fl_stock_parse_equipment(fl_stock *stock, const char *excerpt, const c
 fl_status fl_stock_parse_instrument(fl_stock *stock, const char *excerpt, const char *name, fl_error *err) FL_MUST_USE;
 void fl_stock_free(fl_stock *stock);
 
-/* NULL if there is none. */
+/* NULL if there is none. Borrowed until the next item of that kind is added. */
 const fl_oil *fl_stock_oil(const fl_stock *stock, const char *lot);
 const fl_equipment *fl_stock_equipment(const fl_stock *stock, const char *id);
 const fl_instrument *fl_stock_instrument(const fl_stock *stock, const char *tag);
