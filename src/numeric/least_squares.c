@@ -3,7 +3,7 @@
  * SPDX-License-Identifier: GPL-3.0-or-later
  *
  * GSL's singular value decomposition, with balanced columns, gives the coefficients and (X'X)^-1. The residuals are
- * then taken in long double and fitted in turn, which wins back the digits that a badly conditioned X costs.
+ * then taken in doubled precision and fitted in turn, which wins back the digits that a badly conditioned X costs.
  */
 #include "finite.h"
 #include "foundleft/numeric.h"
@@ -46,17 +46,31 @@ static fl_status fit_new(fit *f, fl_error *err) {
 	return FL_OK;
 }
 
+/* y - x . c with twice the working precision: every rounding error of a product or sum is caught and added at the end
+ * (Ogita, Rump and Oishi, Accurate sum and dot product, 2005). */
+static double exact_residual(double y, const double *x, const gsl_vector *c) {
+	double sum = y, lost = 0.0;
+	for (size_t j = 0; j < c->size; j++) {
+		double factor = -gsl_vector_get(c, j);
+		double product = x[j] * factor;
+		lost += fma(x[j], factor, -product);
+		double next = sum + product;
+		double taken = next - sum;
+		lost += (sum - (next - taken)) + (product - taken);
+		sum = next;
+	}
+	return sum + lost;
+}
+
 /* Fills the residuals y - X c and returns their sum of squares. */
 static double take_residuals(fit *f) {
-	long double sum = 0.0L;
+	double sum = 0.0;
 	for (size_t i = 0; i < f->n; i++) {
-		long double residual = f->y[i];
-		for (size_t j = 0; j < f->p; j++)
-			residual -= (long double)f->X[i * f->p + j] * (long double)gsl_vector_get(f->c, j);
-		gsl_vector_set(f->residual, i, (double)residual);
+		double residual = exact_residual(f->y[i], f->X + i * f->p, f->c);
+		gsl_vector_set(f->residual, i, residual);
 		sum += residual * residual;
 	}
-	return (double)sum;
+	return sum;
 }
 
 /* Fits the residuals; FL_E_NUMERIC where the columns of X do not stand apart. */
