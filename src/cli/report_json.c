@@ -18,12 +18,13 @@
 
 typedef struct json {
 	fl_text *out;
+	size_t start;  /* where the object begins in the text */
 	bool bad_text; /* a string was not UTF-8 */
 } json;
 
 /* A comma, unless the value is the first of its object or list, or stands behind its key. */
 static void separate(json *to) {
-	if (to->out->length == 0)
+	if (to->out->length <= to->start)
 		return;
 	char last = to->out->data[to->out->length - 1];
 	if (last != '{' && last != '[' && last != ':')
@@ -304,6 +305,7 @@ static void write_flow(json *to, const fl_point_result *point) {
 	number(to, "dp_total_pa", flow->dp_total_pa);
 	number(to, "dp_end_pa", flow->dp_end_pa);
 	number(to, "dp_kinetic_pa", flow->dp_kinetic_pa);
+	percent(to, "kinetic_pct_span", point->kinetic_span);
 	number(to, "wall_shear_per_s", flow->wall_shear_per_s);
 	number(to, "heating_k", flow->heating_k);
 	end(to, '}');
@@ -350,7 +352,7 @@ static void write_point(json *to, const fl_case *one, const fl_point_result *poi
 	begin(to, NULL, '{');
 	word(to, "oil", point->oil);
 	word(to, "lot", point->lot);
-	string(to, "direction", point->both || zero ? NULL : fl_pass_word(point->pass));
+	string(to, "direction", point->both ? NULL : fl_pass_word(point->pass));
 	boolean(to, "stopped_zero", zero);
 	if (zero)
 		null(to, "point");
@@ -440,6 +442,8 @@ static void write_figures(json *to, const fl_case *one, const fl_run_result *run
 	figure(to, "stopped_zero_expanded_uncertainty_pct_span", here, run->stopped_zero_u_span);
 	figure(to, "running_zero_pct_span", here, run->running_zero_span);
 	figure(to, "running_zero_standard_uncertainty_pct_span", here, run->running_zero_u_span);
+	figure(to, "reading_error_low_pct_span", here, run->error_low_span);
+	figure(to, "reading_error_high_pct_span", here, run->error_high_span);
 	write_line(to, run);
 	figure(to, "independent_linearity_pct_span", straight, run->independent.max_abs);
 	figure(to, "terminal_linearity_pct_span", straight, run->terminal.max_abs);
@@ -447,8 +451,10 @@ static void write_figures(json *to, const fl_case *one, const fl_run_result *run
 	boolean(to, "linearity_exceeded", here && run->linearity_exceeded);
 	figure(to, "hysteresis_pct_span", hysteresis, run->hysteresis_span);
 	point_name(to, "hysteresis_oil", one, hysteresis, run->hysteresis_point);
+	figure(to, "hysteresis_single_cycle_pct_span", hysteresis, run->hysteresis_cycle_span);
 	boolean(to, "hysteresis_exceeded", here && run->hysteresis_exceeded);
 	figure(to, "repeatability_pct_span", repeat, run->repeatability_span);
+	string(to, "repeatability_of", !repeat ? NULL : run->repeatability_of_cycles ? "cycles" : "readings");
 	figure(to, "repeatability_standard_deviation_pct_span", repeat, run->repeatability_s_span);
 	point_name(to, "repeatability_oil", one, repeat, run->repeatability_point);
 	string(to, "repeatability_direction", repeat ? fl_pass_word(run->repeatability_pass) : NULL);
@@ -479,7 +485,7 @@ static void write_worst(json *to, const fl_run_result *run) {
 	}
 	begin(to, "worst", '{');
 	word(to, "oil", worst->oil);
-	string(to, "direction", worst->both || worst->point == FL_POINT_ZERO ? NULL : fl_pass_word(worst->pass));
+	string(to, "direction", worst->both ? NULL : fl_pass_word(worst->pass));
 	boolean(to, "stopped_zero", worst->point == FL_POINT_ZERO);
 	percent(to, "error_pct_span", worst->error_span);
 	percent(to, "expanded_uncertainty_pct_span", worst->sum.expanded);
@@ -505,8 +511,7 @@ static void write_run(json *to, const fl_case *one, const fl_run_result *run, fl
 }
 
 fl_status fl_report_json(const fl_case *one, fl_text *out, fl_error *err) {
-	json to = {.out = out};
-	size_t start = out->length;
+	json to = {.out = out, .start = out->length};
 	begin(&to, NULL, '{');
 	string(&to, "format", FORMAT);
 	string(&to, "program", FOUNDLEFT_VERSION);
@@ -523,8 +528,8 @@ fl_status fl_report_json(const fl_case *one, fl_text *out, fl_error *err) {
 	if (out->failed)
 		return fl_fail(err, FL_E_MEMORY, "no memory for the JSON text");
 	if (to.bad_text) {
-		out->length = start;
-		out->data[start] = '\0';
+		out->length = to.start;
+		out->data[to.start] = '\0';
 		return fl_fail(err, FL_E_VALUE, "a name in the session is not valid UTF-8, so that JSON cannot hold it");
 	}
 	return FL_OK;

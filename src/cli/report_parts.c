@@ -29,7 +29,7 @@ static char *with_sign(double value, int decimals, const char *plus, char out[FL
 	char digits[64];
 	bool zero = false;
 	digits_of(value, decimals, digits, &zero);
-	snprintf(out, FL_CELL_SIZE, "%s%s", value < 0.0 && !zero ? MINUS : plus, digits);
+	snprintf(out, FL_CELL_SIZE, "%s%s", zero ? "" : value < 0.0 ? MINUS : plus, digits);
 	return out;
 }
 
@@ -94,6 +94,16 @@ char *fl_report_fit(const char *text, int columns, char out[FL_CELL_SIZE]) {
 	return out;
 }
 
+/* Adds a word; a no-break space has done its work by then and is printed as a plain one. */
+static void add_word(fl_text *out, const char *word) {
+	static const char no_break[] = "\u00a0";
+	for (const char *at; (at = strstr(word, no_break)) != NULL; word = at + strlen(no_break)) {
+		fl_text_append(out, word, (size_t)(at - word));
+		fl_text_add(out, " ");
+	}
+	fl_text_add(out, word);
+}
+
 void fl_report_wrap(fl_text *out, const char *lead, const char *text, int columns) {
 	int indent = fl_utf8_columns(lead), used = indent;
 	bool first = true;
@@ -116,7 +126,8 @@ void fl_report_wrap(fl_text *out, const char *lead, const char *text, int column
 			used = indent;
 			first = true;
 		}
-		fl_text_printf(out, "%s%s", first ? "" : " ", copy);
+		fl_text_add(out, first ? "" : " ");
+		add_word(out, copy);
 		used += wide + (first ? 0 : 1);
 		first = false;
 		text += word;

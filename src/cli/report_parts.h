@@ -11,7 +11,7 @@
 
 /* Rounded to `decimals` places, U+2212 for minus, never a negative zero. Returns out. */
 char *fl_report_fixed(double value, int decimals, char out[FL_CELL_SIZE]);
-/* The same with a sign always. */
+/* The same with a sign always, except for zero. */
 char *fl_report_signed(double value, int decimals, char out[FL_CELL_SIZE]);
 /* An uncertainty to two significant digits, without an exponent. */
 char *fl_report_two_digits(double value, char out[FL_CELL_SIZE]);
@@ -22,8 +22,8 @@ int fl_report_places(double size);
 
 /* Copies at most `columns` columns of text; what is cut ends in U+2026. Returns out. */
 char *fl_report_fit(const char *text, int columns, char out[FL_CELL_SIZE]);
-/* Adds `text` after `lead`, broken between words so that no line is wider than `columns`; the lines that follow are
- * indented as far as the lead is wide. Ends with a newline. */
+/* Adds `text` after `lead`, broken between words (not at U+00A0) so that no line is wider than `columns`; the lines
+ * that follow are indented as far as the lead is wide. Ends with a newline. */
 void fl_report_wrap(fl_text *out, const char *lead, const char *text, int columns);
 void fl_report_rule(fl_text *out, int columns);
 

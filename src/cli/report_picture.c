@@ -214,6 +214,13 @@ static band_knot band_at(const report_panel *panel, double x) {
 	return knots[last];
 }
 
+/* A band in percent of reading is drawn from the lowest point that has one to the highest, any other all along. */
+static bool band_reaches(const report_panel *panel, double x) {
+	if (panel->one->result.tolerance.basis != FL_BAND_PERCENT_READING)
+		return true;
+	return x >= panel->knots[0].x - 0.01 && x <= panel->knots[panel->knot_count - 1].x + 0.01;
+}
+
 static bool has_guard(const report_panel *panel) {
 	fl_rule rule = panel->one->result.rule;
 	return rule == FL_RULE_GUARDED || rule == FL_RULE_FOUR_STATES;
@@ -230,7 +237,10 @@ static int limit_row(const report_panel *panel, double tolerance, double sign) {
 
 static void shade(report_panel *panel) {
 	for (int column = 0; column < panel->width && panel->knot_count > 0; column++) {
-		band_knot band = band_at(panel, x_of(panel, column));
+		double x = x_of(panel, column);
+		if (!band_reaches(panel, x))
+			continue;
+		band_knot band = band_at(panel, x);
 		int upper = limit_row(panel, band.tolerance, 1.0), lower = limit_row(panel, band.tolerance, -1.0);
 		double accepted = has_guard(panel) ? band.tolerance - band.expanded : band.tolerance;
 		for (int row = upper; row <= lower; row++) {
@@ -292,7 +302,7 @@ static int free_column(const report_panel *panel, int row, int wanted) {
 static int mark_column(const report_panel *panel, const fl_point_result *point) {
 	int column = column_of(panel, point->x);
 	if (point->point == FL_POINT_ZERO)
-		return column > 0 ? column - 1 : column; /* leaves room for the lowest oil */
+		column -= 1; /* leaves room for the lowest oil */
 	column += point->pass == FL_PASS_RISING ? -1 : 1;
 	return clamp(column, 0, panel->width - 1);
 }

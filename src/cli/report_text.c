@@ -30,7 +30,7 @@ static void fact(const report_page *page, const char *name, const char *format, 
 	va_start(values, format);
 	vsnprintf(text, sizeof text, format, values);
 	va_end(values);
-	int pad = 15 - fl_utf8_columns(name);
+	int pad = 16 - fl_utf8_columns(name);
 	snprintf(lead, sizeof lead, "  %s%*s", name, pad > 1 ? pad : 1, "");
 	fl_report_wrap(page->out, lead, text, page->columns);
 }
@@ -68,18 +68,22 @@ static const char *source_words(fl_source source) {
 	return "";
 }
 
-static void print_heading(const report_page *page) {
-	const fl_case *one = page->one;
-	const fl_instrument *instrument = one->instrument;
-	char day[FL_DAY_SIZE], title[256];
-	snprintf(title, sizeof title, "%s%s%s", instrument->tag, instrument->serial[0] ? ", serial " : "",
-	         instrument->serial);
+static void print_title(const report_page *page) {
+	const fl_instrument *instrument = page->one->instrument;
+	char day[FL_DAY_SIZE], title[512];
+	snprintf(title, sizeof title, "%s%s%s, calibrated %s", instrument->tag, instrument->serial[0] ? ", serial " : "",
+	         instrument->serial, fl_day_format(page->one->session.day, day));
 	fl_report_wrap(page->out, "", title, page->columns);
 	fl_report_rule(page->out, page->columns);
+}
+
+static void print_facts(const report_page *page) {
+	const fl_case *one = page->one;
+	const fl_instrument *instrument = one->instrument;
 	if (instrument->site[0])
 		fact(page, "Site", "%s%s%s", instrument->site, instrument->position[0] ? ", " : "", instrument->position);
 	print_scale(page);
-	fact(page, "Calibrated", "%s, %s", fl_day_format(one->session.day, day), source_words(one->session.source));
+	fact(page, "Readings", "%s", source_words(one->session.source));
 	fact(page, "Procedure", "%s (%s, version %s)", one->procedure.title, one->procedure.id, one->procedure.version);
 	fact(page, "Rule", "%s", fl_procedure_rule_words(one->result.rule));
 	fact(page, "Journal", "digest %.16s\u2026%s", one->head,
@@ -93,10 +97,9 @@ static void print_traceability(const report_page *page) {
 	const fl_result *result = &page->one->result;
 	if (result->traceable)
 		return;
-	fl_text_add(page->out, "INDICATIVE, NOT TRACEABLE\n");
-	sentences(page, "because", result->not_traceable, result->not_traceable_count);
+	sentences(page, "INDICATIVE, NOT TRACEABLE", result->not_traceable, result->not_traceable_count);
 	if (result->not_traceable_count == 0)
-		fl_text_add(page->out, "\n");
+		fl_text_add(page->out, "INDICATIVE, NOT TRACEABLE\n\n");
 }
 
 /* ---- what was decided -------------------------------------------------------------------------------------------- */
@@ -109,10 +112,7 @@ static const char *pass_mark(fl_pass pass) {
 static void where_words(const fl_case *one, const fl_point_result *point, char out[FL_CELL_SIZE * 2]) {
 	char name[FL_CELL_SIZE];
 	fl_report_point_name(one, point->point, name);
-	if (point->both || point->point == FL_POINT_ZERO)
-		snprintf(out, FL_CELL_SIZE * 2, "%s", name);
-	else
-		snprintf(out, FL_CELL_SIZE * 2, "%s %s", name, fl_pass_word(point->pass));
+	snprintf(out, FL_CELL_SIZE * 2, "%s %s", name, point->both ? "both ways" : fl_pass_word(point->pass));
 }
 
 static void worst_words(const fl_case *one, const fl_point_result *worst, char *out, size_t size) {
@@ -121,10 +121,10 @@ static void worst_words(const fl_case *one, const fl_point_result *worst, char *
 	fl_report_signed(worst->error_span * PERCENT, 2, error);
 	fl_report_two_digits(worst->sum.expanded * PERCENT, expanded);
 	fl_report_fixed(worst->tolerance_span * PERCENT, 2, tolerance);
-	int used = snprintf(out, size, "worst at %s: %s %% of span, U %s (k = %.2f)", where, error, expanded,
-	                    worst->sum.coverage_factor);
+	int used = snprintf(out, size, "worst at %s: %s\u00a0%% of span, U\u00a0%s (k\u00a0=\u00a0%.2f)", where, error,
+	                    expanded, worst->sum.coverage_factor);
 	if (tolerance[0] && used > 0 && (size_t)used < size)
-		snprintf(out + used, size - (size_t)used, ", tolerance \u00b1%s", tolerance);
+		snprintf(out + used, size - (size_t)used, ", tolerance\u00a0\u00b1%s", tolerance);
 }
 
 /* One run's decision in one or two sentences. */
@@ -142,8 +142,9 @@ static void print_decision(const report_page *page, const fl_run_result *run) {
 	worst[0] = '\0';
 	if (run->worst)
 		worst_words(page->one, run->worst, worst, sizeof worst);
-	fact(page, title, "%s%s%s", word, word[0] && worst[0] ? ", " : "", worst);
-	if (run->verdict_reason && run->verdict_reason[0])
+	fact(page, title, "%s%s%s", word, word[0] && worst[0] ? "; " : "", worst);
+	/* The reason of a verdict says the same numbers again; the reason for none is news. */
+	if (run->verdict == FL_VERDICT_NONE && run->verdict_reason && run->verdict_reason[0])
 		fact(page, "", "%s", run->verdict_reason);
 }
 
@@ -179,7 +180,7 @@ static void put_name(const report_page *page, fl_table *table, size_t row, int c
 }
 
 static void put_way(fl_table *table, size_t row, int column, const fl_point_result *point) {
-	if (point->point != FL_POINT_ZERO && !point->both)
+	if (!point->both)
 		put(table, row, column, pass_mark(point->pass));
 }
 
@@ -209,9 +210,9 @@ static void print_found(const report_page *page, const fl_run_result *run) {
 	    {"ideal", signal, FL_ALIGN_POINT, false},
 	    {"found", signal, FL_ALIGN_POINT, false},
 	    {"error", "% span", FL_ALIGN_POINT, false},
-	    {"\u00b1U", "", FL_ALIGN_POINT, false},
+	    {"\u00b1U", "% span", FL_ALIGN_POINT, false},
 	    {"k", "", FL_ALIGN_POINT, false},
-	    {"tol.", "\u00b1", FL_ALIGN_POINT, false},
+	    {"tol.", "\u00b1%", FL_ALIGN_POINT, false},
 	    {"verdict", "", FL_ALIGN_LEFT, false},
 	};
 	fl_table table;
@@ -241,7 +242,7 @@ static void print_found(const report_page *page, const fl_run_result *run) {
 static void print_spread(const report_page *page, const fl_run_result *run) {
 	const char *dial = fl_report_dial_short(page->one->instrument->scale.dial_unit);
 	const fl_table_column columns[] = {
-	    {"", "", FL_ALIGN_LEFT, true},
+	    {page->one->procedure.medium == FL_MEDIUM_OIL ? "oil" : "point", "", FL_ALIGN_LEFT, true},
 	    {"", "", FL_ALIGN_LEFT, true},
 	    {"dial", dial, FL_ALIGN_POINT, false},
 	    {"error", dial, FL_ALIGN_POINT, false},
@@ -287,7 +288,7 @@ static bool has_falling(const fl_run_result *run) {
 static void print_combined(const report_page *page, const fl_run_result *run) {
 	const fl_table_column columns[] = {
 	    {"both ways", "", FL_ALIGN_LEFT, true},     {"n", "", FL_ALIGN_RIGHT, false},
-	    {"error", "% span", FL_ALIGN_POINT, false}, {"\u00b1U", "", FL_ALIGN_POINT, false},
+	    {"error", "% span", FL_ALIGN_POINT, false}, {"\u00b1U", "% span", FL_ALIGN_POINT, false},
 	    {"k", "", FL_ALIGN_POINT, false},           {"\u25bc less \u25b2", "% span", FL_ALIGN_POINT, false},
 	    {"verdict", "", FL_ALIGN_LEFT, false},
 	};
@@ -316,8 +317,7 @@ static void put_flow(fl_table *table, size_t row, int column, const fl_point_res
 	const fl_flow *flow = &point->flow;
 	fl_report_fixed(flow->reynolds, 1, fl_table_cell(table, row, column));
 	fl_report_two_digits(flow->entrance_m * 1e3, fl_table_cell(table, row, column + 1));
-	if (flow->dp_total_pa > 0.0)
-		fl_report_two_digits(flow->dp_kinetic_pa / flow->dp_total_pa * PERCENT, fl_table_cell(table, row, column + 2));
+	fl_report_two_digits(point->kinetic_span * PERCENT, fl_table_cell(table, row, column + 2));
 }
 
 /* The oils as they were in the bath, and what the capillary makes of them. */
@@ -331,7 +331,7 @@ static void print_oils(const report_page *page, const fl_run_result *run) {
 	    {"dynamic", "mPa\u00b7s", FL_ALIGN_POINT, false},
 	    {"Reynolds", "", FL_ALIGN_POINT, false},
 	    {"entrance", "mm", FL_ALIGN_POINT, false},
-	    {"kinetic", "% of dp", FL_ALIGN_POINT, false},
+	    {"kinetic", "% span", FL_ALIGN_POINT, false},
 	};
 	size_t rows = 0;
 	for (size_t i = 0; i < run->combined_count; i++)
@@ -411,20 +411,26 @@ static void print_spreads(const report_page *page, const fl_run_result *run) {
 	char value[FL_CELL_SIZE], name[FL_CELL_SIZE], limit[FL_CELL_SIZE], s[FL_CELL_SIZE];
 	if (!isnan(run->hysteresis_span)) {
 		fl_report_fixed(result->hysteresis_limit_span * PERCENT, 2, limit);
-		fact(page, "Hysteresis", "%s at %s%s%s%s", fl_report_fixed(run->hysteresis_span * PERCENT, 2, value),
-		     fl_report_point_name(page->one, run->hysteresis_point, name), limit[0] ? "; limit " : "", limit,
-		     run->hysteresis_exceeded ? ", EXCEEDED" : "");
+		fl_report_fixed(run->hysteresis_cycle_span * PERCENT, 2, s);
+		fact(page, "Hysteresis", "%s at %s%s%s%s%s%s", fl_report_fixed(run->hysteresis_span * PERCENT, 2, value),
+		     fl_report_point_name(page->one, run->hysteresis_point, name), s[0] ? ", in a single cycle " : "", s,
+		     limit[0] ? "; limit " : "", limit, run->hysteresis_exceeded ? ", EXCEEDED" : "");
 	}
 	if (!isnan(run->repeatability_span)) {
 		fl_report_two_digits(run->repeatability_s_span * PERCENT, s);
-		fact(page, "Repeatability", "%s at %s %s%s%s", fl_report_fixed(run->repeatability_span * PERCENT, 2, value),
+		fact(page, "Repeatability", "%s at %s %s, range of %s%s%s",
+		     fl_report_fixed(run->repeatability_span * PERCENT, 2, value),
 		     fl_report_point_name(page->one, run->repeatability_point, name), fl_pass_word(run->repeatability_pass),
+		     run->repeatability_of_cycles ? "the cycles' means" : "single readings",
 		     s[0] ? "; largest standard deviation " : "", s);
 	}
+	if (!isnan(run->error_low_span) && !isnan(run->error_high_span))
+		fact(page, "Single readings", "from %s to %s", fl_report_signed(run->error_low_span * PERCENT, 2, value),
+		     fl_report_signed(run->error_high_span * PERCENT, 2, s));
 }
 
 static void print_figures(const report_page *page, const fl_run_result *run) {
-	fl_text_printf(page->out, "In %% of span\n");
+	fl_text_printf(page->out, "The run as a whole, in %% of span\n");
 	print_zeroes(page, run);
 	if (run->has_line)
 		print_line(page, &run->line);
@@ -432,7 +438,7 @@ static void print_figures(const report_page *page, const fl_run_result *run) {
 		print_linearity(page, run);
 	print_spreads(page, run);
 	for (size_t i = 0; i < run->not_determined_count; i++)
-		fl_report_wrap(page->out, i == 0 ? "  Not determined " : "                 ", run->not_determined[i],
+		fl_report_wrap(page->out, i == 0 ? "  Not determined  " : "                  ", run->not_determined[i],
 		               page->columns);
 	fl_text_add(page->out, "\n");
 }
@@ -511,9 +517,10 @@ static void print_legend(const report_page *page) {
 void fl_report_text(const fl_case *one, int columns, fl_text *out) {
 	const report_page page = {one, columns < 60 ? 60 : columns, out};
 	const fl_result *result = &one->result;
-	print_heading(&page);
+	print_title(&page);
 	print_traceability(&page);
 	print_decisions(&page);
+	print_facts(&page);
 	sentences(&page, "Warnings", result->warnings, result->warning_count);
 	for (int kind = 0; kind < FL_RUN_KINDS; kind++)
 		print_run(&page, &result->runs[kind]);
