@@ -205,6 +205,19 @@ static fl_align head_align(fl_align align) {
 	return align == FL_ALIGN_LEFT ? FL_ALIGN_LEFT : FL_ALIGN_RIGHT;
 }
 
+/* The heads of the chosen columns, or their units; a line that would be empty is left out. */
+static void print_head(const fl_table *table, const width *wide, const int *chosen, const int *starts, int count,
+                       bool units, fl_text *out) {
+	bool any = false;
+	for (int i = 0; i < count; i++) {
+		const fl_table_column *column = &table->columns[chosen[i]];
+		const char *text = units ? column->unit : column->head;
+		any = any || text[0];
+		print_cell(out, starts[i], head_align(column->align), &wide[chosen[i]], text);
+	}
+	fl_text_add(out, any ? "\n" : "");
+}
+
 /* Prints the chosen columns, `gap` apart. */
 static void print_block(fl_table *table, const width *wide, const int *chosen, int count, int gap, fl_text *out) {
 	int starts[FL_TABLE_COLUMNS], total = 0;
@@ -213,13 +226,8 @@ static void print_block(fl_table *table, const width *wide, const int *chosen, i
 		total += wide[chosen[i]].whole + gap;
 	}
 	total -= gap;
-	for (int line = 0; line < 2; line++) {
-		for (int i = 0; i < count; i++) {
-			const fl_table_column *head = &table->columns[chosen[i]];
-			print_cell(out, starts[i], head_align(head->align), &wide[chosen[i]], line == 0 ? head->head : head->unit);
-		}
-		fl_text_add(out, "\n");
-	}
+	print_head(table, wide, chosen, starts, count, false, out);
+	print_head(table, wide, chosen, starts, count, true, out);
 	fl_report_rule(out, total);
 	for (size_t row = 0; row < table->row_count; row++) {
 		for (int i = 0; i < count; i++)

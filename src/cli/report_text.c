@@ -381,7 +381,7 @@ static void print_line(const report_page *page, const fl_line *line) {
 	double u0 = sqrt(line->var_intercept), u1 = sqrt(line->var_slope);
 	double correlation = u0 > 0.0 && u1 > 0.0 ? line->cov / (u0 * u1) : (double)NAN;
 	fl_report_signed(correlation, 2, r);
-	fact(page, "Least squares", "error = %s (u %s) + x \u00b7 %s (u %s)%s%s, %d degrees of freedom",
+	fact(page, "Least squares", "error = %s (u\u00a0%s) + x\u00a0\u00b7\u00a0%s (u\u00a0%s)%s%s, %d degrees of freedom",
 	     fl_report_signed(line->intercept * PERCENT, 3, zero), fl_report_two_digits(u0 * PERCENT, u_zero),
 	     fl_report_signed(line->slope * PERCENT, 3, span), fl_report_two_digits(u1 * PERCENT, u_span),
 	     r[0] ? ", correlation " : "", r, line->dof);
