@@ -299,6 +299,11 @@ static bool adjustment_is_free(const fl_session *s) {
 	return !s->runs[FL_RUN_AS_LEFT].begun;
 }
 
+/* What the program itself wrote at the beginning. */
+static bool is_own_setting(const char *id) {
+	return strcmp(id, "signal") == 0 || strcmp(id, "utc-offset") == 0;
+}
+
 static bool decision_is_free(const fl_session *s) {
 	return s->decision && live_adjustments(s) == 0 && !s->runs[FL_RUN_AS_LEFT].begun &&
 	       !s->runs[FL_RUN_AS_LEFT].missing;
@@ -315,7 +320,7 @@ fl_undoable fl_session_find(const fl_session *s, int sequence, size_t *index) {
 	*index = 0;
 	if (s->closed || sequence <= 0)
 		return FL_NOTHING;
-	FIND(s->settings, s->setting_count, !s->settings[i].undone, FL_UNDO_SETTING)
+	FIND(s->settings, s->setting_count, !s->settings[i].undone && !is_own_setting(s->settings[i].id), FL_UNDO_SETTING)
 	FIND(s->gates, s->gate_count, !s->gates[i].undone, FL_UNDO_GATE)
 	FIND(s->points, s->point_count, point_is_free(s, i), FL_UNDO_POINT)
 	FIND(s->equipment, s->equipment_count, !s->equipment[i].undone, FL_UNDO_EQUIPMENT)

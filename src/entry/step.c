@@ -1,0 +1,195 @@
+/* step.c - where the conversation stands: a pure function of the session and the procedure.
+ *
+ * SPDX-License-Identifier: GPL-3.0-or-later
+ *
+ * The order of work: identification, people, equipment, oils, permit and safety, conditions, is as-found possible,
+ * the as-found run, its closing, the decision, adjustments, the as-left run, its closing, restoring, remarks, end.
+ * A run follows the plan: each cycle rises from the stopped zero through the points and falls back to it.
+ */
+#include "entry_private.h"
+
+#include <string.h>
+
+const fl_entry_item fl_entry_items[] = {
+    {"place", "Where is the work done (ship or plant, and port or shop)", "The place goes on the certificate.", true,
+     0},
+    {"customer", "Who asked for it", "The customer as the certificate shall name him.", true, 0},
+    {"job", "Job or order number (empty if there is none)", "Your own number for this job.", false, 0},
+    {"performed-by", "Your name: who performs the work", "The performer. Another person countersigns later.", true, 1},
+    {"others", "Others present (empty if none)", "Names of witnesses or helpers.", false, 1},
+    {NULL, NULL, NULL, false, 0},
+};
+
+const fl_entry_item *fl_entry_item_find(const char *id) {
+	for (const fl_entry_item *item = fl_entry_items; item->id; item++)
+		if (strcmp(item->id, id) == 0)
+			return item;
+	return NULL;
+}
+
+fl_role fl_entry_meter_role(const fl_session *session) {
+	const fl_setting *signal = fl_session_setting(session, "signal");
+	return !signal || signal->unit == FL_U_MA ? FL_ROLE_CURRENT_METER : FL_ROLE_PRESSURE_GAUGE;
+}
+
+bool fl_entry_at_place(const fl_reading *r, const fl_step *step) {
+	return !r->undone && r->run == step->run && r->cycle == step->cycle && r->pass == step->pass &&
+	       r->point == step->point;
+}
+
+/* ---- parts before the runs
+ * ------------------------------------------------------------------------------------------------ */
+
+static bool settings_step(const fl_session *s, fl_step *step) {
+	for (const fl_entry_item *item = fl_entry_items; item->id; item++)
+		if (!fl_session_setting(s, item->id)) {
+			*step = (fl_step){.kind = FL_STEP_SETTING, .id = item->id};
+			return true;
+		}
+	return false;
+}
+
+static bool equipment_step(const fl_session *s, const fl_procedure *p, fl_step *step) {
+	bool oil = p->medium == FL_MEDIUM_OIL;
+	const struct {
+		bool wanted;
+		fl_role role;
+	} roles[] = {{oil, FL_ROLE_THERMOMETER},
+	             {oil, FL_ROLE_BATH},
+	             {true, fl_entry_meter_role(s)},
+	             {!oil, FL_ROLE_PRESSURE_STANDARD},
+	             {oil && !fl_session_setting(s, "no-tachometer"), FL_ROLE_TACHOMETER}};
+	for (size_t i = 0; i < sizeof roles / sizeof roles[0]; i++)
+		if (roles[i].wanted && !fl_session_equipment_id(s, roles[i].role)) {
+			*step = (fl_step){.kind = FL_STEP_EQUIPMENT, .role = roles[i].role};
+			return true;
+		}
+	return false;
+}
+
+static bool oil_step(const fl_session *s, const fl_procedure *p, fl_step *step) {
+	if (p->medium != FL_MEDIUM_OIL || (int)s->point_count >= p->point_count)
+		return false;
+	*step = (fl_step){.kind = FL_STEP_OIL, .point = (int)s->point_count};
+	return true;
+}
+
+/* A "no" holds the work up, unless it may be and was given its reason. */
+static bool is_answered(const fl_question *question, const char *answer, const char *reason) {
+	if (!answer)
+		return false;
+	if (question->kind == FL_ASK_CONFIRM && strcmp(answer, "no") == 0)
+		return question->may_decline && reason;
+	return true;
+}
+
+static bool question_step(const fl_session *s, const fl_question *questions, int count, fl_step_kind kind,
+                          fl_step *step) {
+	for (int i = 0; i < count; i++) {
+		const fl_gate_answer *given = fl_session_gate(s, questions[i].id);
+		if (is_answered(&questions[i], given ? given->answer : NULL, given ? given->reason : NULL))
+			continue;
+		*step = (fl_step){.kind = kind, .id = questions[i].id, .question = &questions[i]};
+		return true;
+	}
+	return false;
+}
+
+static bool condition_step(const fl_session *s, const fl_procedure *p, fl_step *step) {
+	for (int i = 0; i < p->condition_count; i++) {
+		const fl_setting *given = fl_session_setting(s, p->conditions[i].id);
+		if (is_answered(&p->conditions[i], given ? given->typed : NULL, "-"))
+			continue;
+		*step = (fl_step){.kind = FL_STEP_SETTING, .id = p->conditions[i].id, .question = &p->conditions[i]};
+		return true;
+	}
+	return false;
+}
+
+/* ---- the runs
+ * -------------------------------------------------------------------------------------------------------------- */
+
+/* Place number `index` of one cycle, rising from the stopped zero and falling back to it; false behind the last. */
+static bool place_of(const fl_procedure *p, int index, fl_pass *pass, int *point) {
+	int zero = p->stopped_zero ? 1 : 0, rising = zero + p->point_count;
+	if (index < rising) {
+		*pass = FL_PASS_RISING;
+		*point = index < zero ? FL_POINT_ZERO : index - zero;
+		return true;
+	}
+	if (!p->falling || index >= 2 * rising)
+		return false;
+	*pass = FL_PASS_FALLING;
+	index -= rising;
+	*point = index < p->point_count ? p->point_count - 1 - index : FL_POINT_ZERO;
+	return true;
+}
+
+/* Live readings at the step's place; the number that the next one gets goes to step->number. */
+static int count_live(const fl_session *s, fl_step *step) {
+	int live = 0;
+	step->number = 1;
+	for (size_t i = 0; i < s->reading_count; i++) {
+		const fl_reading *r = &s->readings[i];
+		if (r->watched || !fl_entry_at_place(r, step))
+			continue;
+		live += !r->struck;
+		if (r->number >= step->number)
+			step->number = r->number + 1;
+	}
+	return live;
+}
+
+static bool reading_step(const fl_session *s, const fl_procedure *p, fl_run_kind run, fl_step *step) {
+	fl_step found = {.kind = FL_STEP_READING, .run = run}, at = found;
+	bool open = false;
+	int total = 0, done = 0;
+	for (int cycle = 1; cycle <= p->cycles; cycle++)
+		for (int index = 0; place_of(p, index, &at.pass, &at.point); index++) {
+			at.cycle = cycle;
+			int live = count_live(s, &at);
+			total += p->readings;
+			done += live < p->readings ? live : p->readings;
+			if (!open && live < p->readings) {
+				found = at;
+				open = true;
+			}
+		}
+	*step = found;
+	step->done = done;
+	step->total = total;
+	return open;
+}
+
+static bool run_step(const fl_session *s, const fl_procedure *p, fl_run_kind run, fl_step *step) {
+	if (s->runs[run].closed || s->runs[run].missing)
+		return false;
+	if (!reading_step(s, p, run, step))
+		step->kind = FL_STEP_CLOSE_RUN;
+	return true;
+}
+
+fl_step fl_entry_step(const fl_session *s, const fl_procedure *p) {
+	fl_step step = {.kind = FL_STEP_DONE};
+	const fl_session_run *as_found = &s->runs[FL_RUN_AS_FOUND], *as_left = &s->runs[FL_RUN_AS_LEFT];
+	if (s->closed)
+		return step;
+	if (settings_step(s, &step) || equipment_step(s, p, &step) || oil_step(s, p, &step) ||
+	    question_step(s, p->gates, p->gate_count, FL_STEP_GATE, &step) || condition_step(s, p, &step))
+		return step;
+	if (!as_found->begun && !as_found->missing)
+		return (fl_step){.kind = FL_STEP_AS_FOUND};
+	if (run_step(s, p, FL_RUN_AS_FOUND, &step))
+		return step;
+	if (!s->decision)
+		return (fl_step){.kind = FL_STEP_DECISION};
+	if (s->decision == FL_DECISION_ADJUST && !as_left->begun && !as_left->missing)
+		return (fl_step){.kind = FL_STEP_ADJUSTMENT};
+	if (fl_session_wants_as_left(s) && run_step(s, p, FL_RUN_AS_LEFT, &step))
+		return step;
+	if (question_step(s, p->restore, p->restore_count, FL_STEP_RESTORE, &step))
+		return step;
+	if (!fl_session_setting(s, "remarks-complete"))
+		return (fl_step){.kind = FL_STEP_REMARKS};
+	return (fl_step){.kind = FL_STEP_CLOSE};
+}
