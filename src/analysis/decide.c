@@ -10,8 +10,6 @@
  * decimals and a few units of the last binary place away from it here; 2^-40 of the tolerance, far below any
  * resolution, takes that up. */
 static const double rounding_of_tolerance = 0x1p-40;
-/* Below a tenth of span a tolerance in % of reading is not applied (common practice, no source). */
-static const double lowest_x_for_reading = 0.1;
 /* Tolerance to uncertainty ratio below which readers are warned: ANSI/NCSL Z540.3, 5.3, asks for 4:1. */
 static const double comfortable_tur = 4.0;
 
@@ -68,7 +66,7 @@ static double band_at(const work *w, const fl_band *band, double x) {
 	case FL_BAND_PERCENT_SPAN:
 		return band->half_width / 100.0;
 	case FL_BAND_PERCENT_READING:
-		return x > lowest_x_for_reading ? band->half_width / 100.0 * x : NAN;
+		return x > FL_LOWEST_X_FOR_READING ? band->half_width / 100.0 * x : NAN;
 	case FL_BAND_DIAL_UNITS:
 		return dial_units_as_span(w, band->half_width, x);
 	case FL_BAND_NONE:
@@ -83,19 +81,38 @@ static bool tur_too_small(const work *w, const fl_point_result *point) {
 	return point->tur < w->procedure->minimum_tur * (1.0 - rounding_of_tolerance);
 }
 
-static void decide_point(work *w, fl_point_result *point) {
+static void decide_point(const work *w, fl_point_result *point) {
 	point->tolerance_span = band_at(w, &w->result->tolerance, point->x);
 	point->tur = point->tolerance_span / point->sum.expanded;
 	point->verdict = fl_analysis_decide(w->result->rule, point->error_span, point->sum.expanded, point->tolerance_span);
 	if (tur_too_small(w, point))
 		point->verdict = FL_VERDICT_NONE;
-	const char *name = fl_analysis_point_name(w, point);
-	if (isnan(point->tolerance_span) && w->result->tolerance.basis != FL_BAND_NONE)
-		fl_analysis_say(w->arena, &w->warnings, "%s: the tolerance says nothing at this place of the scale: no verdict",
-		                name);
-	if (point->tur < comfortable_tur)
-		fl_analysis_say(w->arena, &w->warnings, "%s: the tolerance is only %s times the expanded uncertainty", name,
-		                fl_analysis_number(w->arena, point->tur, 2));
+}
+
+static const fl_point_result *smaller_tur(const fl_point_result *points, size_t count, const fl_point_result *found) {
+	for (size_t i = 0; i < count; i++)
+		if (!isnan(points[i].tur) && (!found || points[i].tur < found->tur))
+			found = &points[i];
+	return found;
+}
+
+/* The weakest point of a run, directions first; NULL where no point has a tolerance. */
+static const fl_point_result *weakest_point(const fl_run_result *run) {
+	const fl_point_result *found = smaller_tur(run->points, run->point_count, NULL);
+	return smaller_tur(run->combined, run->combined_count, found);
+}
+
+static void warn_about_points(work *w, const fl_run_result *run) {
+	const fl_point_result *weakest = weakest_point(run);
+	if (weakest && weakest->tur < comfortable_tur)
+		fl_analysis_say(w->arena, &w->warnings, "%s run: at %s the tolerance is only %s times the expanded uncertainty",
+		                fl_run_word(run->kind), fl_analysis_point_name(w, weakest),
+		                fl_analysis_number(w->arena, weakest->tur, 2));
+	for (size_t i = 0; i < run->combined_count && w->result->tolerance.basis != FL_BAND_NONE; i++)
+		if (isnan(run->combined[i].tolerance_span))
+			fl_analysis_say(w->arena, &w->warnings,
+			                "%s: the tolerance says nothing at this place of the scale: no verdict",
+			                fl_analysis_point_name(w, &run->combined[i]));
 }
 
 /* ---- the run ---- */
@@ -128,23 +145,27 @@ static const fl_point_result *find_worst(const fl_run_result *run) {
 	return worst;
 }
 
-static const fl_point_result *find_undecidable(const work *w, const fl_run_result *run) {
-	const fl_point_result *found = NULL;
-	for (size_t i = 0; i < run->point_count; i++)
-		if (tur_too_small(w, &run->points[i]) && (!found || run->points[i].tur < found->tur))
-			found = &run->points[i];
-	for (size_t i = 0; i < run->combined_count; i++)
-		if (tur_too_small(w, &run->combined[i]) && (!found || run->combined[i].tur < found->tur))
-			found = &run->combined[i];
-	return found;
+/* The rule's name within a sentence; fl_procedure_rule_words explains it. */
+static const char *rule_name(fl_rule rule) {
+	switch (rule) {
+	case FL_RULE_SIMPLE:
+		return "simple acceptance";
+	case FL_RULE_GUARDED:
+		return "guarded acceptance with w = U";
+	case FL_RULE_FOUR_STATES:
+		return "four states with w = U";
+	case FL_RULE_NONE:
+		break;
+	}
+	return "no rule";
 }
 
 static const char *reason_of_worst(const work *w, const fl_point_result *worst) {
-	return fl_arena_printf(w->arena, "%s: error %s of span, U %s, tolerance ±%s: %s by %s",
+	return fl_arena_printf(w->arena, "%s: error %s of span, U %s, tolerance ±%s: %s (%s)",
 	                       fl_analysis_point_name(w, worst), fl_analysis_percent_signed(w->arena, worst->error_span, 3),
 	                       fl_analysis_percent(w->arena, worst->sum.expanded, 3),
 	                       fl_analysis_percent(w->arena, worst->tolerance_span, 3), fl_verdict_word(worst->verdict),
-	                       fl_procedure_rule_words(w->result->rule));
+	                       rule_name(w->result->rule));
 }
 
 static void withhold(const work *w, fl_run_result *run, const fl_point_result *point) {
@@ -157,13 +178,13 @@ static void withhold(const work *w, fl_run_result *run, const fl_point_result *p
 
 static void decide_run(const work *w, fl_run_result *run) {
 	run->worst = find_worst(run);
-	const fl_point_result *undecidable = find_undecidable(w, run);
+	const fl_point_result *weakest = weakest_point(run);
 	if (w->result->rule == FL_RULE_NONE) {
 		run->verdict_reason = "no verdict: no decision rule is agreed";
 	} else if (w->result->tolerance.basis == FL_BAND_NONE) {
 		run->verdict_reason = "no verdict: no tolerance is stated";
-	} else if (undecidable) {
-		withhold(w, run, undecidable);
+	} else if (weakest && tur_too_small(w, weakest)) {
+		withhold(w, run, weakest);
 	} else if (!run->worst || run->worst->verdict == FL_VERDICT_NONE) {
 		run->verdict_reason = "no verdict: the tolerance says nothing at any of the points";
 	} else {
@@ -193,6 +214,7 @@ fl_status fl_analysis_verdicts(work *w, fl_run_result *run, fl_error *err) {
 		decide_point(w, &run->points[i]);
 	for (size_t i = 0; i < run->combined_count; i++)
 		decide_point(w, &run->combined[i]);
+	warn_about_points(w, run);
 	decide_run(w, run);
 	run->inside_adjust_limit = inside_adjust_limit(w, run);
 	return run->verdict_reason ? FL_OK : fl_fail(err, FL_E_MEMORY, "out of memory for the verdict");

@@ -14,7 +14,7 @@ static const double noticeable_heating_k = 0.1;
 
 static void warn_about_flow(work *w, const fl_point_result *point, const fl_flow *flow) {
 	const char *name = fl_analysis_point_name(w, point);
-	const char *reynolds = fl_analysis_number(w->arena, flow->reynolds, 4);
+	const char *reynolds = fl_analysis_number(w->arena, round(flow->reynolds / 10.0) * 10.0, 4);
 	if (flow->reynolds >= laminar_reynolds)
 		fl_analysis_say(w->arena, &w->warnings,
 		                "%s: Reynolds number %s, the flow is not laminar (below 2000): the reading does not follow "
@@ -25,7 +25,7 @@ static void warn_about_flow(work *w, const fl_point_result *point, const fl_flow
 		                reynolds);
 	if (flow->entrance_m > entrance_share * w->instrument->capillary.length_m)
 		fl_analysis_say(w->arena, &w->warnings, "%s: entrance length %s mm, more than a quarter of the capillary", name,
-		                fl_analysis_number(w->arena, flow->entrance_m * 1e3, 3));
+		                fl_analysis_number(w->arena, round(flow->entrance_m * 1e3), 3));
 	if (flow->heating_k > noticeable_heating_k)
 		fl_analysis_say(w->arena, &w->warnings, "%s: viscous heating %s K in the capillary", name,
 		                fl_analysis_number(w->arena, flow->heating_k, 2));

@@ -9,8 +9,6 @@
 
 #include <math.h>
 
-static const double lowest_x_for_reading = 0.1;
-
 static bool belongs(const fl_reading_result *reading, int point, fl_pass pass) {
 	return reading->used && reading->reading->point == point && reading->reading->pass == pass;
 }
@@ -67,7 +65,7 @@ static fl_status complete(const work *w, fl_point_result *point, fl_error *err) 
 	if (fl_physics_dial_at(&w->instrument->scale, point->x, &point->dial, NULL) < 0)
 		point->dial = NAN;
 	point->error_dial = error_in_dial_units(w, point);
-	point->error_reading = point->x > lowest_x_for_reading ? point->error_span / point->x : NAN;
+	point->error_reading = point->x > FL_LOWEST_X_FOR_READING ? point->error_span / point->x : NAN;
 	return FL_OK;
 }
 

@@ -10,9 +10,6 @@
 #include <stdio.h>
 #include <string.h>
 
-/* Below a tenth of span an error in % of reading says nothing (common practice, no source). */
-static const double lowest_x_for_reading = 0.1;
-
 static fl_reading_result unknown_result(const fl_reading *reading) {
 	fl_reading_result result = {.reading = reading, .used = !reading->struck};
 	result.applied_pa = result.output = result.output_x = NAN;
@@ -102,7 +99,7 @@ static void take_errors(const work *w, fl_reading_result *out) {
 	out->error_span = out->output_x - out->ideal.x;
 	if (fl_physics_dial_at(&w->instrument->scale, out->output_x, &dial, NULL) >= 0)
 		out->error_dial = dial - out->ideal.dial;
-	if (out->ideal.x > lowest_x_for_reading)
+	if (out->ideal.x > FL_LOWEST_X_FOR_READING)
 		out->error_reading = out->error_span / out->ideal.x;
 }
 

@@ -7,6 +7,9 @@
 
 #include "foundleft/analysis.h"
 
+/* Up to a tenth of span an error or a tolerance in % of reading says nothing (common practice, no source). */
+#define FL_LOWEST_X_FOR_READING 0.1
+
 /* Sentences without doubles. After memory ran out `failed` stays set, so that a caller checks once. */
 typedef struct sentences {
 	const char **items;

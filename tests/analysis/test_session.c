@@ -132,7 +132,7 @@ static double noise(uint64_t *seed) { /* splitmix64 (Steele, Lea & Flood 2014), 
 }
 
 /* Zero +0.83 %, span -1.37 %, falling 0.24 % above rising at the running points, scatter 0.03 % of span, oils up to
- * 0.08 K off their temperature; three cycles of three readings. */
+ * 0.08 K off their temperature; three cycles of two readings. */
 static void fill_truth(bench *b, uint64_t *seed) {
 	bench_begin(b);
 	for (int cycle = 1; cycle <= 3; cycle++)
