@@ -10,6 +10,7 @@
 #include <string.h>
 
 #include "report.h"
+#include "report_parts.h"
 
 #define FORMAT "foundleft-assessment-1"
 #define PERCENT 100.0
@@ -256,6 +257,19 @@ static void write_terms(json *to, const fl_result *result) {
 	strings(to, "warnings", result->warnings, result->warning_count);
 }
 
+/* Number of a point from 1, null where `determined` is false or it is the stopped zero. */
+static void point_number(json *to, const char *name, bool determined, int point) {
+	if (!determined || point == FL_POINT_ZERO)
+		null(to, name);
+	else
+		integer(to, name, point + 1);
+}
+
+static void write_place(json *to, int point) {
+	boolean(to, "stopped_zero", point == FL_POINT_ZERO);
+	point_number(to, "point", true, point);
+}
+
 /* ---- points --------------------------------------------------------------------------------------------------------
  */
 
@@ -336,28 +350,25 @@ static void write_point_errors(json *to, const fl_point_result *point) {
 	percent(to, "error_pct_reading", point->error_reading);
 	percent(to, "standard_deviation_pct_span", several ? point->s_span : (double)NAN);
 	percent(to, "range_pct_span", several ? point->range_span : (double)NAN);
-	percent(to, "standard_uncertainty_pct_span", point->sum.uc);
-	percent(to, "expanded_uncertainty_pct_span", point->sum.expanded);
-	number(to, "coverage_factor", point->sum.coverage_factor);
-	number(to, "effective_degrees_of_freedom", point->sum.dof_effective);
+	/* Without a budget these are not zero but unknown. */
+	double known = fl_report_has_budget(point) ? 1.0 : (double)NAN;
+	percent(to, "standard_uncertainty_pct_span", known * point->sum.uc);
+	percent(to, "expanded_uncertainty_pct_span", known * point->sum.expanded);
+	number(to, "coverage_factor", known * point->sum.coverage_factor);
+	number(to, "effective_degrees_of_freedom", known * point->sum.dof_effective);
 	boolean(to, "raised_to_reference", point->floored);
 	percent(to, "tolerance_pct_span", point->tolerance_span);
-	number(to, "tolerance_to_uncertainty", point->tur);
+	number(to, "tolerance_to_uncertainty", known * point->tur);
 	word(to, "verdict", fl_verdict_word(point->verdict));
 	write_budget(to, point);
 }
 
 static void write_point(json *to, const fl_case *one, const fl_point_result *point, double hysteresis) {
-	bool zero = point->point == FL_POINT_ZERO;
 	begin(to, NULL, '{');
 	word(to, "oil", point->oil);
 	word(to, "lot", point->lot);
 	string(to, "direction", point->both ? NULL : fl_pass_word(point->pass));
-	boolean(to, "stopped_zero", zero);
-	if (zero)
-		null(to, "point");
-	else
-		integer(to, "point", point->point + 1);
+	write_place(to, point->point);
 	write_point_values(to, one, point);
 	write_point_errors(to, point);
 	if (point->both)
@@ -376,11 +387,7 @@ static void write_reading(json *to, const fl_case *one, const fl_reading_result 
 	integer(to, "sequence", reading->sequence);
 	utc(to, "taken_at", reading->taken);
 	word(to, "oil", known ? session->points[reading->point].oil : NULL);
-	boolean(to, "stopped_zero", zero);
-	if (zero)
-		null(to, "point");
-	else
-		integer(to, "point", reading->point + 1);
+	write_place(to, reading->point);
 	integer(to, "cycle", reading->cycle);
 	string(to, "direction", fl_pass_word(reading->pass));
 	integer(to, "number", reading->number);
@@ -451,12 +458,14 @@ static void write_figures(json *to, const fl_case *one, const fl_run_result *run
 	boolean(to, "linearity_exceeded", here && run->linearity_exceeded);
 	figure(to, "hysteresis_pct_span", hysteresis, run->hysteresis_span);
 	point_name(to, "hysteresis_oil", one, hysteresis, run->hysteresis_point);
+	point_number(to, "hysteresis_point", hysteresis, run->hysteresis_point);
 	figure(to, "hysteresis_single_cycle_pct_span", hysteresis, run->hysteresis_cycle_span);
 	boolean(to, "hysteresis_exceeded", here && run->hysteresis_exceeded);
 	figure(to, "repeatability_pct_span", repeat, run->repeatability_span);
 	string(to, "repeatability_of", !repeat ? NULL : run->repeatability_of_cycles ? "cycles" : "readings");
 	figure(to, "repeatability_standard_deviation_pct_span", repeat, run->repeatability_s_span);
 	point_name(to, "repeatability_oil", one, repeat, run->repeatability_point);
+	point_number(to, "repeatability_point", repeat, run->repeatability_point);
 	string(to, "repeatability_direction", repeat ? fl_pass_word(run->repeatability_pass) : NULL);
 }
 
@@ -486,9 +495,9 @@ static void write_worst(json *to, const fl_run_result *run) {
 	begin(to, "worst", '{');
 	word(to, "oil", worst->oil);
 	string(to, "direction", worst->both ? NULL : fl_pass_word(worst->pass));
-	boolean(to, "stopped_zero", worst->point == FL_POINT_ZERO);
+	write_place(to, worst->point);
 	percent(to, "error_pct_span", worst->error_span);
-	percent(to, "expanded_uncertainty_pct_span", worst->sum.expanded);
+	percent(to, "expanded_uncertainty_pct_span", fl_report_has_budget(worst) ? worst->sum.expanded : (double)NAN);
 	percent(to, "tolerance_pct_span", worst->tolerance_span);
 	end(to, '}');
 }

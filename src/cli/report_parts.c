@@ -44,6 +44,8 @@ char *fl_report_signed(double value, int decimals, char out[FL_CELL_SIZE]) {
 char *fl_report_two_digits(double value, char out[FL_CELL_SIZE]) {
 	if (!isfinite(value) || value == 0.0)
 		return fl_report_fixed(value, 2, out);
+	if (fabs(value) < 0.00005) /* nothing to be read off a scale: noise of the arithmetic */
+		return strcpy(out, "< 0.0001");
 	char scientific[32];
 	snprintf(scientific, sizeof scientific, "%.1e", value);
 	int exponent = (int)strtol(strchr(scientific, 'e') + 1, NULL, 10);
@@ -278,7 +280,12 @@ void fl_table_end(fl_table *table, int limit, fl_text *out) {
 	*table = (fl_table){0};
 }
 
-/* ---- names ------------------------------------------------------------------------------------------------------ */
+/* ---- points: values and names
+ * ------------------------------------------------------------------------------------------------------ */
+
+bool fl_report_has_budget(const fl_point_result *point) {
+	return point->sum.coverage_factor > 0.0;
+}
 
 char *fl_report_point_name(const fl_case *one, int point, char out[FL_CELL_SIZE]) {
 	const fl_session *session = &one->session;

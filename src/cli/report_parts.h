@@ -55,8 +55,11 @@ char *fl_table_cell(fl_table *table, size_t row, int column);
  * and frees it. */
 void fl_table_end(fl_table *table, int width, fl_text *out);
 
-/* ---- names ------------------------------------------------------------------------------------------------------ */
+/* ---- points: values and names
+ * ------------------------------------------------------------------------------------------------------ */
 
+/* False where nothing stands in the budget, so that U, k and what follows from them are not determined. */
+bool fl_report_has_budget(const fl_point_result *point);
 /* "zero", the oil, or the place on the scale where there is no oil ("40 % of span"). Returns out. */
 char *fl_report_point_name(const fl_case *one, int point, char out[FL_CELL_SIZE]);
 /* "as-found" with a capital. */

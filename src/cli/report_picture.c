@@ -230,6 +230,14 @@ static const char **cell_at(const report_panel *panel, int row, int column) {
 	return &panel->cells[row * panel->width + column];
 }
 
+/* Did the guard band come out wide enough to be seen? */
+static bool shows_guard(const report_panel *panel) {
+	for (int i = 0; i < panel->width * panel->height; i++)
+		if (panel->cells[i] == panel->marks->guard)
+			return true;
+	return false;
+}
+
 /* The row where the limit is drawn on the side of `sign`. */
 static int limit_row(const report_panel *panel, double tolerance, double sign) {
 	return clamp(row_of(panel, sign * tolerance), 0, panel->height - 1);
@@ -518,8 +526,8 @@ static void add_legend(const fl_case *one, const fl_marks *marks, bool band, boo
 		return;
 	if (guard)
 		snprintf(text, sizeof text,
-		         "%s the tolerance T, %s inside it by more than U, %s guard band: inside by less than U.", marks->limit,
-		         marks->accepted, marks->guard);
+		         "%s the tolerance T, %s inside it by more than U, %s the guard band: inside it by less than U.",
+		         marks->limit, marks->accepted, marks->guard);
 	else
 		snprintf(text, sizeof text, "%s the tolerance T, %s inside it.", marks->limit, marks->accepted);
 	fl_report_wrap(out, "", text, columns);
@@ -560,20 +568,22 @@ void fl_report_draw(const fl_case *one, int columns, const fl_marks *marks, fl_t
 		width = 100; /* wider shows nothing more */
 	report_panel panels[FL_RUN_KINDS] = {{0}};
 	fl_arena arenas[FL_RUN_KINDS] = {{0}};
-	bool ready = true, band = false;
+	bool ready = true, band = false, guard = false;
 	for (int i = 0; i < count; i++) {
 		arenas[i] = panel_open(&panels[i], one, shown[i], width, marks);
-		if (panels[i].cells && panels[i].taken && panels[i].knots)
-			draw(&panels[i]);
-		else
+		if (!panels[i].cells || !panels[i].taken || !panels[i].knots) {
 			ready = false;
+			continue;
+		}
+		draw(&panels[i]);
 		band = band || panels[i].knot_count > 0;
+		guard = guard || shows_guard(&panels[i]);
 	}
 	if (ready) {
 		add_heading(one, limit, out);
 		for (int i = 0; i < count; i += beside ? count : 1)
 			add_panels(&panels[i], beside ? count : 1, width + BETWEEN_COLUMNS, out);
-		add_legend(one, marks, band, has_guard(&panels[0]), limit, out);
+		add_legend(one, marks, band, guard, limit, out);
 	} else
 		out->failed = true;
 	for (int i = 0; i < count; i++)

@@ -121,9 +121,11 @@ static void worst_words(const fl_case *one, const fl_point_result *worst, char *
 	fl_report_signed(worst->error_span * PERCENT, 2, error);
 	fl_report_two_digits(worst->sum.expanded * PERCENT, expanded);
 	fl_report_fixed(worst->tolerance_span * PERCENT, 2, tolerance);
-	int used = snprintf(out, size, "worst at %s: %s\u00a0%% of span, U\u00a0%s (k\u00a0=\u00a0%.2f)", where, error,
-	                    expanded, worst->sum.coverage_factor);
-	if (tolerance[0] && used > 0 && (size_t)used < size)
+	int used = snprintf(out, size, "worst at %s: %s\u00a0%% of span", where, error);
+	if (used > 0 && (size_t)used < size && fl_report_has_budget(worst))
+		used += snprintf(out + used, size - (size_t)used, ", U\u00a0%s (k\u00a0=\u00a0%.2f)", expanded,
+		                 worst->sum.coverage_factor);
+	if (used > 0 && (size_t)used < size && tolerance[0])
 		snprintf(out + used, size - (size_t)used, ", tolerance\u00a0\u00b1%s", tolerance);
 }
 
@@ -190,6 +192,26 @@ static void put_viscosity(fl_table *table, size_t row, int column, double nu_m2_
 	fl_report_fixed(shown, fl_report_places(shown), fl_table_cell(table, row, column));
 }
 
+/* U and k. */
+static void put_expanded(fl_table *table, size_t row, int column, const fl_point_result *point) {
+	if (!fl_report_has_budget(point))
+		return;
+	fl_report_two_digits(point->sum.expanded * PERCENT, fl_table_cell(table, row, column));
+	fl_report_fixed(point->sum.coverage_factor, 2, fl_table_cell(table, row, column + 1));
+}
+
+/* Standard uncertainty, degrees of freedom, tolerance over U. */
+static void put_standard(fl_table *table, size_t row, int column, const fl_point_result *point) {
+	if (!fl_report_has_budget(point))
+		return;
+	fl_report_two_digits(point->sum.uc * PERCENT, fl_table_cell(table, row, column));
+	if (point->sum.dof_effective > 9999.0)
+		put(table, row, column + 1, "> 9999");
+	else
+		fl_report_fixed(floor(point->sum.dof_effective), 0, fl_table_cell(table, row, column + 1));
+	fl_report_fixed(point->tur, 1, fl_table_cell(table, row, column + 2));
+}
+
 static int output_places(const fl_case *one) {
 	return fl_physics_signal_range(one->instrument->scale.signal)->unit == FL_U_BAR ? 4 : 3;
 }
@@ -229,8 +251,7 @@ static void print_found(const report_page *page, const fl_run_result *run) {
 		fl_report_fixed(point->ideal_output, output_places(one), fl_table_cell(&table, i, 6));
 		fl_report_fixed(point->output, output_places(one), fl_table_cell(&table, i, 7));
 		fl_report_signed(point->error_span * PERCENT, 2, fl_table_cell(&table, i, 8));
-		fl_report_two_digits(point->sum.expanded * PERCENT, fl_table_cell(&table, i, 9));
-		fl_report_fixed(point->sum.coverage_factor, 2, fl_table_cell(&table, i, 10));
+		put_expanded(&table, i, 9, point);
 		fl_report_fixed(point->tolerance_span * PERCENT, 2, fl_table_cell(&table, i, 11));
 		put(&table, i, 12, fl_verdict_word(point->verdict));
 	}
@@ -266,12 +287,7 @@ static void print_spread(const report_page *page, const fl_run_result *run) {
 			fl_report_two_digits(point->s_span * PERCENT, fl_table_cell(&table, i, 5));
 			fl_report_two_digits(point->range_span * PERCENT, fl_table_cell(&table, i, 6));
 		}
-		fl_report_two_digits(point->sum.uc * PERCENT, fl_table_cell(&table, i, 7));
-		if (point->sum.dof_effective > 9999.0)
-			put(&table, i, 8, "> 9999");
-		else
-			fl_report_fixed(floor(point->sum.dof_effective), 0, fl_table_cell(&table, i, 8));
-		fl_report_fixed(point->tur, 1, fl_table_cell(&table, i, 9));
+		put_standard(&table, i, 7, point);
 	}
 	fl_table_end(&table, page->columns, page->out);
 	fl_text_add(page->out, "\n");
@@ -301,8 +317,7 @@ static void print_combined(const report_page *page, const fl_run_result *run) {
 		put_name(page, &table, i, 0, point);
 		put_count(&table, i, 1, point->n);
 		fl_report_signed(point->error_span * PERCENT, 2, fl_table_cell(&table, i, 2));
-		fl_report_two_digits(point->sum.expanded * PERCENT, fl_table_cell(&table, i, 3));
-		fl_report_fixed(point->sum.coverage_factor, 2, fl_table_cell(&table, i, 4));
+		put_expanded(&table, i, 3, point);
 		if (run->hysteresis)
 			fl_report_signed(run->hysteresis[i] * PERCENT, 2, fl_table_cell(&table, i, 5));
 		put(&table, i, 6, fl_verdict_word(point->verdict));

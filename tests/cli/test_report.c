@@ -417,7 +417,8 @@ static void numbers_are_rounded_for_people(void **state) {
 	static const struct {
 		double value;
 		const char *text;
-	} two[] = {{0.0392, "0.039"}, {0.0996, "0.10"}, {0.3522, "0.35"}, {2.349, "2.3"}, {12.3, "12"}, {0.0, "0.00"}};
+	} two[] = {{0.0392, "0.039"}, {0.0996, "0.10"}, {0.3522, "0.35"},     {2.349, "2.3"},
+	           {12.3, "12"},      {0.0, "0.00"},    {1.8e-14, "< 0.0001"}};
 	char out[FL_CELL_SIZE];
 	for (size_t i = 0; i < sizeof two / sizeof *two; i++)
 		assert_string_equal(two[i].text, fl_report_two_digits(two[i].value, out));
@@ -699,6 +700,20 @@ static void json_is_null_where_not_determined(void **state) {
 	json_decref(root);
 }
 
+static void an_empty_budget_gives_no_uncertainty(void **state) {
+	fixture *f = *state;
+	f->points[0][7].sum = (fl_budget_sum){0};
+	f->points[0][7].tur = INFINITY;
+	json_t *root = read_json(f), *point = json_array_get(json_object_get(run_of(root, 0), "points"), 7);
+	is_null(point, "expanded_uncertainty_pct_span");
+	is_null(point, "coverage_factor");
+	is_null(point, "tolerance_to_uncertainty");
+	json_decref(root);
+	fl_text_clear(&f->out);
+	fl_report_text(&f->one, 80, &f->out);
+	lacks(f->out.data, "\u221e");
+}
+
 static void json_gives_no_current_for_a_pneumatic_signal(void **state) {
 	fixture *f = *state;
 	f->instrument.scale.signal = FL_SIGNAL_02_1_BAR;
@@ -782,6 +797,7 @@ int main(void) {
 	    TEST(json_holds_the_numbers),
 	    TEST(json_numbers_are_short_and_exact),
 	    TEST(json_is_null_where_not_determined),
+	    TEST(an_empty_budget_gives_no_uncertainty),
 	    TEST(json_gives_no_current_for_a_pneumatic_signal),
 	    TEST(json_keeps_struck_readings_and_odd_names),
 	    TEST(every_key_is_documented),
