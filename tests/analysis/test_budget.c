@@ -193,6 +193,12 @@ static void zero_has_meter_and_scatter_only(void **state) {
 	check_near("stopped zero", 0.0025 / 16.0, run->stopped_zero_span, 1e-12);
 	check_near("U of the stopped zero", run->points[0].sum.expanded, run->stopped_zero_u_span, 0.0);
 	bench_end(&b);
+	for (int n = 0; n < 4; n++)
+		bench_oil(&b, 1, FL_PASS_FALLING, FL_POINT_ZERO, 4.011 + 0.001 * n, NAN);
+	run = bench_assess(&b);
+	assert_true(run->combined[0].both);
+	assert_int_equal(run->combined[0].budget_count, 4); /* no half hysteresis either */
+	bench_end(&b);
 }
 
 /* A pressure standard in mbar, U 0.05 mbar, k = 2, over 100 mbar of full scale: 0.05 % of span at every point. */
