@@ -53,6 +53,17 @@ static const char *quantity_words(fl_quantity quantity) {
 	return "another quantity";
 }
 
+/* A percentage stands for a fraction; "of span" and "of reading" are bands, which other readers take. */
+static bool unit_fits(fl_unit unit, fl_quantity quantity) {
+	return fl_unit_quantity(unit) == quantity && unit != FL_U_PERCENT_SPAN && unit != FL_U_PERCENT_READING;
+}
+
+static const char *unit_words(fl_unit unit) {
+	return unit == FL_U_PERCENT_SPAN      ? "a part of the span"
+	       : unit == FL_U_PERCENT_READING ? "a part of the reading"
+	                                      : quantity_words(fl_unit_quantity(unit));
+}
+
 /* Adds `word` to a list in a text: "a", "a or b", "a, b or c". */
 static void add_word(char *out, size_t size, const char *word, bool first, bool last) {
 	size_t used = strlen(out);
@@ -69,7 +80,7 @@ char *fl_document_units(fl_quantity quantity, char *out, size_t size) {
 	const char *words[FL_UNIT_COUNT + 1] = {NULL};
 	size_t count = 0;
 	for (int unit = FL_U_NONE + 1; unit < FL_UNIT_COUNT; unit++)
-		if (fl_unit_quantity((fl_unit)unit) == quantity)
+		if (unit_fits((fl_unit)unit, quantity))
 			words[count++] = fl_unit_text((fl_unit)unit);
 	join_words(words, out, size);
 	return out;
@@ -198,10 +209,11 @@ fl_status fl_node_text(const fl_node *map, const char *key, bool required, const
 
 fl_status fl_node_choice(const fl_node *map, const char *key, bool required, const char *const *words, int *out,
                          fl_error *err) {
-	char list[LIST_SIZE];
+	char list[LIST_SIZE], needed[LIST_SIZE + NAME_SIZE];
 	join_words(words, list, sizeof list);
+	snprintf(needed, sizeof needed, "one of %s", list);
 	const fl_node *scalar;
-	fl_status status = find_scalar(map, key, required, list, &scalar, err);
+	fl_status status = find_scalar(map, key, required, needed, &scalar, err);
 	if (status != FL_OK || !scalar)
 		return status;
 	char word[NAME_SIZE];
@@ -297,7 +309,7 @@ fl_status fl_node_measure(const fl_node *scalar, double *value, fl_unit *unit, f
 /* The quantity fits, or the sentence that says which one would. `written` is what stands in the file. */
 static fl_status check_quantity(const fl_node *scalar, const char *written, fl_quantity quantity, fl_unit unit,
                                 fl_error *err) {
-	if (fl_unit_quantity(unit) == quantity)
+	if (unit_fits(unit, quantity))
 		return FL_OK;
 	char units[LIST_SIZE];
 	fl_document_units(quantity, units, sizeof units);
@@ -308,7 +320,7 @@ static fl_status check_quantity(const fl_node *scalar, const char *written, fl_q
 		return fl_fail_at(err, FL_E_VALUE, fl_node_place(scalar), "\"%.60s\" has no unit: write it with %s", written,
 		                  units);
 	return fl_fail_at(err, FL_E_VALUE, fl_node_place(scalar), "\"%.60s\" is %s: %s in %s is needed", written,
-	                  quantity_words(fl_unit_quantity(unit)), quantity_words(quantity), units);
+	                  unit_words(unit), quantity_words(quantity), units);
 }
 
 static fl_status find_measure(const fl_node *map, const char *key, bool required, fl_quantity quantity,
@@ -427,6 +439,21 @@ static fl_status read_both_ends(const fl_node *scalar, const char *text, const c
 	return FL_OK;
 }
 
+static fl_status refuse_range(const fl_node *scalar, bool open, fl_quantity wanted, fl_error *err) {
+	const char *unit = "mm²/s";
+	for (int u = FL_UNIT_COUNT - 1; u > FL_U_NONE; u--)
+		if (wanted != FL_Q_NONE && unit_fits((fl_unit)u, wanted))
+			unit = fl_unit_text((fl_unit)u);
+	if (open)
+		return fl_fail_at(
+		    err, FL_E_VALUE, fl_node_place(scalar),
+		    "\"%.60s\" is not a range: write it such as \"0 to 60 °C\", \"at least 0 bar\" or \"at most 60 "
+		    "°C\"",
+		    scalar->text);
+	return fl_fail_at(err, FL_E_VALUE, fl_node_place(scalar),
+	                  "\"%.60s\" is not a range: write it such as \"0 to 50 %s\"", scalar->text, unit);
+}
+
 static fl_status read_span(const fl_node *scalar, bool open, fl_quantity wanted, double *low, double *high,
                            fl_unit *unit, fl_error *err) {
 	const char *text = scalar->text;
@@ -437,8 +464,7 @@ static fl_status read_span(const fl_node *scalar, bool open, fl_quantity wanted,
 		return read_open_end(scalar, text, false, wanted, low, high, unit, err);
 	if (middle)
 		return read_both_ends(scalar, text, middle, wanted, low, high, unit, err);
-	return fl_fail_at(err, FL_E_VALUE, fl_node_place(scalar), "\"%.60s\" is not a range: write it such as \"%s\"", text,
-	                  open ? "0 to 60 °C\", \"at least 0 bar\" or \"at most 60 °C" : "0 to 50 mm²/s");
+	return refuse_range(scalar, open, wanted, err);
 }
 
 fl_status fl_node_span(const fl_node *map, const char *key, bool required, fl_quantity quantity, bool open, double *low,

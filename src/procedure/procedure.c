@@ -167,15 +167,23 @@ static fl_status read_medium(const fl_node *root, fl_procedure *p, fl_error *err
 	                             &p->bath_tolerance_k, NULL, err);
 }
 
+/* "40 % of span", also "40 %": there is nothing else that a place on the scale could be part of. */
 static fl_status read_percent_span(const fl_node *map, const char *key, bool required, double *pct, fl_error *err) {
-	double fraction = NAN;
+	const char *text = NULL;
+	double value = 0.0;
 	fl_unit unit = FL_U_NONE;
-	TRY(fl_node_amount_within(map, key, required, FL_Q_RATIO, -0.05, 1.1, &fraction, &unit, err));
-	if (isnan(fraction))
+	TRY(fl_node_text(map, key, required, &text, err));
+	if (!text)
 		return FL_OK;
-	if (unit == FL_U_PERCENT_READING)
-		return fl_fail_at(err, FL_E_VALUE, fl_node_place(fl_node_get(map, key)), "write it in %% of span");
-	*pct = fraction * 100.0;
+	const fl_node *scalar = fl_node_get(map, key);
+	TRY(fl_node_measure(scalar, &value, &unit, err));
+	if (unit != FL_U_PERCENT_SPAN && unit != FL_U_PERCENT)
+		return fl_fail_at(err, FL_E_VALUE, fl_node_place(scalar), "\"%.60s\" does not fit here: write it in %% of span",
+		                  text);
+	if (value < -5.0 || value > 110.0)
+		return fl_fail_at(err, FL_E_RANGE, fl_node_place(scalar), "%.60s is not possible: from -5 to 110 %% would be",
+		                  text);
+	*pct = value;
 	return FL_OK;
 }
 

@@ -52,8 +52,8 @@ static fl_status read_amount(const fl_node *map, fl_question *question, fl_error
 	}
 	if (question->plausible_low < question->possible_low || question->plausible_high > question->possible_high)
 		return fl_fail_at(err, FL_E_VALUE, fl_node_place(fl_node_get(map, "plausible")),
-		                  "what is plausible has to lie within what is possible, %g to %g %s", question->possible_low,
-		                  question->possible_high, fl_unit_text(question->unit));
+		                  "what is plausible has to lie within what is possible, \"%.60s\"",
+		                  fl_node_get(map, "possible")->text);
 	return FL_OK;
 }
 
