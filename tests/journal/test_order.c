@@ -1,0 +1,221 @@
+/* test_order.c - the order of work as the session holds it: every refusal, and that a refusal changes nothing.
+ * SPDX-License-Identifier: GPL-3.0-or-later */
+#include "bench.h"
+
+static fl_status give(fl_session *s, fl_event event, fl_error *err) {
+	event.sequence = s->last_sequence + 1;
+	return fl_session_apply(s, &event, err);
+}
+
+static void take(fl_session *s, fl_event event) {
+	fl_error err = {0};
+	fl_status status = give(s, event, &err);
+	if (status != FL_OK)
+		print_error("%s: %s\n", fl_verb_word(event.verb), err.message);
+	assert_int_equal(status, FL_OK);
+}
+
+static void refuse(fl_session *s, fl_status expected, const char *part, fl_event event) {
+	fl_error err = {0};
+	int sequence = s->last_sequence;
+	size_t readings = s->reading_count, adjustments = s->adjustment_count, texts = s->text_count;
+	fl_status status = give(s, event, &err);
+	if (status != expected || !strstr(err.message, part))
+		print_error("%s: status %d, \"%s\" lacks \"%s\"\n", fl_verb_word(event.verb), status, err.message, part);
+	assert_int_equal(status, expected);
+	assert_non_null(strstr(err.message, part));
+	assert_int_equal(s->last_sequence, sequence);
+	assert_int_equal(s->reading_count, readings);
+	assert_int_equal(s->adjustment_count, adjustments);
+	assert_int_equal(s->text_count, texts);
+}
+
+#define E(v, ...) ((fl_event){.verb = FL_V_##v, .fields = {__VA_ARGS__}})
+#define RUN(kind) E(RUN, [FL_F_RUN] = kind)
+#define CLOSE_RUN(kind) E(CLOSE_RUN, [FL_F_RUN] = kind, [FL_F_BY] = "A. Holm")
+#define MISSING(kind) E(MISSING, [FL_F_RUN] = kind, [FL_F_REASON] = "touched by the watch")
+#define DECIDE(word) E(DECIDE, [FL_F_ANSWER] = word, [FL_F_REASON] = "as agreed", [FL_F_BY] = "A. Holm")
+#define ADJUST E(ADJUST, [FL_F_ITEM] = "zero", [FL_F_BEFORE] = "4.02 mA", [FL_F_AFTER] = "4.00 mA")
+#define CLOSE E(CLOSE, [FL_F_BY] = "A. Holm")
+#define UNDO(n) E(UNDO, [FL_F_TARGET] = n, [FL_F_REASON] = "typed wrongly", [FL_F_BY] = "A. Holm")
+#define STRIKE(n) E(STRIKE, [FL_F_TARGET] = n, [FL_F_REASON] = "air bubble", [FL_F_BY] = "A. Holm")
+#define READ(kind, n, ma)                                                                                         \
+	E(READ, [FL_F_RUN] = kind, [FL_F_CYCLE] = "1", [FL_F_PASS] = "rising", [FL_F_POINT] = "1", [FL_F_NUMBER] = n, \
+	  [FL_F_TYPED] = ma, [FL_F_UNIT] = "mA", [FL_F_VALUE] = ma)
+
+/* Opened, with texts and one point: ready for a run. */
+static void prepare(fl_session *s) {
+	*s = (fl_session){0};
+	for (int i = 0; i < 9; i++)
+		take(s, small_session[i]);
+}
+
+static void to_closed_as_found(fl_session *s) {
+	prepare(s);
+	take(s, RUN("as-found"));
+	take(s, READ("as-found", "1", "7.06"));
+	take(s, CLOSE_RUN("as-found"));
+}
+
+static void opening_comes_first_and_once(void **state) {
+	(void)state;
+	fl_session s = {0};
+	refuse(&s, FL_E_STATE, "begins with an entry \"open\"", RUN("as-found"));
+	fl_event other = small_session[0];
+	other.fields[FL_F_FORMAT] = "2";
+	refuse(&s, FL_E_VALUE, "this program reads 1", other);
+	take(&s, small_session[0]);
+	refuse(&s, FL_E_STATE, "open already", small_session[0]);
+	refuse(&s, FL_E_STATE, "procedure and instrument", RUN("as-found"));
+	fl_session_free(&s);
+}
+
+static void fields_are_held_to_their_table(void **state) {
+	(void)state;
+	fl_session s;
+	prepare(&s);
+	refuse(&s, FL_E_VALUE, "needs the field \"reason\"", E(MISSING, [FL_F_RUN] = "as-found"));
+	refuse(&s, FL_E_VALUE, "has no field \"by\"", E(RUN, [FL_F_RUN] = "as-found", [FL_F_BY] = "A"));
+	refuse(&s, FL_E_VALUE, "cannot be \"third\"", RUN("third"));
+	refuse(&s, FL_E_VALUE, "cannot be \"\"", E(MISSING, [FL_F_RUN] = "as-found", [FL_F_REASON] = ""));
+	refuse(&s, FL_E_VALUE, "not UTF-8", E(REMARK, [FL_F_TYPED] = "\xff"));
+	refuse(&s, FL_E_VALUE, "no unit", E(SET, [FL_F_ID] = "x", [FL_F_TYPED] = "1", [FL_F_VALUE] = "1"));
+	refuse(&s, FL_E_VALUE, "cannot be \"nan\"",
+	       E(SET, [FL_F_ID] = "x", [FL_F_TYPED] = "1", [FL_F_UNIT] = "bar", [FL_F_VALUE] = "nan"));
+	refuse(&s, FL_E_STATE, "not in the record", E(EQUIP, [FL_F_ROLE] = "bath", [FL_F_ID] = "BA-2"));
+	refuse(&s, FL_E_STATE, "stands in this session already", small_session[2]);
+	refuse(&s, FL_E_STATE, "number 2", small_session[7]);
+	fl_session_free(&s);
+}
+
+static void as_found_is_locked_before_any_adjustment(void **state) {
+	(void)state;
+	fl_session s;
+	prepare(&s);
+	refuse(&s, FL_E_STATE, "as-found comes first", ADJUST);
+	refuse(&s, FL_E_STATE, "has to be closed", DECIDE("adjust"));
+	refuse(&s, FL_E_STATE, "before as-left", RUN("as-left"));
+	refuse(&s, FL_E_STATE, "has not begun", READ("as-found", "1", "7.06"));
+	take(&s, RUN("as-found"));
+	refuse(&s, FL_E_STATE, "begun already", RUN("as-found"));
+	refuse(&s, FL_E_STATE, "it is available", MISSING("as-found"));
+	refuse(&s, FL_E_STATE, "no reading", CLOSE_RUN("as-found"));
+	take(&s, READ("as-found", "1", "7.06"));
+	refuse(&s, FL_E_STATE, "as-found comes first", ADJUST);
+	refuse(&s, FL_E_STATE, "in the record already", READ("as-found", "1", "7.07"));
+	take(&s, CLOSE_RUN("as-found"));
+	refuse(&s, FL_E_STATE, "is closed", READ("as-found", "2", "7.06"));
+	refuse(&s, FL_E_STATE, "locked", STRIKE("11"));
+	refuse(&s, FL_E_STATE, "cannot be taken back", UNDO("11"));
+	refuse(&s, FL_E_STATE, "without the decision", ADJUST);
+	refuse(&s, FL_E_STATE, "before the decision", CLOSE);
+	take(&s, DECIDE("adjust"));
+	refuse(&s, FL_E_STATE, "at least one adjustment", RUN("as-left"));
+	take(&s, ADJUST);
+	refuse(&s, FL_E_STATE, "cannot be taken back", UNDO("13")); /* the decision was acted on */
+	take(&s, RUN("as-left"));
+	refuse(&s, FL_E_STATE, "would spoil it", ADJUST);
+	refuse(&s, FL_E_STATE, "before the as-left run", CLOSE);
+	take(&s, READ("as-left", "1", "7.00"));
+	take(&s, CLOSE_RUN("as-left"));
+	take(&s, CLOSE);
+	refuse(&s, FL_E_STATE, "only a remark", E(SET, [FL_F_ID] = "place", [FL_F_TYPED] = "elsewhere"));
+	take(&s, E(REMARK, [FL_F_TYPED] = "seen later"));
+	assert_int_equal(fl_session_last_undoable(&s), 0);
+	fl_session_free(&s);
+}
+
+static void a_missing_as_found_is_told_and_stays_missing(void **state) {
+	(void)state;
+	fl_session s;
+	prepare(&s);
+	take(&s, MISSING("as-found"));
+	refuse(&s, FL_E_STATE, "declared not available", RUN("as-found"));
+	assert_string_equal(s.runs[FL_RUN_AS_FOUND].missing_reason, "touched by the watch");
+	take(&s, DECIDE("leave"));
+	assert_true(fl_session_wants_as_left(&s));
+	refuse(&s, FL_E_STATE, "cannot be taken back", UNDO("10"));
+	take(&s, RUN("as-left"));
+	take(&s, READ("as-left", "1", "7.00"));
+	take(&s, CLOSE_RUN("as-left"));
+	take(&s, CLOSE);
+	fl_session_free(&s);
+}
+
+static void left_alone_needs_no_as_left(void **state) {
+	(void)state;
+	fl_session s;
+	to_closed_as_found(&s);
+	take(&s, DECIDE("leave"));
+	assert_false(fl_session_wants_as_left(&s));
+	refuse(&s, FL_E_STATE, "was not to adjust", RUN("as-left"));
+	refuse(&s, FL_E_STATE, "without the decision", ADJUST);
+	take(&s, CLOSE);
+	fl_session_free(&s);
+}
+
+static void readings_are_marked_never_changed(void **state) {
+	(void)state;
+	fl_session s;
+	prepare(&s);
+	take(&s, RUN("as-found"));
+	take(&s, READ("as-found", "1", "7.06"));
+	take(&s, READ("as-found", "2", "9.99"));
+	take(&s, STRIKE("12"));
+	refuse(&s, FL_E_STATE, "struck already", STRIKE("12"));
+	refuse(&s, FL_E_VALUE, "no reading with the number 3", STRIKE("3"));
+	assert_true(s.readings[1].struck);
+	check_near("struck value stays", 9.99, s.readings[1].output, 0.0);
+	assert_string_equal(s.readings[1].struck_reason, "air bubble");
+	assert_string_equal(s.readings[1].struck_by, "A. Holm");
+	assert_int_equal(fl_session_last_undoable(&s), 11);
+	take(&s, UNDO("11"));
+	assert_true(s.readings[0].undone);
+	check_near("value taken back stays", 7.06, s.readings[0].output, 0.0);
+	take(&s, READ("as-found", "1", "7.07"));
+	assert_int_equal(s.reading_count, 3);
+	fl_session_free(&s);
+}
+
+static void failure_signals_are_no_data(void **state) {
+	(void)state;
+	fl_session s;
+	prepare(&s);
+	take(&s, RUN("as-found"));
+	/* NAMUR NE 43: measuring 3.8 to 20.5 mA, failure below 3.6 and above 21 mA. */
+	static const char *const bad[] = {"3.5", "3.7", "20.6", "21.5", "0"};
+	for (size_t i = 0; i < sizeof bad / sizeof bad[0]; i++)
+		refuse(&s, FL_E_RANGE, "NE 43", READ("as-found", "1", bad[i]));
+	take(&s, READ("as-found", "1", "3.8"));
+	take(&s, READ("as-found", "2", "20.5"));
+	fl_session_free(&s);
+}
+
+static void taking_a_point_back_drops_what_made_it_indicative(void **state) {
+	(void)state;
+	fl_session s;
+	prepare(&s);
+	take(&s, E(INDICATIVE, [FL_F_ITEM] = "2511B", [FL_F_REASON] = "no other", [FL_F_BY] = "A. Holm"));
+	take(&s, UNDO("8"));
+	assert_int_equal(s.point_count, 0);
+	assert_int_equal(s.indicative_count, 0);
+	fl_event point = small_session[7];
+	take(&s, point);
+	take(&s, RUN("as-found"));
+	refuse(&s, FL_E_STATE, "cannot be taken back", UNDO("12"));
+	fl_session_free(&s);
+}
+
+int main(void) {
+	const struct CMUnitTest tests[] = {
+	    cmocka_unit_test(opening_comes_first_and_once),
+	    cmocka_unit_test(fields_are_held_to_their_table),
+	    cmocka_unit_test(as_found_is_locked_before_any_adjustment),
+	    cmocka_unit_test(a_missing_as_found_is_told_and_stays_missing),
+	    cmocka_unit_test(left_alone_needs_no_as_left),
+	    cmocka_unit_test(readings_are_marked_never_changed),
+	    cmocka_unit_test(failure_signals_are_no_data),
+	    cmocka_unit_test(taking_a_point_back_drops_what_made_it_indicative),
+	};
+	return cmocka_run_group_tests(tests, NULL, NULL);
+}
