@@ -164,7 +164,8 @@ static HPDF_Dict add_font(HPDF_Doc pdf, fl_press *press, const fl_typeface *type
 	unsigned char *bytes;
 	size_t length, glyph_count;
 	char name[96];
-	if (fl_face_subset(&type->face, type->glyphs, type->count, &press->arena, &bytes, &length, &glyph_count, err) != FL_OK)
+	if (fl_face_subset(&type->face, type->glyphs, type->count, &press->arena, &bytes, &length, &glyph_count, err) !=
+	    FL_OK)
 		return NULL;
 	subset_name(type, name, sizeof name);
 	HPDF_Dict descriptor = add_descriptor(pdf, &type->face, name, bytes, length, glyph_count);
@@ -196,7 +197,7 @@ static void add_page(HPDF_Doc pdf, const fl_text *content, HPDF_Dict fonts[FL_WE
 	if (!resources || !used || HPDF_Dict_Add(resources, "Font", used) != HPDF_OK)
 		return;
 	for (int i = 0; i < FL_WEIGHTS; i++) {
-		char key[8];
+		char key[16];
 		snprintf(key, sizeof key, "F%d", i + 1);
 		HPDF_Dict_Add(used, key, fonts[i]);
 	}

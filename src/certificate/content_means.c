@@ -1,0 +1,219 @@
+/* content_means.c - with what the work was done: equipment, reference oils, conditions, permit and safety.
+ * SPDX-License-Identifier: GPL-3.0-or-later */
+#include "writing.h"
+
+#include <math.h>
+#include <string.h>
+
+/* ---- equipment and oils
+ * ------------------------------------------------------------------------------------------------ */
+
+static const char *uncertainty_of(fl_writing *w, const fl_equipment *item) {
+	fl_sheet *sheet = w->sheet;
+	const char *unit = item->unit == FL_U_CELSIUS ? "K" : fl_unit_text(item->unit);
+	if (!(item->k > 0))
+		return fl_sheet_printf(sheet, "±%s %s, half width", fl_word_plain(sheet, item->U, 6), unit);
+	return fl_sheet_printf(sheet, "%s %s (k = %s)", fl_word_plain(sheet, item->U, 6), unit,
+	                       fl_word_plain(sheet, item->k, 2));
+}
+
+static void write_equipment(fl_writing *w) {
+	static const fl_column columns[] = {{"use", "", "", FL_ALIGN_LEFT, false},
+	                                    {"equipment", "", "", FL_ALIGN_LEFT, false},
+	                                    {"certificate", "", "", FL_ALIGN_LEFT, false},
+	                                    {"issued by", "", "", FL_ALIGN_LEFT, true},
+	                                    {"U of its certificate", "", "", FL_ALIGN_LEFT, false},
+	                                    {"calibrated", "", "", FL_ALIGN_LEFT, false},
+	                                    {"due", "", "", FL_ALIGN_LEFT, false},
+	                                    {"on the day", "", "", FL_ALIGN_LEFT, false}};
+	fl_sheet *sheet = w->sheet;
+	fl_block *table = fl_sheet_add_table(sheet, columns, sizeof columns / sizeof *columns);
+	for (size_t i = 0; i < w->session->equipment_count; i++) {
+		const fl_session_equipment *used = &w->session->equipment[i];
+		if (used->undone)
+			continue;
+		const fl_equipment *item = fl_stock_equipment(w->stock, used->id);
+		const char *cells[8] = {fl_stock_role_text(used->role), used->id, "unknown", "", "", "", "", "not traceable"};
+		if (item) {
+			cells[2] = item->certificate;
+			cells[3] = item->issuer;
+			cells[4] = uncertainty_of(w, item);
+			cells[5] = fl_word_day(sheet, item->calibrated_on);
+			cells[6] = fl_word_day(sheet, item->due_on);
+			cells[7] = fl_stock_equipment_in_date(item, w->session->day, NULL) == FL_OK ? "in date" : "out of date";
+		}
+		fl_sheet_row(sheet, table, FL_ROW_PLAIN, cells);
+	}
+}
+
+/* The certified point nearest to the temperature of the oils. */
+static const fl_oil_point *nearest(const fl_writing *w, const fl_oil *oil, size_t *index) {
+	*index = 0;
+	for (size_t i = 1; i < oil->table.count; i++)
+		if (fabs(oil->table.points[i].temp_c - w->procedure->bath_c) <
+		    fabs(oil->table.points[*index].temp_c - w->procedure->bath_c))
+			*index = i;
+	return oil->table.count ? &oil->table.points[*index] : NULL;
+}
+
+static void write_oil(fl_writing *w, fl_block *table, const fl_session_point *at) {
+	fl_sheet *sheet = w->sheet;
+	const fl_oil *oil = fl_stock_oil(w->stock, at->lot);
+	const char *cells[13] = {at->oil, at->lot, "unknown", "", "", "", "", "", "", "", "", "", "not traceable"};
+	size_t i;
+	const fl_oil_point *point = oil ? nearest(w, oil, &i) : NULL;
+	if (point) {
+		cells[2] = oil->certificate;
+		cells[3] = oil->issuer;
+		cells[4] = fl_word_number(sheet, point->temp_c, 2);
+		cells[5] = fl_word_plain(sheet, point->nu_m2_s * 1e6, 5);
+		cells[6] = fl_word_number(sheet, 100 * oil->U_nu_rel[i], 2);
+		cells[7] = fl_word_number(sheet, point->rho_kg_m3, 1);
+		cells[8] = fl_word_number(sheet, oil->U_rho_kg_m3[i], 1);
+		cells[9] = fl_word_day(sheet, oil->certified_on);
+		cells[10] = fl_word_day(sheet, oil->use_before);
+		cells[11] = fl_word_day(sheet, oil->opened_on);
+		cells[12] = fl_stock_oil_in_date(oil, w->session->day, NULL) == FL_OK ? "in date" : "out of date";
+	}
+	fl_sheet_row(sheet, table, FL_ROW_PLAIN, cells);
+}
+
+/* Coverage factors of the oils' certificates in one sentence, where they are all alike; else each. */
+static void write_oil_factors(fl_writing *w) {
+	const fl_oil *first = NULL;
+	bool alike = true;
+	for (size_t i = 0; i < w->session->point_count; i++) {
+		const fl_oil *oil = fl_stock_oil(w->stock, w->session->points[i].lot);
+		if (!oil)
+			continue;
+		first = first ? first : oil;
+		alike = alike && oil->k_nu == first->k_nu && oil->k_rho == first->k_rho;
+	}
+	if (first && alike)
+		fl_sheet_addf(w->sheet, FL_BLOCK_SMALL,
+		              "U as the oils' certificates state it: k = %s for the viscosity, k = %s for the density. Between "
+		              "certified temperatures the viscosity follows ASTM D341 and the density a straight line.",
+		              fl_word_plain(w->sheet, first->k_nu, 2), fl_word_plain(w->sheet, first->k_rho, 2));
+	for (size_t i = 0; !alike && i < w->session->point_count; i++) {
+		const fl_oil *oil = fl_stock_oil(w->stock, w->session->points[i].lot);
+		if (oil)
+			fl_sheet_addf(w->sheet, FL_BLOCK_SMALL, "%s (%s): k = %s for the viscosity, k = %s for the density.",
+			              oil->name, oil->lot, fl_word_plain(w->sheet, oil->k_nu, 2),
+			              fl_word_plain(w->sheet, oil->k_rho, 2));
+	}
+}
+
+static void write_oils(fl_writing *w) {
+	static const char *const at = "certified, nearest to the bath";
+	const fl_column columns[] = {
+	    {"oil", "", "", FL_ALIGN_LEFT, false},         {"lot", "", "", FL_ALIGN_LEFT, false},
+	    {"certificate", "", "", FL_ALIGN_LEFT, false}, {"issued by", "", "", FL_ALIGN_LEFT, true},
+	    {"T", "°C", at, FL_ALIGN_DECIMAL, false},      {"ν", "mm²/s", at, FL_ALIGN_DECIMAL, false},
+	    {"U", "%", at, FL_ALIGN_DECIMAL, false},       {"ρ", "kg/m³", at, FL_ALIGN_DECIMAL, false},
+	    {"U", "kg/m³", at, FL_ALIGN_DECIMAL, false},   {"certified", "", "", FL_ALIGN_LEFT, false},
+	    {"use before", "", "", FL_ALIGN_LEFT, false},  {"opened", "", "", FL_ALIGN_LEFT, false},
+	    {"on the day", "", "", FL_ALIGN_LEFT, false}};
+	fl_sheet_add(w->sheet, FL_BLOCK_HEADING, "Reference oils");
+	fl_block *table = fl_sheet_add_table(w->sheet, columns, sizeof columns / sizeof *columns);
+	for (size_t i = 0; i < w->session->point_count; i++)
+		if (!fl_word_is_empty(w->session->points[i].lot))
+			write_oil(w, table, &w->session->points[i]);
+	write_oil_factors(w);
+}
+
+void fl_write_standards(fl_writing *w) {
+	fl_sheet_add(w->sheet, FL_BLOCK_HEADING, "Traceability: measuring equipment");
+	if (w->result->traceable)
+		fl_sheet_add(w->sheet, FL_BLOCK_TEXT,
+		             "The results rest on the certificates below, all in date on the day of the calibration.");
+	else
+		fl_sheet_add(
+		    w->sheet, FL_BLOCK_TEXT,
+		    "The results rest on the certificates below. They are indicative and not traceable, for the reasons "
+		    "given on the first page.");
+	write_equipment(w);
+	if (w->procedure->medium == FL_MEDIUM_OIL)
+		write_oils(w);
+}
+
+/* ---- conditions
+ * -------------------------------------------------------------------------------------------------------- */
+
+static void write_conditions(fl_writing *w) {
+	static const char *const heads[] = {"", ""};
+	int given = 0;
+	for (int i = 0; i < w->procedure->condition_count; i++)
+		given += fl_writing_setting(w, w->procedure->conditions[i].id) != NULL;
+	fl_sheet_add(w->sheet, FL_BLOCK_HEADING, "Conditions");
+	fl_block *grid = fl_sheet_add_grid(w->sheet, FL_BLOCK_GRID, heads, 2);
+	int shown = 0;
+	for (int i = 0; i < w->procedure->condition_count; i++) {
+		const fl_question *question = &w->procedure->conditions[i];
+		const char *value = fl_writing_setting(w, question->id);
+		if (!value && !question->required)
+			continue;
+		fl_sheet_pair(w->sheet, grid, 2 * shown++ < given ? 0 : 1, question->ask, value ? value : "not recorded");
+	}
+}
+
+/* ---- permit, safety, restoring
+ * --------------------------------------------------------------------------------------------- */
+
+static bool is_done(const fl_gate_answer *given) {
+	return given && strcmp(given->answer, "no") != 0;
+}
+
+static const char *answer_of(fl_writing *w, const fl_question *question, const fl_gate_answer *given) {
+	if (!given)
+		return "not answered";
+	if (question->kind == FL_ASK_AMOUNT && *fl_unit_text(question->unit) &&
+	    !strstr(given->answer, fl_unit_text(question->unit)))
+		return fl_sheet_printf(w->sheet, "%s %s", given->answer, fl_unit_text(question->unit));
+	return given->answer;
+}
+
+static void write_answers(fl_writing *w, fl_block *table, const fl_question *questions, int count) {
+	for (int i = 0; i < count; i++) {
+		const fl_gate_answer *given = fl_session_gate(w->session, questions[i].id);
+		char utc[FL_UTC_SIZE] = "";
+		if (given)
+			fl_utc_format(given->at, utc);
+		const char *answer = answer_of(w, &questions[i], given);
+		if (given && !fl_word_is_empty(given->reason))
+			answer = fl_sheet_printf(w->sheet, "%s: %s", answer, given->reason);
+		const char *cells[] = {questions[i].ask, answer,
+		                       given ? fl_sheet_printf(w->sheet, "%.5s", utc + 11) : FL_ABSENT};
+		fl_sheet_row(w->sheet, table, FL_ROW_PLAIN, cells);
+	}
+}
+
+static void list_unfinished(fl_writing *w, const fl_question *questions, int count, bool *headed) {
+	for (int i = 0; i < count; i++) {
+		const fl_gate_answer *given = fl_session_gate(w->session, questions[i].id);
+		if (is_done(given))
+			continue;
+		if (!*headed)
+			fl_sheet_add(w->sheet, FL_BLOCK_STATEMENT, "Unfinished when the session was closed:");
+		*headed = true;
+		const char *why = !given ? "not answered" : fl_word_is_empty(given->reason) ? "no" : given->reason;
+		fl_sheet_addf(w->sheet, FL_BLOCK_ITEM, "%s – %s", questions[i].ask, why);
+	}
+}
+
+void fl_write_gates(fl_writing *w) {
+	static const fl_column columns[] = {{"permit, safety and restoring", "", "", FL_ALIGN_LEFT, true},
+	                                    {"answer", "", "", FL_ALIGN_LEFT, true},
+	                                    {"UTC", "", "", FL_ALIGN_LEFT, false}};
+	const fl_procedure *procedure = w->procedure;
+	bool headed = false;
+	if (procedure->condition_count > 0)
+		write_conditions(w);
+	if (procedure->gate_count + procedure->restore_count == 0)
+		return;
+	fl_sheet_add(w->sheet, FL_BLOCK_HEADING, "Permit, safety and restoring to service");
+	list_unfinished(w, procedure->gates, procedure->gate_count, &headed);
+	list_unfinished(w, procedure->restore, procedure->restore_count, &headed);
+	fl_block *table = fl_sheet_add_table(w->sheet, columns, 3);
+	write_answers(w, table, procedure->gates, procedure->gate_count);
+	write_answers(w, table, procedure->restore, procedure->restore_count);
+}

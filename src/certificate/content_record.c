@@ -1,0 +1,197 @@
+/* content_record.c - adjustments, struck readings, departures, remarks, the record itself, statements, signatures.
+ * SPDX-License-Identifier: GPL-3.0-or-later */
+#include "writing.h"
+
+#include <math.h>
+#include <string.h>
+
+void fl_write_adjustments(fl_writing *w) {
+	static const fl_column columns[] = {{"adjustment", "", "", FL_ALIGN_LEFT, true},
+	                                    {"before", "", "", FL_ALIGN_LEFT, true},
+	                                    {"after", "", "", FL_ALIGN_LEFT, true},
+	                                    {"time", "", "", FL_ALIGN_LEFT, false}};
+	fl_sheet *sheet = w->sheet;
+	size_t live = 0;
+	for (size_t i = 0; i < w->session->adjustment_count; i++)
+		live += !w->session->adjustments[i].undone;
+	fl_sheet_add(sheet, FL_BLOCK_HEADING, "Adjustments");
+	if (live == 0) {
+		fl_sheet_add(sheet, FL_BLOCK_TEXT, "None: nothing was adjusted.");
+		return;
+	}
+	fl_block *table = fl_sheet_add_table(sheet, columns, 4);
+	for (size_t i = 0; i < w->session->adjustment_count; i++) {
+		const fl_adjustment *made = &w->session->adjustments[i];
+		if (made->undone)
+			continue;
+		const char *cells[] = {made->item, made->before, made->after,
+		                       fl_word_time(sheet, made->at, w->issue->utc_offset_min)};
+		fl_sheet_row(sheet, table, FL_ROW_PLAIN, cells);
+	}
+}
+
+/* ---- struck readings
+ * ----------------------------------------------------------------------------------------------------- */
+
+/* "cycle 2, LK-10 (2511B), rising, reading 3" */
+static const char *place_of(const fl_writing *w, const fl_reading *reading) {
+	return fl_sheet_printf(w->sheet, "cycle %d, %s, %s, reading %d", reading->cycle,
+	                       fl_writing_point_name(w, reading->point), fl_pass_word(reading->pass), reading->number);
+}
+
+static double error_of(const fl_writing *w, const fl_reading *reading) {
+	const fl_run_result *run = &w->result->runs[reading->run];
+	for (size_t i = 0; i < run->reading_count; i++)
+		if (run->readings[i].reading->sequence == reading->sequence)
+			return 100 * run->readings[i].error_span;
+	return NAN;
+}
+
+static void write_struck(fl_writing *w) {
+	static const fl_column columns[] = {{"run", "", "", FL_ALIGN_LEFT, false},
+	                                    {"place", "", "", FL_ALIGN_LEFT, true},
+	                                    {"output as typed", "", "", FL_ALIGN_LEFT, false},
+	                                    {"error", "% of span", "", FL_ALIGN_DECIMAL, false},
+	                                    {"reason", "", "", FL_ALIGN_LEFT, true},
+	                                    {"struck by", "", "", FL_ALIGN_LEFT, false}};
+	fl_sheet *sheet = w->sheet;
+	fl_block *table = NULL;
+	size_t taken_back = 0;
+	fl_sheet_add(sheet, FL_BLOCK_HEADING, "Struck readings");
+	for (size_t i = 0; i < w->session->reading_count; i++) {
+		const fl_reading *reading = &w->session->readings[i];
+		taken_back += reading->undone && !reading->watched;
+		if (!reading->struck || reading->undone || reading->watched)
+			continue;
+		if (!table)
+			table = fl_sheet_add_table(sheet, columns, 6);
+		const char *unit = fl_unit_text(reading->unit);
+		const char *cells[] = {fl_run_word(reading->run),
+		                       place_of(w, reading),
+		                       strstr(reading->typed, unit) ? reading->typed
+		                                                    : fl_sheet_printf(sheet, "%s %s", reading->typed, unit),
+		                       fl_word_signed(sheet, error_of(w, reading), 3),
+		                       reading->struck_reason,
+		                       reading->struck_by};
+		fl_sheet_row(sheet, table, FL_ROW_PLAIN, cells);
+	}
+	fl_sheet_add(sheet, table ? FL_BLOCK_SMALL : FL_BLOCK_TEXT,
+	             table ? "Struck readings stay in the record and are left out of the means." : "None.");
+	if (taken_back > 0)
+		fl_sheet_addf(sheet, FL_BLOCK_SMALL, "%zu mistyped %s taken back by a later line of the record, before use.",
+		              taken_back, taken_back == 1 ? "reading was" : "readings were");
+}
+
+/* ---- departures and remarks
+ * ------------------------------------------------------------------------------------------------ */
+
+static void write_departures(fl_writing *w) {
+	fl_sheet *sheet = w->sheet;
+	const fl_session *session = w->session;
+	size_t count = 0;
+	fl_sheet_add(sheet, FL_BLOCK_HEADING, "Departures from the procedure");
+	for (int kind = 0; kind < FL_RUN_KINDS; kind++)
+		if (session->runs[kind].missing) {
+			const char *reason = session->runs[kind].missing_reason;
+			fl_sheet_addf(sheet, FL_BLOCK_ITEM, "No %s run: %s", fl_run_word((fl_run_kind)kind),
+			              fl_word_sentence(sheet, reason ? reason : "no reason given"));
+			count++;
+		}
+	for (size_t i = 0; i < session->indicative_count; i++, count++) {
+		const fl_indicative *entry = &session->indicative[i];
+		fl_sheet_addf(sheet, FL_BLOCK_ITEM, "%s was used although it was out of date: %s %s",
+		              entry->item ? entry->item : "An item",
+		              fl_word_sentence(sheet, entry->reason ? entry->reason : "no reason given"),
+		              entry->by ? entry->by : "");
+	}
+	if (session->source == FL_SOURCE_IMPORT) {
+		fl_sheet_add(
+		    sheet, FL_BLOCK_ITEM,
+		    "The readings were imported from a file: settling, the order of work and the safety questions were "
+		    "not followed by the program.");
+		count++;
+	}
+	if (count == 0)
+		fl_sheet_add(sheet, FL_BLOCK_TEXT, "None recorded.");
+}
+
+static void write_remarks(fl_writing *w) {
+	if (w->session->remark_count == 0)
+		return;
+	fl_sheet_add(w->sheet, FL_BLOCK_HEADING, "Remarks");
+	for (size_t i = 0; i < w->session->remark_count; i++)
+		fl_sheet_add(w->sheet, FL_BLOCK_ITEM, w->session->remarks[i].typed);
+}
+
+/* ---- the record
+ * ------------------------------------------------------------------------------------------------------------ */
+
+static const char *source_words(fl_source source) {
+	switch (source) {
+	case FL_SOURCE_KEYBOARD:
+		return "typed in step by step (keyboard)";
+	case FL_SOURCE_REPLAY:
+		return "replayed from a file of answers (replay)";
+	case FL_SOURCE_IMPORT:
+		return "imported from a file of readings (import)";
+	}
+	return "unknown";
+}
+
+static void write_journal(fl_writing *w) {
+	static const char *const heads[] = {""};
+	fl_sheet *sheet = w->sheet;
+	const fl_session *session = w->session;
+	const fl_issue *issue = w->issue;
+	fl_sheet_add(sheet, FL_BLOCK_HEADING, "The record behind this certificate");
+	fl_block *grid = fl_sheet_add_grid(sheet, FL_BLOCK_GRID, heads, 1);
+	fl_sheet_pair(sheet, grid, 0, "Journal", issue->journal_name);
+	fl_sheet_pair(sheet, grid, 0, "Digest (SHA-256)", issue->journal_digest);
+	fl_sheet_pair(sheet, grid, 0, "Entries", source_words(session->source));
+	fl_sheet_pair(sheet, grid, 0, "Begun", fl_word_time(sheet, session->opened_at, issue->utc_offset_min));
+	fl_sheet_pairf(sheet, grid, 0, "Clock", "%s; times in UTC, local time is %s",
+	               session->declared_clock ? "times as the file states them, not taken from the machine"
+	                                       : "of the machine the record was written on",
+	               fl_word_offset(sheet, issue->utc_offset_min));
+	fl_sheet_pairf(sheet, grid, 0, "Programs", "begun with foundleft %s, certificate by foundleft %s",
+	               session->program ? session->program : "?", issue->program_version ? issue->program_version : "?");
+	fl_sheet_pairf(sheet, grid, 0, "Procedure", "%s, version %s: %s", w->procedure->id, w->procedure->version,
+	               w->procedure->title);
+	fl_sheet_pair(sheet, grid, 0, "Its source", w->procedure->source);
+	if (session->questions > 0)
+		fl_sheet_pairf(sheet, grid, 0, "Asked back", "%d %s the program asked back and was confirmed",
+		               session->questions, session->questions == 1 ? "time" : "times");
+}
+
+void fl_write_record(fl_writing *w) {
+	write_struck(w);
+	write_departures(w);
+	write_remarks(w);
+	write_journal(w);
+}
+
+/* ---- end
+ * -------------------------------------------------------------------------------------------------------------------
+ */
+
+void fl_write_close(fl_writing *w) {
+	static const char *const heads[] = {"Performed by", "Authorised by"};
+	fl_sheet *sheet = w->sheet;
+	const char *performer = fl_writing_setting(w, "performed-by");
+	fl_sheet_add(sheet, FL_BLOCK_HEADING, "Statements");
+	fl_sheet_add(
+	    sheet, FL_BLOCK_TEXT,
+	    "The results relate only to the item named on the first page, as it was on the day of the calibration and "
+	    "under the conditions stated. This certificate may be copied only in full, unless the issuer agrees in "
+	    "writing. It amends no earlier certificate.");
+	fl_block *block = fl_sheet_add_grid(sheet, FL_BLOCK_SIGNATURES, heads, 2);
+	const char *names[] = {performer, w->issue->authorised_by};
+	for (size_t i = 0; i < 2; i++) {
+		if (fl_word_is_empty(names[i]))
+			fl_sheet_pairf(sheet, block, i, "name", "%s", "");
+		else
+			fl_sheet_pair(sheet, block, i, "name", names[i]);
+		fl_sheet_pairf(sheet, block, i, "date and signature", "%s", "");
+	}
+	fl_sheet_addf(sheet, FL_BLOCK_END, "End of certificate %s", w->issue->number);
+}
