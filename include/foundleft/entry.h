@@ -84,14 +84,18 @@ fl_status fl_entry_begin(fl_journal *journal, const fl_io *io, const char *path,
 
 /* A CSV of readings (columns in the manual) becomes a session through the same checks as the keyboard. */
 typedef struct fl_import_options {
-	const char *as_found; /* value of the `session` column for the as-found run, NULL: by the `kind` column */
-	const char *as_left;
+	/* Values of the `session` column for the two runs. Both NULL: by the `kind` column, of which then each kind has
+	 * rows of one session only. One of them NULL: the file has no such run. */
+	const char *as_found, *as_left;
 	const char *performed_by;
 	const char *decision_reason; /* why adjusted or left; NULL: "not recorded" */
 } fl_import_options;
 /* `csv` is the file's text, `file` its name for errors. */
 fl_status fl_entry_import(const fl_entry_setup *setup, const char *csv, const char *file,
                           const fl_import_options *options, fl_text *say, fl_error *err) FL_MUST_USE;
+/* Columns, found by name in the first row, RFC 4180: session, date, kind (as-found, as-left), cycle, direction (up,
+ * down, rising, falling), reading, oil (ZERO: the stopped zero), lot, bath_C, and by the instrument's signal output_mA,
+ * output_bar or output_psi; line_bar_g if it is there. Others are passed over. Rows stand in the order of the plan. */
 /* First day that the `date` column names (with as_found/as_left chosen): the day of the calibration. */
 fl_status fl_entry_import_day(const char *csv, const char *file, const fl_import_options *options, fl_day *day,
                               fl_error *err) FL_MUST_USE;

@@ -130,8 +130,11 @@ int fl_entry_yes(const char *text);
 void fl_entry_draft_begin(fl_entry *entry, const fl_step *step, bool watched);
 /* Fills the draft from a line. */
 fl_status fl_entry_draft_read(fl_entry *entry, const char *line, fl_error *err) FL_MUST_USE;
+fl_status fl_entry_draft_output(fl_entry *entry, const char *text, fl_error *err) FL_MUST_USE;
+fl_status fl_entry_draft_line_pressure(fl_entry *entry, const char *text, fl_error *err) FL_MUST_USE;
 fl_status fl_entry_draft_temperature(fl_entry *entry, const char *text, fl_error *err) FL_MUST_USE;
 fl_status fl_entry_draft_applied(fl_entry *entry, const char *text, fl_error *err) FL_MUST_USE;
+fl_status fl_entry_draft_check_temperature(const fl_entry *entry, fl_error *err) FL_MUST_USE;
 /* Refuses what cannot be: signal, oil's range, still moving. */
 fl_status fl_entry_draft_check(fl_entry *entry, fl_error *err) FL_MUST_USE;
 /* The next doubt that is not confirmed yet; false if none. The question goes to ask[size]. */

@@ -63,7 +63,7 @@ static fl_status refuse_output_unit(const fl_signal_range *range, fl_unit unit, 
 	               fl_unit_text(unit), range->text, fl_unit_text(range->unit));
 }
 
-static fl_status read_output(fl_entry *entry, const char *text, fl_error *err) {
+fl_status fl_entry_draft_output(fl_entry *entry, const char *text, fl_error *err) {
 	fl_draft *d = &entry->draft;
 	const fl_signal_range *range = signal_of(entry);
 	fl_wanted wanted = {"the output", range->unit, -1000.0, 1000.0};
@@ -129,7 +129,7 @@ fl_status fl_entry_draft_applied(fl_entry *entry, const char *text, fl_error *er
 	return FL_OK;
 }
 
-static fl_status read_line_pressure(fl_entry *entry, const char *text, fl_error *err) {
+fl_status fl_entry_draft_line_pressure(fl_entry *entry, const char *text, fl_error *err) {
 	fl_draft *d = &entry->draft;
 	fl_wanted wanted = {"the line pressure", FL_U_BAR, -1.0, 60.0};
 	fl_decimal number;
@@ -162,7 +162,7 @@ static fl_status read_further(fl_entry *entry, const char *text, fl_error *err) 
 	if (applied_fits && (quantity == FL_Q_PRESSURE || unit == FL_U_NONE))
 		return fl_entry_draft_applied(entry, text, err);
 	if (line_fits && (quantity == FL_Q_PRESSURE || (unit == FL_U_NONE && r->has_temp)))
-		return read_line_pressure(entry, text, err);
+		return fl_entry_draft_line_pressure(entry, text, err);
 	return fl_fail(err, FL_E_VALUE, "\"%s\" has no place here: %s", text,
 	               wants_applied(entry)        ? "type the output, then the pressure applied"
 	               : r->point == FL_POINT_ZERO ? "at the stopped zero type the output alone"
@@ -180,7 +180,7 @@ fl_status fl_entry_draft_read(fl_entry *entry, const char *line, fl_error *err) 
 		return fl_fail(err, FL_E_SYNTAX,
 		               "too many numbers on one line: output, temperature or pressure applied, "
 		               "line pressure at most");
-	fl_status status = read_output(entry, parts[0], err);
+	fl_status status = fl_entry_draft_output(entry, parts[0], err);
 	for (int i = 1; i < count && status == FL_OK; i++)
 		status = read_further(entry, parts[i], err);
 	return status;
@@ -225,7 +225,7 @@ static bool looks_fahrenheit(const fl_entry *entry) {
 	       p->bath_c >= 20.0 && p->bath_c <= 150.0 && fabs(d->temp_as_typed - p->bath_c) > p->bath_tolerance_k;
 }
 
-static fl_status check_temperature(const fl_entry *entry, fl_error *err) {
+fl_status fl_entry_draft_check_temperature(const fl_entry *entry, fl_error *err) {
 	const fl_draft *d = &entry->draft;
 	const fl_oil *oil = oil_of(entry, d->reading.point);
 	if (!d->reading.has_temp || !oil)
@@ -301,7 +301,7 @@ fl_status fl_entry_draft_check(fl_entry *entry, fl_error *err) {
 	fl_reading *r = &entry->draft.reading;
 	fl_status status = check_signal(entry, err);
 	if (status >= 0)
-		status = check_temperature(entry, err);
+		status = fl_entry_draft_check_temperature(entry, err);
 	if (status < 0)
 		return status;
 	if (r->taken != INT64_MIN)
