@@ -247,9 +247,11 @@ static fl_status sum_up(const budget *b, fl_point_result *point, double referenc
 	}
 	point->budget = b->lines;
 	point->budget_count = b->count;
-	fl_status status = FL_OK;
-	if (b->count)
-		status = fl_numeric_budget(terms, b->count, b->w->result->coverage_probability, &point->sum, err);
+	if (b->count == 0) { /* nothing is known of the uncertainty: that is not the same as none */
+		point->sum = (fl_budget_sum){.uc = NAN, .dof_effective = NAN, .coverage_factor = NAN, .expanded = NAN};
+		return FL_OK;
+	}
+	fl_status status = fl_numeric_budget(terms, b->count, b->w->result->coverage_probability, &point->sum, err);
 	if (status < 0)
 		return status;
 	point->floored = point->sum.expanded < reference_U;

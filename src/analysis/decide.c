@@ -176,13 +176,24 @@ static void withhold(const work *w, fl_run_result *run, const fl_point_result *p
 	    fl_analysis_number(w->arena, w->procedure->minimum_tur, 3));
 }
 
+/* A point of which nothing is known about the uncertainty; NULL if there is none. */
+static const fl_point_result *point_without_uncertainty(const fl_run_result *run) {
+	for (size_t i = 0; i < run->point_count; i++)
+		if (isnan(run->points[i].sum.expanded))
+			return &run->points[i];
+	return NULL;
+}
+
 static void decide_run(const work *w, fl_run_result *run) {
 	run->worst = find_worst(run);
-	const fl_point_result *weakest = weakest_point(run);
+	const fl_point_result *weakest = weakest_point(run), *unknown = point_without_uncertainty(run);
 	if (w->result->rule == FL_RULE_NONE) {
 		run->verdict_reason = "no verdict: no decision rule is agreed";
 	} else if (w->result->tolerance.basis == FL_BAND_NONE) {
 		run->verdict_reason = "no verdict: no tolerance is stated";
+	} else if (unknown) {
+		run->verdict_reason = fl_arena_printf(w->arena, "no verdict: nothing is known of the uncertainty at %s",
+		                                      fl_analysis_point_name(w, unknown));
 	} else if (weakest && tur_too_small(w, weakest)) {
 		withhold(w, run, weakest);
 	} else if (!run->worst || run->worst->verdict == FL_VERDICT_NONE) {

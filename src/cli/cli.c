@@ -112,6 +112,11 @@ int fl_cli_columns(const fl_cli *cli) {
 	return columns < 60 ? 60 : columns > 100 ? 100 : columns;
 }
 
+void fl_cli_left_out(const fl_cli *cli, const fl_error *err) {
+	char line[1400];
+	fprintf(cli->err, "foundleft: left out: %s\n", fl_error_line(err, line, sizeof line));
+}
+
 /* ---- help -------------------------------------------------------------------------------------------------- */
 
 static void print_overview(FILE *out) {

@@ -7,6 +7,8 @@
 #include <stdio.h>
 
 #include "foundleft/base.h"
+#include "foundleft/procedure.h"
+#include "foundleft/stock.h"
 
 /* Exit codes, documented in foundleft.1; derived from the status in fl_cli_exit_code. */
 typedef enum fl_exit {
@@ -82,6 +84,8 @@ fl_utc fl_cli_now(void);
 /* Offset of local time from UTC at `utc`, minutes. */
 int fl_cli_utc_offset_min(fl_utc utc);
 int fl_cli_columns(const fl_cli *cli);
+/* Tells on standard error that a file was passed over, and why. */
+void fl_cli_left_out(const fl_cli *cli, const fl_error *err);
 
 /* ---- places (place.c) ---- */
 fl_status fl_place_find(fl_cli *cli, fl_error *err) FL_MUST_USE;
@@ -95,6 +99,12 @@ fl_status fl_place_new_journal(const fl_cli *cli, fl_day day, const char *tag, c
 /* Paths of files with `suffix` in a folder, sorted, in arena memory; a missing folder has none. */
 fl_status fl_place_files(const char *folder, const char *suffix, fl_arena *arena, char ***paths, size_t *count,
                          fl_error *err) FL_MUST_USE;
+/* All stock files of the stock folder; bench.yaml, which says who issues, is none of them. */
+fl_status fl_place_stock(const fl_cli *cli, fl_stock *stock, fl_error *err) FL_MUST_USE;
+/* Each procedure there is, the bench's own first; a template that does not load is named on standard error. */
+typedef fl_status (*fl_procedure_visitor)(void *context, const fl_procedure *procedure, fl_error *err);
+fl_status fl_place_each_procedure(const fl_cli *cli, fl_procedure_visitor visit, void *context,
+                                  fl_error *err) FL_MUST_USE;
 fl_status fl_place_join(char path[FL_PATH_SIZE], const char *folder, const char *name, fl_error *err) FL_MUST_USE;
 
 /* ---- commands ---- */

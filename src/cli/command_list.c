@@ -5,36 +5,15 @@
 #include "case.h"
 #include "cli.h"
 
-static void left_out(const fl_cli *cli, const fl_error *err) {
-	char line[1400];
-	fprintf(cli->err, "foundleft: left out: %s\n", fl_error_line(err, line, sizeof line));
+static fl_status list_procedure(void *context, const fl_procedure *procedure, fl_error *err) {
+	(void)err;
+	fprintf(((const fl_cli *)context)->out, "  %-24s %-6s %s\n", procedure->id, procedure->version, procedure->title);
+	return FL_OK;
 }
 
 static fl_status list_procedures(fl_cli *cli, fl_error *err) {
-	const char *folders[] = {cli->home, cli->data};
 	fprintf(cli->out, "Procedures\n");
-	for (size_t f = 0; f < 2; f++) {
-		fl_arena arena = {0};
-		char folder[FL_PATH_SIZE], **paths;
-		size_t count;
-		fl_status status = fl_place_join(folder, folders[f], "templates", err);
-		if (status >= 0)
-			status = fl_place_files(folder, ".yaml", &arena, &paths, &count, err);
-		for (size_t i = 0; status >= 0 && i < count; i++) {
-			fl_procedure procedure;
-			fl_error local = {0};
-			if (fl_procedure_load(cli->io, paths[i], &procedure, &local) < 0) {
-				left_out(cli, &local);
-				continue;
-			}
-			fprintf(cli->out, "  %-24s %-6s %s\n", procedure.id, procedure.version, procedure.title);
-			fl_procedure_free(&procedure);
-		}
-		fl_arena_free(&arena);
-		if (status < 0)
-			return status;
-	}
-	return FL_OK;
+	return fl_place_each_procedure(cli, list_procedure, cli, err);
 }
 
 static const char *in_date(fl_status status) {
@@ -62,18 +41,11 @@ static void list_items(const fl_cli *cli, const fl_stock *stock, fl_day today) {
 }
 
 static fl_status list_stock(fl_cli *cli, fl_error *err) {
-	fl_arena arena = {0};
 	fl_stock stock = {0};
-	char **paths;
-	size_t count;
-	fl_status status = fl_place_files(cli->stock, ".yaml", &arena, &paths, &count, err);
-	for (size_t i = 0; status >= 0 && i < count; i++)
-		if (strcmp(strrchr(paths[i], '/') + 1, "bench.yaml") != 0)
-			status = fl_stock_load(&stock, cli->io, paths[i], err);
+	fl_status status = fl_place_stock(cli, &stock, err);
 	if (status >= 0)
 		list_items(cli, &stock, fl_day_of(fl_cli_now()));
 	fl_stock_free(&stock);
-	fl_arena_free(&arena);
 	return status;
 }
 
@@ -91,7 +63,7 @@ static fl_status list_sessions(fl_cli *cli, fl_error *err) {
 		char head[FL_DIGEST_HEX_SIZE], day[FL_DAY_SIZE];
 		bool torn;
 		if (fl_journal_read(cli->io, paths[i], &session, head, &torn, &local) < 0)
-			left_out(cli, &local);
+			fl_cli_left_out(cli, &local);
 		else
 			fprintf(cli->out, "  %-32s %s  %s, %zu readings\n", strrchr(paths[i], '/') + 1,
 			        fl_day_format(session.day, day), session.closed ? "closed" : "OPEN", session.reading_count);

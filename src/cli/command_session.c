@@ -36,22 +36,13 @@ static fl_utc bench_clock(void *context) {
 }
 
 static fl_status load_stock(const fl_cli *cli, fl_stock *stock, fl_error *err) {
-	fl_arena arena = {0};
-	char **paths;
-	size_t count;
-	fl_status status = fl_place_files(cli->stock, ".yaml", &arena, &paths, &count, err);
-	if (status >= 0 && count == 0)
+	fl_status status = fl_place_stock(cli, stock, err);
+	if (status >= 0 && stock->oil_count + stock->equipment_count + stock->instrument_count == 0)
 		status =
 		    fl_fail(err, FL_E_NOT_FOUND,
 		            "there are no stock files in %s; write oils.yaml, equipment.yaml and instruments.yaml there (man "
 		            "foundleft), or give --stock DIR",
 		            cli->stock);
-	for (size_t i = 0; status >= 0 && i < count; i++) {
-		const char *name = strrchr(paths[i], '/') + 1;
-		if (strcmp(name, "bench.yaml") != 0)
-			status = fl_stock_load(stock, cli->io, paths[i], err);
-	}
-	fl_arena_free(&arena);
 	return status;
 }
 
@@ -122,9 +113,17 @@ static bool ends_the_talk(fl_status status) {
 	       status == FL_E_INTERNAL;
 }
 
+static void show_folded(const fl_cli *cli, const char *text) {
+	fl_text folded = {0};
+	fl_talk_fold(&folded, text, fl_cli_columns(cli));
+	fputs(folded.data ? folded.data : "", cli->out);
+	fl_text_free(&folded);
+}
+
 static void show_refusal(const fl_cli *cli, fl_error *err) {
-	char line[1400];
-	fprintf(cli->out, "  not taken: %s\n", fl_error_line(err, line, sizeof line));
+	char line[1400], text[1440];
+	snprintf(text, sizeof text, "  not taken: %s\n", fl_error_line(err, line, sizeof line));
+	show_folded(cli, text);
 	*err = (fl_error){0};
 }
 
@@ -142,8 +141,7 @@ static fl_status converse(fl_cli *cli, bench *b, fl_talk *talk, fl_error *err) {
 		}
 		fl_text_clear(&text);
 		status = fl_entry_line(b->entry, line, &text, err);
-		if (text.length)
-			fputs(text.data, cli->out);
+		show_folded(cli, text.data ? text.data : "");
 		if (status < 0 && !ends_the_talk(status)) {
 			show_refusal(cli, err);
 			status = FL_OK;
@@ -196,54 +194,39 @@ static fl_status choose_instrument(fl_cli *cli, bench *b, fl_talk *talk, fl_erro
 	return tag == NULL ? fl_fail(err, FL_E_STATE, "no instrument was chosen") : find_instrument(b, tag, err);
 }
 
-/* Ids and titles of all templates, the bench's own first; a template that does not load is named and left out. */
-static fl_status list_procedures(fl_cli *cli, fl_arena *arena, const char **ids, const char **titles, size_t most,
-                                 size_t *count, fl_error *err) {
-	const char *folders[] = {cli->home, cli->data};
-	*count = 0;
-	for (size_t f = 0; f < 2; f++) {
-		char folder[FL_PATH_SIZE], **paths;
-		size_t found;
-		fl_status status = fl_place_join(folder, folders[f], "templates", err);
-		if (status >= 0)
-			status = fl_place_files(folder, ".yaml", arena, &paths, &found, err);
-		if (status < 0)
-			return status;
-		for (size_t i = 0; i < found && *count < most; i++) {
-			fl_procedure procedure;
-			fl_error local = {0};
-			char line[1400];
-			if (fl_procedure_load(cli->io, paths[i], &procedure, &local) < 0) {
-				fprintf(cli->err, "foundleft: left out: %s\n", fl_error_line(&local, line, sizeof line));
-				continue;
-			}
-			ids[*count] = fl_arena_strdup(arena, procedure.id);
-			titles[*count] = fl_arena_strdup(arena, procedure.title);
-			fl_procedure_free(&procedure);
-			if (ids[*count] == NULL || titles[*count] == NULL)
-				return fl_fail(err, FL_E_MEMORY, "out of memory");
-			(*count)++;
-		}
-	}
+/* Names to choose a procedure from. */
+typedef struct menu {
+	fl_arena arena;
+	const char *ids[64], *titles[64];
+	size_t count;
+} menu;
+
+static fl_status put_on_menu(void *context, const fl_procedure *procedure, fl_error *err) {
+	menu *m = context;
+	if (m->count == sizeof m->ids / sizeof m->ids[0])
+		return FL_OK;
+	m->ids[m->count] = fl_arena_strdup(&m->arena, procedure->id);
+	m->titles[m->count] = fl_arena_strdup(&m->arena, procedure->title);
+	if (m->ids[m->count] == NULL || m->titles[m->count] == NULL)
+		return fl_fail(err, FL_E_MEMORY, "out of memory");
+	m->count++;
 	return FL_OK;
 }
 
 static fl_status choose_procedure(fl_cli *cli, bench *b, fl_talk *talk, fl_error *err) {
 	if (cli->values[FL_OPT_PROCEDURE])
 		return load_procedure(cli, cli->values[FL_OPT_PROCEDURE], &b->procedure, err);
-	fl_arena arena = {0};
-	const char *ids[64], *titles[64];
-	size_t count;
-	fl_status status = list_procedures(cli, &arena, ids, titles, 64, &count, err);
-	if (status >= 0 && count == 0)
+	menu m = {0};
+	fl_status status = fl_place_each_procedure(cli, put_on_menu, &m, err);
+	if (status >= 0 && m.count == 0)
 		status = fl_fail(err, FL_E_NOT_FOUND, "no procedure is installed in %s/templates nor in %s/templates",
 		                 cli->home, cli->data);
 	if (status >= 0) {
-		const char *id = choose(cli, talk, "Procedure", ids, titles, count);
+		const char *id = choose(cli, talk, "Procedure", m.ids, m.titles, m.count);
 		status = id == NULL ? fl_fail(err, FL_E_STATE, "no procedure was chosen")
 		                    : load_procedure(cli, id, &b->procedure, err);
 	}
-	fl_arena_free(&arena);
+	fl_arena_free(&m.arena);
 	return status;
 }
 

@@ -182,3 +182,48 @@ fl_status fl_place_files(const char *folder, const char *suffix, fl_arena *arena
 		qsort(*paths, *count, sizeof **paths, by_name);
 	return status;
 }
+
+static fl_status visit_procedure(const fl_cli *cli, const char *path, fl_procedure_visitor visit, void *context,
+                                 fl_error *err) {
+	fl_procedure procedure;
+	fl_error local = {0};
+	fl_status status = fl_procedure_load(cli->io, path, &procedure, &local);
+	if (status == FL_E_MEMORY)
+		return fl_fail(err, status, "%s", local.message);
+	if (status < 0) {
+		fl_cli_left_out(cli, &local);
+		return FL_OK;
+	}
+	status = visit(context, &procedure, err);
+	fl_procedure_free(&procedure);
+	return status;
+}
+
+fl_status fl_place_each_procedure(const fl_cli *cli, fl_procedure_visitor visit, void *context, fl_error *err) {
+	const char *folders[] = {cli->home, cli->data};
+	fl_status status = FL_OK;
+	for (size_t f = 0; status >= 0 && f < 2; f++) {
+		fl_arena arena = {0};
+		char folder[FL_PATH_SIZE], **paths;
+		size_t count = 0;
+		status = fl_place_join(folder, folders[f], "templates", err);
+		if (status >= 0)
+			status = fl_place_files(folder, ".yaml", &arena, &paths, &count, err);
+		for (size_t i = 0; status >= 0 && i < count; i++)
+			status = visit_procedure(cli, paths[i], visit, context, err);
+		fl_arena_free(&arena);
+	}
+	return status;
+}
+
+fl_status fl_place_stock(const fl_cli *cli, fl_stock *stock, fl_error *err) {
+	fl_arena arena = {0};
+	char **paths;
+	size_t count;
+	fl_status status = fl_place_files(cli->stock, ".yaml", &arena, &paths, &count, err);
+	for (size_t i = 0; status >= 0 && i < count; i++)
+		if (strcmp(strrchr(paths[i], '/') + 1, "bench.yaml") != 0)
+			status = fl_stock_load(stock, cli->io, paths[i], err);
+	fl_arena_free(&arena);
+	return status;
+}

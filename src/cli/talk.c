@@ -6,6 +6,8 @@
 #include <stdlib.h>
 #include <string.h>
 
+#include "report_parts.h"
+
 struct fl_talk {
 	fl_cli *cli;
 	EditLine *edit;
@@ -84,11 +86,43 @@ static bool plain_line(fl_talk *talk, const char **line) {
 	return true;
 }
 
+/* Folds one line at the terminal's width; what follows is indented as far as its own indent. */
+static void fold_line(fl_text *out, const char *line, size_t length, int columns) {
+	char lead[32], text[4096];
+	size_t indent = strspn(line, " ");
+	if (indent >= sizeof lead || length - indent >= sizeof text) {
+		fl_text_append(out, line, length);
+		fl_text_add(out, "\n");
+		return;
+	}
+	snprintf(lead, sizeof lead, "%.*s", (int)indent, line);
+	snprintf(text, sizeof text, "%.*s", (int)(length - indent), line + indent);
+	fl_report_wrap(out, lead, text, columns);
+}
+
+void fl_talk_fold(fl_text *out, const char *text, int columns) {
+	for (const char *end; *text; text = end) {
+		end = text + strcspn(text, "\n");
+		if (fl_utf8_columns(text) > columns && end - text > columns / 2)
+			fold_line(out, text, (size_t)(end - text), columns);
+		else
+			fl_text_append(out, text, (size_t)(end - text) + (*end == '\n'));
+		end += *end == '\n';
+	}
+}
+
 bool fl_talk_line(fl_talk *talk, const char *prompt, const char **line) {
-	const char *last = strrchr(prompt, '\n');
-	last = last ? last + 1 : prompt;
-	fwrite(prompt, 1, (size_t)(last - prompt), talk->cli->out);
+	fl_text folded = {0};
+	fl_talk_fold(&folded, prompt, fl_cli_columns(talk->cli));
+	while (folded.length && strchr("\n ", folded.data[folded.length - 1]))
+		folded.data[--folded.length] = '\0';
+	fl_text_add(&folded, " ");
+	const char *last = folded.data ? strrchr(folded.data, '\n') : "> ";
+	last = last ? last + (*last == '\n') : folded.data;
+	if (folded.data)
+		fwrite(folded.data, 1, (size_t)(last - folded.data), talk->cli->out);
 	snprintf(talk->prompt, sizeof talk->prompt, "%s", last);
+	fl_text_free(&folded);
 	if (talk->edit == NULL)
 		fputs(talk->prompt, talk->cli->out);
 	fflush(talk->cli->out);

@@ -9,6 +9,8 @@ typedef struct fl_talk fl_talk;
 
 fl_status fl_talk_new(fl_talk **out, fl_cli *cli, fl_error *err) FL_MUST_USE;
 void fl_talk_free(fl_talk *talk);
+/* Adds `text` with every line folded between words at `columns`. */
+void fl_talk_fold(fl_text *out, const char *text, int columns);
 /* Shows `prompt` (its last line is the prompt proper) and reads one line without its newline into *line, borrowed
  * until the next call. False at the end of input. */
 bool fl_talk_line(fl_talk *talk, const char *prompt, const char **line);

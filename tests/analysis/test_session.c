@@ -277,6 +277,23 @@ static void what_one_traverse_cannot_say(void **state) {
 	bench_end(&b);
 }
 
+/* Nothing in the budget is not the same as no uncertainty. */
+static void no_verdict_without_a_budget(void **state) {
+	(void)state;
+	static bench b;
+	bench_begin(&b);
+	b.session.equipment_count = 0;
+	bench_read(&b, FL_RUN_AS_FOUND, 1, FL_PASS_RISING, FL_POINT_ZERO, 4.0);
+	bench_oil(&b, 1, FL_PASS_RISING, 4, 19.0, 40.0);
+	const fl_run_result *run = bench_assess(&b);
+	assert_int_equal(run->points[0].budget_count, 0);
+	assert_true(isnan(run->points[0].sum.expanded) && isnan(run->points[0].sum.coverage_factor));
+	assert_int_equal(run->points[0].verdict, FL_VERDICT_NONE);
+	assert_int_equal(run->verdict, FL_VERDICT_NONE);
+	assert_non_null(strstr(run->verdict_reason, "nothing is known of the uncertainty at"));
+	bench_end(&b);
+}
+
 static void readings_stand_in_for_cycles(void **state) {
 	(void)state;
 	static bench b;
@@ -401,6 +418,7 @@ int main(void) {
 	    cmocka_unit_test(as_found_missing),
 	    cmocka_unit_test(nothing_read_at_all),
 	    cmocka_unit_test(what_one_traverse_cannot_say),
+	    cmocka_unit_test(no_verdict_without_a_budget),
 	    cmocka_unit_test(readings_stand_in_for_cycles),
 	    cmocka_unit_test(outside_the_certificate),
 	    cmocka_unit_test(capillary_is_checked),
