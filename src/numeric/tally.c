@@ -1,0 +1,112 @@
+/* numeric/tally.c - counts a stream of results into bins that reach over the whole line, and reads intervals off them.
+ *
+ * SPDX-License-Identifier: GPL-3.0-or-later
+ */
+#include "lanes.h"
+#include "trials.h"
+
+#include <gsl/gsl_statistics_double.h>
+
+tally_frame fl_numeric_tally_frame(double *sample, size_t n) {
+	double min, max;
+	gsl_stats_minmax(&min, &max, sample, 1, n);
+	tally_frame frame = {.centre = gsl_stats_select(sample, 1, n, n / 2)};
+	double lower = gsl_stats_select(sample, 1, n, n / 4), upper = gsl_stats_select(sample, 1, n, n - 1 - n / 4);
+	frame.scale = 1.5 * (upper - lower);
+	if (!(frame.scale > 0.0)) /* more than half of the sample at one place */
+		frame.scale = max > min ? (max - min) / 4.0 : 1.0;
+	return frame;
+}
+
+LANE_CLONES void fl_numeric_tally(tally_frame frame, const double *y, size_t n, uint32_t *counts) {
+	int32_t bin[TRIAL_CHUNK];
+	const double per = 1.0 / frame.scale, half = TALLY_BINS / 2;
+	for (size_t begin = 0; begin < n; begin += TRIAL_CHUNK) {
+		size_t many = n - begin < TRIAL_CHUNK ? n - begin : TRIAL_CHUNK;
+		for (size_t i = 0; i < many; i++) {
+			double z = (y[begin + i] - frame.centre) * per;
+			/* |z| may be infinite after the scaling of a far outlier: held to the outermost bins. */
+			z = z > 1e9 ? 1e9 : z < -1e9 ? -1e9 : z;
+			double place = half + half * (z / (1.0 + fabs(z)));
+			bin[i] = (int32_t)(place < TALLY_BINS - 1 ? place : TALLY_BINS - 1);
+		}
+		for (size_t i = 0; i < many; i++)
+			counts[bin[i]]++;
+	}
+}
+
+LANE_CLONES bool fl_numeric_trial_sums(const double *y, size_t n, double shift, trial_sums *sums) {
+	lanes d = {0}, d2 = {0}, least = INFINITY - d, most = -INFINITY - d, wrong = {0};
+	for (size_t i = 0; i + FL_LANES <= n; i += FL_LANES) {
+		lanes v;
+		__builtin_memcpy(&v, y + i, sizeof v);
+		wrong += v - v; /* 0, or NaN from then on */
+		most = lanes_max(v, most);
+		least = -lanes_max(-v, -least);
+		v -= shift;
+		d += v;
+		d2 += v * v;
+	}
+	*sums = (trial_sums){.min = INFINITY, .max = -INFINITY};
+	double all = 0.0;
+	for (int lane = 0; lane < FL_LANES; lane++) {
+		sums->d += d[lane];
+		sums->d2 += d2[lane];
+		sums->min = fmin(sums->min, least[lane]);
+		sums->max = fmax(sums->max, most[lane]);
+		all += wrong[lane];
+	}
+	return all == 0.0 && isfinite(sums->d2);
+}
+
+/* The lower edge of a bin, within what was met. */
+static double edge_of(tally_frame frame, size_t bin, const fl_propagated *met) {
+	double t = (double)bin / (TALLY_BINS / 2) - 1.0;
+	double edge = frame.centre + frame.scale * (t / (1.0 - fabs(t))); /* infinite at both ends */
+	return fmin(met->max, fmax(met->min, edge));
+}
+
+/* Where the counts reach `want`, searched upward from *bin; *below is what lies below that bin. */
+static double reach(tally_frame frame, const uint64_t *counts, double want, size_t *bin, uint64_t *below,
+                    const fl_propagated *met) {
+	while (*bin + 1 < TALLY_BINS && (double)(*below + counts[*bin]) < want)
+		*below += counts[(*bin)++];
+	double low = edge_of(frame, *bin, met), high = edge_of(frame, *bin + 1, met);
+	if (counts[*bin] == 0)
+		return low;
+	return low + (high - low) * fmin(1.0, (want - (double)*below) / (double)counts[*bin]);
+}
+
+static uint64_t total(const uint64_t *counts) {
+	uint64_t sum = 0;
+	for (size_t bin = 0; bin < TALLY_BINS; bin++)
+		sum += counts[bin];
+	return sum;
+}
+
+/* Every edge is tried as the lower end; the upper end moves along with it. */
+static void find_shortest(tally_frame frame, const uint64_t *counts, double covered, double all, fl_propagated *out) {
+	size_t upper = 0;
+	uint64_t below_upper = 0, below = 0;
+	out->shortest_low = out->low;
+	out->shortest_high = out->high;
+	for (size_t bin = 0; bin < TALLY_BINS && (double)below + covered <= all; below += counts[bin++]) {
+		if (counts[bin] == 0)
+			continue;
+		double low = edge_of(frame, bin, out);
+		double high = reach(frame, counts, (double)below + covered, &upper, &below_upper, out);
+		if (high - low < out->shortest_high - out->shortest_low) {
+			out->shortest_low = low;
+			out->shortest_high = high;
+		}
+	}
+}
+
+void fl_numeric_tally_intervals(tally_frame frame, const uint64_t *counts, double probability, fl_propagated *out) {
+	double all = (double)total(counts), tail = (1.0 - probability) / 2.0 * all;
+	size_t bin = 0;
+	uint64_t below = 0;
+	out->low = reach(frame, counts, tail, &bin, &below, out);
+	out->high = reach(frame, counts, all - tail, &bin, &below, out);
+	find_shortest(frame, counts, probability * all, all, out);
+}
