@@ -85,11 +85,11 @@ static void write_all(fl_writing *w) {
 	write_title(w);
 	fl_write_head(w);
 	fl_write_statements(w);
+	fl_write_adjustments(w);
 	fl_write_chart(w);
 	fl_write_run(w, FL_RUN_AS_FOUND);
 	fl_write_run(w, FL_RUN_AS_LEFT);
 	fl_write_characteristics(w);
-	fl_write_adjustments(w);
 	fl_write_meaning(w);
 	fl_write_standards(w);
 	fl_write_gates(w);

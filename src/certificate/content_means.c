@@ -5,8 +5,7 @@
 #include <math.h>
 #include <string.h>
 
-/* ---- equipment and oils
- * ------------------------------------------------------------------------------------------------ */
+/* ---- equipment and oils ---------------------------------------------------- */
 
 static const char *uncertainty_of(fl_writing *w, const fl_equipment *item) {
 	fl_sheet *sheet = w->sheet;
@@ -56,6 +55,11 @@ static const fl_oil_point *nearest(const fl_writing *w, const fl_oil *oil, size_
 	return oil->table.count ? &oil->table.points[*index] : NULL;
 }
 
+/* Four significant digits, as certificates of oils give viscosities. */
+static const char *four_digits(fl_sheet *sheet, double value) {
+	return fl_word_number(sheet, value, value > 0 ? 3 - (int)floor(log10(value)) : 3);
+}
+
 static void write_oil(fl_writing *w, fl_block *table, const fl_session_point *at) {
 	fl_sheet *sheet = w->sheet;
 	const fl_oil *oil = fl_stock_oil(w->stock, at->lot);
@@ -66,7 +70,7 @@ static void write_oil(fl_writing *w, fl_block *table, const fl_session_point *at
 		cells[2] = oil->certificate;
 		cells[3] = oil->issuer;
 		cells[4] = fl_word_number(sheet, point->temp_c, 2);
-		cells[5] = fl_word_plain(sheet, point->nu_m2_s * 1e6, 5);
+		cells[5] = four_digits(sheet, point->nu_m2_s * 1e6);
 		cells[6] = fl_word_number(sheet, 100 * oil->U_nu_rel[i], 2);
 		cells[7] = fl_word_number(sheet, point->rho_kg_m3, 1);
 		cells[8] = fl_word_number(sheet, oil->U_rho_kg_m3[i], 1);
@@ -113,7 +117,6 @@ static void write_oils(fl_writing *w) {
 	    {"U", "kg/m³", at, FL_ALIGN_DECIMAL, false},   {"certified", "", "", FL_ALIGN_LEFT, false},
 	    {"use before", "", "", FL_ALIGN_LEFT, false},  {"opened", "", "", FL_ALIGN_LEFT, false},
 	    {"on the day", "", "", FL_ALIGN_LEFT, false}};
-	fl_sheet_add(w->sheet, FL_BLOCK_HEADING, "Reference oils");
 	fl_block *table = fl_sheet_add_table(w->sheet, columns, sizeof columns / sizeof *columns);
 	for (size_t i = 0; i < w->session->point_count; i++)
 		if (!fl_word_is_empty(w->session->points[i].lot))
@@ -122,9 +125,9 @@ static void write_oils(fl_writing *w) {
 }
 
 void fl_write_standards(fl_writing *w) {
-	fl_sheet_add(w->sheet, FL_BLOCK_HEADING, "Traceability: measuring equipment");
+	fl_sheet_add(w->sheet, FL_BLOCK_HEADING, "Traceability");
 	if (w->result->traceable)
-		fl_sheet_add(w->sheet, FL_BLOCK_TEXT,
+		fl_sheet_add(w->sheet, FL_BLOCK_SMALL,
 		             "The results rest on the certificates below, all in date on the day of the calibration.");
 	else
 		fl_sheet_add(
@@ -136,55 +139,61 @@ void fl_write_standards(fl_writing *w) {
 		write_oils(w);
 }
 
-/* ---- conditions
- * -------------------------------------------------------------------------------------------------------- */
+/* ---- conditions, permit and safety, return to service ----------------- */
+
+/* "supply-frequency" -> "supply frequency": the id of a question is its short name. */
+static void add_short_name(fl_text *list, const char *id) {
+	for (const char *c = id; *c; c++)
+		fl_text_append(list, *c == '-' || *c == '_' ? " " : c, 1);
+}
+
+/* A run-in list under words in bold; nothing if it is empty. */
+static void write_list(fl_writing *w, const char *lead, fl_text *list) {
+	w->sheet->failed |= list->failed;
+	if (list->length > 0)
+		fl_sheet_add_led(w->sheet, FL_BLOCK_SMALL, lead, "%s.", list->data);
+	fl_text_free(list);
+}
 
 static void write_conditions(fl_writing *w) {
-	static const char *const heads[] = {"", ""};
-	int given = 0;
-	for (int i = 0; i < w->procedure->condition_count; i++)
-		given += fl_writing_setting(w, w->procedure->conditions[i].id) != NULL;
-	fl_sheet_add(w->sheet, FL_BLOCK_HEADING, "Conditions");
-	fl_block *grid = fl_sheet_add_grid(w->sheet, FL_BLOCK_GRID, heads, 2);
-	int shown = 0;
+	fl_text list = {0};
 	for (int i = 0; i < w->procedure->condition_count; i++) {
 		const fl_question *question = &w->procedure->conditions[i];
 		const char *value = fl_writing_setting(w, question->id);
 		if (!value && !question->required)
 			continue;
-		fl_sheet_pair(w->sheet, grid, 2 * shown++ < given ? 0 : 1, question->ask, value ? value : "not recorded");
+		fl_text_add(&list, list.length ? "; " : "");
+		add_short_name(&list, question->id);
+		fl_text_printf(&list, " %s", value ? value : "not recorded");
 	}
+	write_list(w, "Conditions:", &list);
 }
-
-/* ---- permit, safety, restoring
- * --------------------------------------------------------------------------------------------- */
 
 static bool is_done(const fl_gate_answer *given) {
 	return given && strcmp(given->answer, "no") != 0;
 }
 
-static const char *answer_of(fl_writing *w, const fl_question *question, const fl_gate_answer *given) {
-	if (!given)
-		return "not answered";
-	if (question->kind == FL_ASK_AMOUNT && *fl_unit_text(question->unit) &&
-	    !strstr(given->answer, fl_unit_text(question->unit)))
-		return fl_sheet_printf(w->sheet, "%s %s", given->answer, fl_unit_text(question->unit));
-	return given->answer;
+/* "steam in manual: yes (06:01)" */
+static void add_answer(fl_text *list, const fl_question *question, const fl_gate_answer *given) {
+	char utc[FL_UTC_SIZE];
+	fl_text_add(list, list->length ? "; " : "");
+	add_short_name(list, question->id);
+	if (!given) {
+		fl_text_add(list, ": not answered");
+		return;
+	}
+	const char *unit = question->kind == FL_ASK_AMOUNT ? fl_unit_text(question->unit) : "";
+	if (strstr(given->answer, unit))
+		unit = "";
+	fl_utc_format(given->at, utc);
+	fl_text_printf(list, ": %s%s%s (%.5s)", given->answer, *unit ? " " : "", unit, utc + 11);
 }
 
-static void write_answers(fl_writing *w, fl_block *table, const fl_question *questions, int count) {
-	for (int i = 0; i < count; i++) {
-		const fl_gate_answer *given = fl_session_gate(w->session, questions[i].id);
-		char utc[FL_UTC_SIZE] = "";
-		if (given)
-			fl_utc_format(given->at, utc);
-		const char *answer = answer_of(w, &questions[i], given);
-		if (given && !fl_word_is_empty(given->reason))
-			answer = fl_sheet_printf(w->sheet, "%s: %s", answer, given->reason);
-		const char *cells[] = {questions[i].ask, answer,
-		                       given ? fl_sheet_printf(w->sheet, "%.5s", utc + 11) : FL_ABSENT};
-		fl_sheet_row(w->sheet, table, FL_ROW_PLAIN, cells);
-	}
+static void write_answers(fl_writing *w, const char *lead, const fl_question *questions, int count) {
+	fl_text list = {0};
+	for (int i = 0; i < count; i++)
+		add_answer(&list, &questions[i], fl_session_gate(w->session, questions[i].id));
+	write_list(w, lead, &list);
 }
 
 static void list_unfinished(fl_writing *w, const fl_question *questions, int count, bool *headed) {
@@ -193,27 +202,22 @@ static void list_unfinished(fl_writing *w, const fl_question *questions, int cou
 		if (is_done(given))
 			continue;
 		if (!*headed)
-			fl_sheet_add(w->sheet, FL_BLOCK_STATEMENT, "Unfinished when the session was closed:");
+			fl_sheet_add(w->sheet, FL_BLOCK_STATEMENT, "Unfinished when the session was closed");
 		*headed = true;
-		const char *why = !given ? "not answered" : fl_word_is_empty(given->reason) ? "no" : given->reason;
-		fl_sheet_addf(w->sheet, FL_BLOCK_ITEM, "%s – %s", questions[i].ask, why);
+		const char *why = !given ? "not answered" : fl_word_is_empty(given->reason) ? "no reason given" : given->reason;
+		fl_sheet_addf(w->sheet, FL_BLOCK_ITEM, "%s %s: %s", questions[i].ask, given ? "No" : "Open", why);
 	}
 }
 
 void fl_write_gates(fl_writing *w) {
-	static const fl_column columns[] = {{"permit, safety and restoring", "", "", FL_ALIGN_LEFT, true},
-	                                    {"answer", "", "", FL_ALIGN_LEFT, true},
-	                                    {"UTC", "", "", FL_ALIGN_LEFT, false}};
 	const fl_procedure *procedure = w->procedure;
 	bool headed = false;
-	if (procedure->condition_count > 0)
-		write_conditions(w);
-	if (procedure->gate_count + procedure->restore_count == 0)
+	if (procedure->condition_count + procedure->gate_count + procedure->restore_count == 0)
 		return;
-	fl_sheet_add(w->sheet, FL_BLOCK_HEADING, "Permit, safety and restoring to service");
+	fl_sheet_add(w->sheet, FL_BLOCK_HEADING, "Conditions, safety, return to service");
+	write_conditions(w);
+	write_answers(w, "Permit and safety, with the time in UTC:", procedure->gates, procedure->gate_count);
+	write_answers(w, "Return to service:", procedure->restore, procedure->restore_count);
 	list_unfinished(w, procedure->gates, procedure->gate_count, &headed);
 	list_unfinished(w, procedure->restore, procedure->restore_count, &headed);
-	fl_block *table = fl_sheet_add_table(w->sheet, columns, 3);
-	write_answers(w, table, procedure->gates, procedure->gate_count);
-	write_answers(w, table, procedure->restore, procedure->restore_count);
 }

@@ -30,8 +30,7 @@ void fl_write_adjustments(fl_writing *w) {
 	}
 }
 
-/* ---- struck readings
- * ----------------------------------------------------------------------------------------------------- */
+/* ---- struck readings ------------------------------------------------------- */
 
 /* "cycle 2, LK-10 (2511B), rising, reading 3" */
 static const char *place_of(const fl_writing *w, const fl_reading *reading) {
@@ -57,7 +56,6 @@ static void write_struck(fl_writing *w) {
 	fl_sheet *sheet = w->sheet;
 	fl_block *table = NULL;
 	size_t taken_back = 0;
-	fl_sheet_add(sheet, FL_BLOCK_HEADING, "Struck readings");
 	for (size_t i = 0; i < w->session->reading_count; i++) {
 		const fl_reading *reading = &w->session->readings[i];
 		taken_back += reading->undone && !reading->watched;
@@ -75,34 +73,32 @@ static void write_struck(fl_writing *w) {
 		                       reading->struck_by};
 		fl_sheet_row(sheet, table, FL_ROW_PLAIN, cells);
 	}
-	fl_sheet_add(sheet, table ? FL_BLOCK_SMALL : FL_BLOCK_TEXT,
-	             table ? "Struck readings stay in the record and are left out of the means." : "None.");
+	fl_sheet_add_led(sheet, FL_BLOCK_SMALL, "Struck readings.", "%s",
+	                 table ? "They stay in the record and are left out of the means." : "None.");
 	if (taken_back > 0)
 		fl_sheet_addf(sheet, FL_BLOCK_SMALL, "%zu mistyped %s taken back by a later line of the record, before use.",
 		              taken_back, taken_back == 1 ? "reading was" : "readings were");
 }
 
-/* ---- departures and remarks
- * ------------------------------------------------------------------------------------------------ */
+/* ---- departures and remarks ------------------------------------------------ */
 
 static void write_departures(fl_writing *w) {
 	fl_sheet *sheet = w->sheet;
 	const fl_session *session = w->session;
 	size_t count = 0;
-	fl_sheet_add(sheet, FL_BLOCK_HEADING, "Departures from the procedure");
 	for (int kind = 0; kind < FL_RUN_KINDS; kind++)
 		if (session->runs[kind].missing) {
 			const char *reason = session->runs[kind].missing_reason;
-			fl_sheet_addf(sheet, FL_BLOCK_ITEM, "No %s run: %s", fl_run_word((fl_run_kind)kind),
-			              fl_word_sentence(sheet, reason ? reason : "no reason given"));
+			fl_sheet_add_led(sheet, FL_BLOCK_SMALL, "Departure.", "No %s run: %s", fl_run_word((fl_run_kind)kind),
+			                 fl_word_sentence(sheet, reason ? reason : "no reason given"));
 			count++;
 		}
 	for (size_t i = 0; i < session->indicative_count; i++, count++) {
 		const fl_indicative *entry = &session->indicative[i];
-		fl_sheet_addf(sheet, FL_BLOCK_ITEM, "%s was used although it was out of date: %s %s",
-		              entry->item ? entry->item : "An item",
-		              fl_word_sentence(sheet, entry->reason ? entry->reason : "no reason given"),
-		              entry->by ? entry->by : "");
+		fl_sheet_add_led(sheet, FL_BLOCK_SMALL, "Departure.", "%s was used although it was out of date: %s %s",
+		                 entry->item ? entry->item : "An item",
+		                 fl_word_sentence(sheet, entry->reason ? entry->reason : "no reason given"),
+		                 entry->by ? entry->by : "");
 	}
 	if (session->source == FL_SOURCE_IMPORT) {
 		fl_sheet_add(
@@ -112,19 +108,15 @@ static void write_departures(fl_writing *w) {
 		count++;
 	}
 	if (count == 0)
-		fl_sheet_add(sheet, FL_BLOCK_TEXT, "None recorded.");
+		fl_sheet_add_led(sheet, FL_BLOCK_SMALL, "Departures from the procedure.", "None recorded.");
 }
 
 static void write_remarks(fl_writing *w) {
-	if (w->session->remark_count == 0)
-		return;
-	fl_sheet_add(w->sheet, FL_BLOCK_HEADING, "Remarks");
 	for (size_t i = 0; i < w->session->remark_count; i++)
-		fl_sheet_add(w->sheet, FL_BLOCK_ITEM, w->session->remarks[i].typed);
+		fl_sheet_add_led(w->sheet, FL_BLOCK_SMALL, "Remark.", "%s", w->session->remarks[i].typed);
 }
 
-/* ---- the record
- * ------------------------------------------------------------------------------------------------------------ */
+/* ---- the record ------------------------------------------------------------ */
 
 static const char *source_words(fl_source source) {
 	switch (source) {
@@ -139,40 +131,39 @@ static const char *source_words(fl_source source) {
 }
 
 static void write_journal(fl_writing *w) {
-	static const char *const heads[] = {""};
+	static const char *const heads[] = {"", "", ""};
 	fl_sheet *sheet = w->sheet;
 	const fl_session *session = w->session;
 	const fl_issue *issue = w->issue;
 	fl_sheet_add(sheet, FL_BLOCK_HEADING, "The record behind this certificate");
-	fl_block *grid = fl_sheet_add_grid(sheet, FL_BLOCK_GRID, heads, 1);
+	fl_block *grid = fl_sheet_add_grid(sheet, FL_BLOCK_GRID, heads, 3);
 	fl_sheet_pair(sheet, grid, 0, "Journal", issue->journal_name);
-	fl_sheet_pair(sheet, grid, 0, "Digest (SHA-256)", issue->journal_digest);
-	fl_sheet_pair(sheet, grid, 0, "Entries", source_words(session->source));
 	fl_sheet_pair(sheet, grid, 0, "Begun", fl_word_time(sheet, session->opened_at, issue->utc_offset_min));
-	fl_sheet_pairf(sheet, grid, 0, "Clock", "%s; times in UTC, local time is %s",
-	               session->declared_clock ? "times as the file states them, not taken from the machine"
-	                                       : "of the machine the record was written on",
-	               fl_word_offset(sheet, issue->utc_offset_min));
-	fl_sheet_pairf(sheet, grid, 0, "Programs", "begun with foundleft %s, certificate by foundleft %s",
-	               session->program ? session->program : "?", issue->program_version ? issue->program_version : "?");
-	fl_sheet_pairf(sheet, grid, 0, "Procedure", "%s, version %s: %s", w->procedure->id, w->procedure->version,
-	               w->procedure->title);
-	fl_sheet_pair(sheet, grid, 0, "Its source", w->procedure->source);
+	fl_sheet_pair(sheet, grid, 1, "Entries", source_words(session->source));
 	if (session->questions > 0)
-		fl_sheet_pairf(sheet, grid, 0, "Asked back", "%d %s the program asked back and was confirmed",
-		               session->questions, session->questions == 1 ? "time" : "times");
+		fl_sheet_pairf(sheet, grid, 1, "Asked back", "%d %s, and confirmed", session->questions,
+		               session->questions == 1 ? "time" : "times");
+	fl_sheet_pairf(sheet, grid, 1, "Programs", "foundleft %s; certificate by %s",
+	               session->program ? session->program : "?", issue->program_version ? issue->program_version : "?");
+	fl_sheet_pairf(sheet, grid, 2, "Clock", "%s; UTC, local time is %s",
+	               session->declared_clock ? "times as the file states them, not a machine's"
+	                                       : "of the machine it was written on",
+	               fl_word_offset(sheet, issue->utc_offset_min));
+	fl_sheet_add_led(sheet, FL_BLOCK_SMALL, "Digest of the journal (SHA-256):", "%s",
+	                 issue->journal_digest ? issue->journal_digest : "not stated");
+	fl_sheet_add_led(sheet, FL_BLOCK_SMALL, "Source of the procedure:", "%s, version %s: %s", w->procedure->id,
+	                 w->procedure->version, fl_word_sentence(sheet, w->procedure->source));
 }
 
 void fl_write_record(fl_writing *w) {
+	fl_sheet_add(w->sheet, FL_BLOCK_HEADING, "Struck readings, departures, remarks");
 	write_struck(w);
 	write_departures(w);
 	write_remarks(w);
 	write_journal(w);
 }
 
-/* ---- end
- * -------------------------------------------------------------------------------------------------------------------
- */
+/* ---- end ------------------------------------------------------------------- */
 
 void fl_write_close(fl_writing *w) {
 	static const char *const heads[] = {"Performed by", "Authorised by"};

@@ -18,8 +18,7 @@ static const char *error_with_u(const fl_writing *w, const fl_point_result *poin
 	                       fl_word_number(w->sheet, point->sum.coverage_factor, 2));
 }
 
-/* ---- statements ----------------------------------------------------------------------------------------------------
- */
+/* ---- statements ------------------------------------------------------------ */
 
 static void state_limits(fl_writing *w, const fl_run_result *run) {
 	const char *run_name = fl_writing_run_title(run->kind);
@@ -68,22 +67,7 @@ static void state_decision(fl_writing *w) {
 	              session->decision_by ? session->decision_by : "", fl_word_is_empty(session->decision_by) ? "" : ".");
 }
 
-void fl_write_statements(fl_writing *w) {
-	const fl_run_result *found = &w->result->runs[FL_RUN_AS_FOUND], *left = &w->result->runs[FL_RUN_AS_LEFT];
-	fl_sheet_add(w->sheet, FL_BLOCK_HEADING, "Outcome");
-	if (found->available)
-		state_run(w, found);
-	else
-		fl_sheet_add(w->sheet, FL_BLOCK_STATEMENT, "As-found: not available");
-	state_decision(w);
-	if (left->same_as_found)
-		fl_sheet_add(w->sheet, FL_BLOCK_STATEMENT, "As-left = as-found");
-	else if (left->available)
-		state_run(w, left);
-}
-
-/* ---- characteristics
- * ------------------------------------------------------------------------------------------------- */
+/* ---- characteristics ------------------------------------------------------- */
 
 typedef struct fl_runs_table {
 	fl_writing *w;
@@ -92,96 +76,130 @@ typedef struct fl_runs_table {
 	size_t count;
 } fl_runs_table;
 
-static void add_row(fl_runs_table *table, const char *what, const char *const *values, const char *unit) {
-	const char *cells[2 + FL_RUN_KINDS] = {what};
+/* One characteristic of one run, % of span; `spread` NAN and `where` NULL if it has none. */
+typedef struct fl_characteristic {
+	double value, spread;
+	const char *where;
+	bool is_signed;
+} fl_characteristic;
+typedef fl_characteristic (*fl_characterise)(const fl_writing *w, const fl_run_result *run);
+
+static fl_characteristic signed_value(double span, double u_span) {
+	return (fl_characteristic){100 * span, 100 * u_span, NULL, true};
+}
+
+static fl_characteristic size_value(double span, const char *where) {
+	return (fl_characteristic){100 * span, NAN, isnan(span) ? NULL : where, false};
+}
+
+static fl_characteristic stopped_zero(const fl_writing *w, const fl_run_result *run) {
+	(void)w;
+	return signed_value(run->stopped_zero_span, run->stopped_zero_u_span);
+}
+
+static fl_characteristic running_zero(const fl_writing *w, const fl_run_result *run) {
+	(void)w;
+	return signed_value(run->running_zero_span, run->running_zero_u_span);
+}
+
+static fl_characteristic line_zero(const fl_writing *w, const fl_run_result *run) {
+	(void)w;
+	return run->has_line ? signed_value(run->zero_error_span, sqrt(run->line.var_intercept)) : signed_value(NAN, NAN);
+}
+
+static fl_characteristic line_span(const fl_writing *w, const fl_run_result *run) {
+	(void)w;
+	return run->has_line ? signed_value(run->span_error_span, sqrt(run->line.var_slope)) : signed_value(NAN, NAN);
+}
+
+static fl_characteristic between_ends(const fl_writing *w, const fl_run_result *run) {
+	(void)w;
+	return signed_value(run->span_between_ends_span, NAN);
+}
+
+static fl_characteristic highest_error(const fl_writing *w, const fl_run_result *run) {
+	(void)w;
+	return signed_value(run->error_high_span, NAN);
+}
+
+static fl_characteristic lowest_error(const fl_writing *w, const fl_run_result *run) {
+	(void)w;
+	return signed_value(run->error_low_span, NAN);
+}
+
+static fl_characteristic independent(const fl_writing *w, const fl_run_result *run) {
+	(void)w;
+	return size_value(run->has_linearity ? run->independent.max_abs : NAN, NULL);
+}
+
+static fl_characteristic terminal(const fl_writing *w, const fl_run_result *run) {
+	(void)w;
+	return size_value(run->has_linearity ? run->terminal.max_abs : NAN, NULL);
+}
+
+static fl_characteristic zero_based(const fl_writing *w, const fl_run_result *run) {
+	(void)w;
+	return size_value(run->has_linearity ? run->zero_based.max_abs : NAN, NULL);
+}
+
+static fl_characteristic hysteresis(const fl_writing *w, const fl_run_result *run) {
+	return size_value(run->hysteresis_span, fl_writing_point_name(w, run->hysteresis_point));
+}
+
+static fl_characteristic hysteresis_of_cycle(const fl_writing *w, const fl_run_result *run) {
+	(void)w;
+	return size_value(run->hysteresis_cycle_span, NULL);
+}
+
+static fl_characteristic repeatability(const fl_writing *w, const fl_run_result *run) {
+	return size_value(run->repeatability_span,
+	                  fl_sheet_printf(w->sheet, "%s, %s", fl_writing_point_name(w, run->repeatability_point),
+	                                  fl_pass_word(run->repeatability_pass)));
+}
+
+static fl_characteristic deviation(const fl_writing *w, const fl_run_result *run) {
+	(void)w;
+	return size_value(run->repeatability_s_span, NULL);
+}
+
+static const struct {
+	const char *what;
+	fl_characterise of;
+} characteristics[] = {
+    {"stopped zero, ± U", stopped_zero},
+    {"running zero, ± u", running_zero},
+    {"zero error, least-squares line, ± u", line_zero},
+    {"span error, least-squares line, ± u", line_span},
+    {"error at the top less error at the zero", between_ends},
+    {"highest error of a single reading", highest_error},
+    {"lowest error of a single reading", lowest_error},
+    {"linearity, independent", independent},
+    {"linearity, terminal-based", terminal},
+    {"linearity, zero-based", zero_based},
+    {"hysteresis, mean of the cycles, largest", hysteresis},
+    {"hysteresis within one cycle, largest", hysteresis_of_cycle},
+    {"repeatability, range in one direction, largest", repeatability},
+    {"standard deviation in one direction, largest", deviation},
+};
+
+/* To three decimals at most; a spread that would vanish there is rounded up to the last place. */
+static void word_characteristic(fl_writing *w, fl_characteristic c, const char **cells) {
+	fl_sheet *sheet = w->sheet;
+	fl_stated_u stated = fl_word_state_u(c.spread);
+	bool has_spread = isfinite(c.value) && stated.value > 0;
+	int decimals = has_spread && stated.decimals < 3 ? stated.decimals : 3;
+	cells[0] = c.is_signed ? fl_word_signed(sheet, c.value, decimals) : fl_word_number(sheet, c.value, decimals);
+	cells[1] = !has_spread           ? ""
+	           : stated.decimals > 3 ? fl_word_number(sheet, ceil(stated.value * 1000 - 1e-9) / 1000, 3)
+	                                 : fl_word_number(sheet, stated.value, stated.decimals);
+	cells[2] = c.where ? c.where : "";
+}
+
+static void write_characteristic(fl_runs_table *table, size_t row) {
+	const char *cells[1 + 3 * FL_RUN_KINDS] = {characteristics[row].what};
 	for (size_t i = 0; i < table->count; i++)
-		cells[1 + i] = values[i];
-	cells[1 + table->count] = unit;
+		word_characteristic(table->w, characteristics[row].of(table->w, table->runs[i]), &cells[1 + 3 * i]);
 	fl_sheet_row(table->w->sheet, table->block, FL_ROW_PLAIN, cells);
-}
-
-/* A row of signed values in % of span, each with its uncertainty if it has one. */
-static void add_signed(fl_runs_table *table, const char *what, const double *spans, const double *us) {
-	const char *values[FL_RUN_KINDS];
-	fl_sheet *sheet = table->w->sheet;
-	for (size_t i = 0; i < table->count; i++)
-		values[i] = us && isfinite(us[i]) && us[i] > 0
-		                ? fl_sheet_printf(sheet, "%s ± %s", fl_word_error(sheet, 100 * spans[i], 100 * us[i]),
-		                                  fl_word_u(sheet, 100 * us[i]))
-		                : fl_word_signed(sheet, 100 * spans[i], 3);
-	add_row(table, what, values, "% of span");
-}
-
-static void add_sizes(fl_runs_table *table, const char *what, const double *spans, const char *const *where) {
-	const char *values[FL_RUN_KINDS];
-	fl_sheet *sheet = table->w->sheet;
-	for (size_t i = 0; i < table->count; i++)
-		values[i] = where && *where[i]
-		                ? fl_sheet_printf(sheet, "%s at %s", fl_word_number(sheet, 100 * spans[i], 3), where[i])
-		                : fl_word_number(sheet, 100 * spans[i], 3);
-	add_row(table, what, values, "% of span");
-}
-
-static void write_zeros(fl_runs_table *table) {
-	double a[FL_RUN_KINDS], b[FL_RUN_KINDS];
-#define EACH(what, value, u)                           \
-	do {                                               \
-		for (size_t i = 0; i < table->count; i++) {    \
-			const fl_run_result *run = table->runs[i]; \
-			a[i] = (value);                            \
-			b[i] = (u);                                \
-		}                                              \
-		add_signed(table, what, a, b);                 \
-	} while (0)
-	EACH("stopped zero ± U", run->stopped_zero_span, run->stopped_zero_u_span);
-	EACH("running zero ± u", run->running_zero_span, run->running_zero_u_span);
-	EACH("zero error of the least-squares line ± u", run->has_line ? run->zero_error_span : NAN,
-	     sqrt(run->line.var_intercept));
-	EACH("span error of the least-squares line ± u", run->has_line ? run->span_error_span : NAN,
-	     sqrt(run->line.var_slope));
-	EACH("error at the top less error at the zero", run->span_between_ends_span, NAN);
-	EACH("highest error of a single reading", run->error_high_span, NAN);
-	EACH("lowest error of a single reading", run->error_low_span, NAN);
-#undef EACH
-}
-
-static void write_linearity(fl_runs_table *table) {
-	static const char *const names[] = {"linearity, independent", "linearity, terminal-based", "linearity, zero-based"};
-	for (int line = 0; line < 3; line++) {
-		double sizes[FL_RUN_KINDS];
-		for (size_t i = 0; i < table->count; i++) {
-			const fl_run_result *run = table->runs[i];
-			const fl_reference_line *lines[] = {&run->independent, &run->terminal, &run->zero_based};
-			sizes[i] = run->has_linearity ? lines[line]->max_abs : NAN;
-		}
-		add_sizes(table, names[line], sizes, NULL);
-	}
-}
-
-static void write_hysteresis(fl_runs_table *table) {
-	double sizes[FL_RUN_KINDS], cycles[FL_RUN_KINDS], ranges[FL_RUN_KINDS], deviations[FL_RUN_KINDS];
-	const char *where[FL_RUN_KINDS], *range_where[FL_RUN_KINDS];
-	bool of_cycles = true;
-	for (size_t i = 0; i < table->count; i++) {
-		const fl_run_result *run = table->runs[i];
-		sizes[i] = run->hysteresis_span;
-		where[i] = isnan(sizes[i]) ? "" : fl_writing_point_name(table->w, run->hysteresis_point);
-		cycles[i] = run->hysteresis_cycle_span;
-		ranges[i] = run->repeatability_span;
-		deviations[i] = run->repeatability_s_span;
-		range_where[i] = isnan(ranges[i]) ? ""
-		                                  : fl_sheet_printf(table->w->sheet, "%s, %s",
-		                                                    fl_writing_point_name(table->w, run->repeatability_point),
-		                                                    fl_pass_word(run->repeatability_pass));
-		of_cycles = of_cycles && run->repeatability_of_cycles;
-	}
-	add_sizes(table, "hysteresis, mean over the cycles, largest", sizes, where);
-	add_sizes(table, "hysteresis within one cycle, largest", cycles, NULL);
-	add_sizes(table,
-	          of_cycles ? "repeatability, range of the cycles in one direction, largest"
-	                    : "repeatability, range of the readings in one direction, largest",
-	          ranges, range_where);
-	add_sizes(table, "standard deviation in one direction, largest", deviations, NULL);
 }
 
 static void write_not_determined(fl_runs_table *table) {
@@ -193,27 +211,28 @@ static void write_not_determined(fl_runs_table *table) {
 
 void fl_write_characteristics(fl_writing *w) {
 	fl_runs_table table = {.w = w};
-	fl_column columns[2 + FL_RUN_KINDS] = {{"", "", "", FL_ALIGN_LEFT, false}};
+	fl_column columns[1 + 3 * FL_RUN_KINDS] = {{"% of span", "", "", FL_ALIGN_LEFT, false}};
 	for (int kind = 0; kind < FL_RUN_KINDS; kind++) {
 		const fl_run_result *run = &w->result->runs[kind];
 		if (!run->available || run->same_as_found)
 			continue;
+		const char *group = fl_run_word(run->kind);
+		fl_column *next = &columns[1 + 3 * table.count];
+		next[0] = (fl_column){"value", "", group, FL_ALIGN_DECIMAL, false};
+		next[1] = (fl_column){"±", "", group, FL_ALIGN_DECIMAL, false};
+		next[2] = (fl_column){"at", "", group, FL_ALIGN_LEFT, false};
 		table.runs[table.count++] = run;
-		columns[table.count] = (fl_column){fl_run_word(run->kind), "", "", FL_ALIGN_DECIMAL, false};
 	}
 	if (table.count == 0)
 		return;
-	columns[table.count + 1] = (fl_column){"unit", "", "", FL_ALIGN_LEFT, false};
 	fl_sheet_add(w->sheet, FL_BLOCK_HEADING, "Zero, span, linearity, hysteresis, repeatability");
-	table.block = fl_sheet_add_table(w->sheet, columns, table.count + 2);
-	write_zeros(&table);
-	write_linearity(&table);
-	write_hysteresis(&table);
+	table.block = fl_sheet_add_table(w->sheet, columns, 1 + 3 * table.count);
+	for (size_t row = 0; row < sizeof characteristics / sizeof *characteristics; row++)
+		write_characteristic(&table, row);
 	write_not_determined(&table);
 }
 
-/* ---- how to read it
- * ---------------------------------------------------------------------------------------------------- */
+/* ---- how to read it -------------------------------------------------------- */
 
 static const char *tolerance_words(fl_writing *w) {
 	fl_sheet *sheet = w->sheet;
@@ -231,22 +250,41 @@ static void explain_tolerance(fl_writing *w) {
 		             "Tolerance. None is stated, neither for the instrument nor by the procedure.");
 		return;
 	}
-	fl_sheet_addf(w->sheet, FL_BLOCK_TEXT, "Tolerance. %s about the ideal output, stated %s.", tolerance_words(w),
-	              w->result->tolerance_from_instrument ? "for this instrument" : "by the procedure");
+	fl_sheet_add_led(w->sheet, FL_BLOCK_SMALL, "Tolerance.", "%s about the ideal output, stated %s.",
+	                 tolerance_words(w),
+	                 w->result->tolerance_from_instrument ? "for this instrument" : "by the procedure");
 }
 
-/* The contributions that the budget of the deciding point holds, once each. */
+/* The contribution of that rank, largest first; NULL if there are not so many. */
+static const fl_budget_line *contribution(const fl_point_result *point, size_t rank) {
+	for (size_t i = 0; i < point->budget_count; i++) {
+		size_t larger = 0;
+		for (size_t j = 0; j < point->budget_count; j++)
+			larger += point->budget[j].contribution_span > point->budget[i].contribution_span ||
+			          (point->budget[j].contribution_span == point->budget[i].contribution_span && j < i);
+		if (larger == rank)
+			return &point->budget[i];
+	}
+	return NULL;
+}
+
+/* What weighs most at the point that decides. */
 static void explain_budget(fl_writing *w) {
+	const fl_result *result = w->result;
 	const fl_run_result *run =
-	    &w->result->runs[w->result->runs[FL_RUN_AS_FOUND].available ? FL_RUN_AS_FOUND : FL_RUN_AS_LEFT];
+	    &result->runs[result->runs[FL_RUN_AS_FOUND].available ? FL_RUN_AS_FOUND : FL_RUN_AS_LEFT];
 	const fl_point_result *point = run->worst ? run->worst : run->largest_error;
-	if (!point || point->budget_count == 0)
-		return;
 	fl_text list = {0};
-	for (size_t i = 0; i < point->budget_count; i++)
-		fl_text_printf(&list, "%s%s", i ? "; " : "", point->budget[i].name);
-	fl_sheet_addf(w->sheet, FL_BLOCK_TEXT, "Uncertainty budget (at %s): %s.", name_of(w, point),
-	              list.data ? list.data : "");
+	for (size_t rank = 0; point && rank < 4; rank++) {
+		const fl_budget_line *line = contribution(point, rank);
+		if (line && line->contribution_span > 0)
+			fl_text_printf(&list, "%s%s %s", rank ? ", " : "", line->name,
+			               fl_word_u(w->sheet, 100 * line->contribution_span));
+	}
+	if (list.length > 0)
+		fl_sheet_add_led(w->sheet, FL_BLOCK_SMALL, "Largest of its contributions,",
+		                 "as standard uncertainties in %% of span, at %s %s: %s. They number %zu.",
+		                 fl_run_word(run->kind), name_of(w, point), list.data, point->budget_count);
 	w->sheet->failed |= list.failed;
 	fl_text_free(&list);
 }
@@ -264,39 +302,57 @@ static void explain_capillary(fl_writing *w) {
 			heating = fmax(heating, point->flow.heating_k);
 		}
 	if (reynolds > 0)
-		fl_sheet_addf(
-		    w->sheet, FL_BLOCK_TEXT,
-		    "Capillary, from geometry and pump speed. Reynolds number at most %s; entrance length at most %s mm "
-		    "of %s mm; kinetic term at most %s %% of span; heating at most %s K.",
-		    fl_word_number(w->sheet, reynolds, 0), fl_word_number(w->sheet, entrance * 1e3, 1),
-		    fl_word_plain(w->sheet, w->instrument->capillary.length_m * 1e3, 1),
-		    fl_word_number(w->sheet, 100 * kinetic, 2), fl_word_number(w->sheet, heating, 3));
+		fl_sheet_add_led(w->sheet, FL_BLOCK_SMALL, "Capillary, from geometry and pump speed.",
+		                 "Reynolds number at most %s; entrance length at most %s mm "
+		                 "of %s mm; kinetic term at most %s %% of span; heating at most %s K.",
+		                 fl_word_number(w->sheet, reynolds, 0), fl_word_number(w->sheet, entrance * 1e3, 1),
+		                 fl_word_plain(w->sheet, w->instrument->capillary.length_m * 1e3, 1),
+		                 fl_word_number(w->sheet, 100 * kinetic, 2), fl_word_number(w->sheet, heating, 3));
+}
+
+/* Stands with the outcome: what the verdict words mean here. */
+static void explain_rule(fl_writing *w) {
+	explain_tolerance(w);
+	fl_sheet_add_led(w->sheet, FL_BLOCK_SMALL, "Decision rule.", "%s%s", fl_procedure_rule_words(w->result->rule),
+	                 w->result->rule == FL_RULE_NONE
+	                     ? ""
+	                     : " It is applied to the error at every point of the tables; the run "
+	                       "has the verdict of its worst point.");
 }
 
 void fl_write_meaning(fl_writing *w) {
 	fl_sheet *sheet = w->sheet;
 	const fl_result *result = w->result;
 	fl_sheet_add(sheet, FL_BLOCK_HEADING, "What the numbers mean");
-	fl_sheet_addf(
-	    sheet, FL_BLOCK_TEXT,
-	    "Error. Output found less ideal output, over the output span of %s; positive where the instrument shows "
-	    "too much. n is the number of readings in a mean. The zero is read with the pump stopped and the legs "
+	fl_sheet_add_led(
+	    sheet, FL_BLOCK_SMALL, "Error.",
+	    "Output found less ideal output, over the output span of %s; positive where the instrument shows too "
+	    "much. n is the number of readings in a mean. The zero is read with the pump stopped and the legs "
 	    "equalised.",
 	    fl_physics_signal_range(w->instrument->scale.signal)->text);
-	fl_sheet_addf(
-	    sheet, FL_BLOCK_TEXT,
-	    "Uncertainty. U is the combined standard uncertainty u (JCGM 100) times the coverage factor k beside it, "
-	    "for a coverage probability of %s %%. U is given to two significant digits and the error to the same "
-	    "place; decisions are taken on unrounded numbers.",
+	fl_sheet_add_led(
+	    sheet, FL_BLOCK_SMALL, "Uncertainty.",
+	    "U is the combined standard uncertainty u (JCGM 100) times the coverage factor k beside it, for a "
+	    "coverage probability of %s %%. U is given to two significant digits and the error to the same place; "
+	    "decisions are taken on unrounded numbers.",
 	    fl_word_plain(sheet, 100 * result->coverage_probability, 2));
 	explain_budget(w);
-	explain_tolerance(w);
-	fl_sheet_addf(
-	    sheet, FL_BLOCK_TEXT, "Decision rule. %s%s", fl_procedure_rule_words(result->rule),
-	    result->rule == FL_RULE_NONE
-	        ? ""
-	        : " It is applied to the error at every point of the tables; the run has the verdict of its worst.");
 	explain_capillary(w);
 	for (size_t i = 0; i < result->warning_count; i++)
-		fl_sheet_addf(sheet, FL_BLOCK_ITEM, "To be noted: %s", fl_word_sentence(sheet, result->warnings[i]));
+		fl_sheet_add_led(sheet, FL_BLOCK_SMALL, "To be noted.", "%s", fl_word_sentence(sheet, result->warnings[i]));
+}
+
+void fl_write_statements(fl_writing *w) {
+	const fl_run_result *found = &w->result->runs[FL_RUN_AS_FOUND], *left = &w->result->runs[FL_RUN_AS_LEFT];
+	fl_sheet_add(w->sheet, FL_BLOCK_HEADING, "Outcome");
+	if (found->available)
+		state_run(w, found);
+	else
+		fl_sheet_add(w->sheet, FL_BLOCK_STATEMENT, "As-found: not available");
+	state_decision(w);
+	if (left->same_as_found)
+		fl_sheet_add(w->sheet, FL_BLOCK_STATEMENT, "As-left = as-found");
+	else if (left->available)
+		state_run(w, left);
+	explain_rule(w);
 }

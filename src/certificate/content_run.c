@@ -34,18 +34,18 @@ static void choose_columns(fl_run_table *table) {
 	if (w->instrument->scale.dial_unit == FL_DIAL_REDWOOD || w->instrument->scale.dial_unit == FL_DIAL_SAYBOLT)
 		short_unit = "s";
 	if (table->oil) {
-		add_column(table, "", "oil\nlot", "", FL_ALIGN_LEFT);
+		add_column(table, "", "oil, lot", "", FL_ALIGN_LEFT);
 		add_column(table, "", "direction", "", FL_ALIGN_LEFT);
-		add_column(table, "oil as certified, at its temperature", "T", "°C", FL_ALIGN_DECIMAL);
-		add_column(table, "oil as certified, at its temperature", "ν", "mm²/s", FL_ALIGN_DECIMAL);
-		add_column(table, "oil as certified, at its temperature", "ρ", "kg/m³", FL_ALIGN_DECIMAL);
+		add_column(table, "reference oil", "T", "°C", FL_ALIGN_DECIMAL);
+		add_column(table, "reference oil", "ν", "mm²/s", FL_ALIGN_DECIMAL);
+		add_column(table, "reference oil", "ρ", "kg/m³", FL_ALIGN_DECIMAL);
 	} else {
 		add_column(table, "", "point", "% of span", FL_ALIGN_LEFT);
 		add_column(table, "", "direction", "", FL_ALIGN_LEFT);
 		add_column(table, "", "applied", "mbar", FL_ALIGN_DECIMAL);
 	}
-	add_column(table, "", "equivalent\nviscosity", w->instrument->scale.dial_unit == FL_DIAL_MPA_S ? "mPa·s" : "mm²/s",
-	           FL_ALIGN_DECIMAL);
+	add_column(table, table->oil ? "reference oil" : "", "equivalent",
+	           w->instrument->scale.dial_unit == FL_DIAL_MPA_S ? "mPa·s" : "mm²/s", FL_ALIGN_DECIMAL);
 	if (table->dial_differs)
 		add_column(table, "", "dial", short_unit, FL_ALIGN_DECIMAL);
 	add_column(table, "", "n", "", FL_ALIGN_DECIMAL);

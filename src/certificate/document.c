@@ -56,7 +56,7 @@ static HPDF_Array add_array(HPDF_Doc pdf, HPDF_Dict owner, const char *key) {
 	return array;
 }
 
-/* ---- fonts ------------------------------------------------------------------------------------------------------- */
+/* ---- fonts ----------------------------------------------------------------- */
 
 /* "ABCDEF+OpenSans": six letters from what is used, as ISO 32000-1, 9.6.4 wants for a subset. */
 static void subset_name(const fl_typeface *type, char *out, size_t size) {
@@ -184,7 +184,7 @@ static HPDF_Dict add_font(HPDF_Doc pdf, fl_press *press, const fl_typeface *type
 	return font;
 }
 
-/* ---- pages ------------------------------------------------------------------------------------------------------- */
+/* ---- pages ----------------------------------------------------------------- */
 
 static void add_page(HPDF_Doc pdf, const fl_text *content, HPDF_Dict fonts[FL_WEIGHTS]) {
 	HPDF_Page page = HPDF_AddPage(pdf);
@@ -205,8 +205,7 @@ static void add_page(HPDF_Doc pdf, const fl_text *content, HPDF_Dict fonts[FL_WE
 	HPDF_Stream_Write(attr->stream, (HPDF_BYTE *)content->data, (HPDF_UINT)content->length);
 }
 
-/* ---- what the document says of itself ------------------------------------------------------------------------------
- */
+/* ---- what the document says of itself -------------------------------------- */
 
 static void escape(fl_text *out, const char *text) {
 	for (; *text; text++) {
@@ -339,8 +338,7 @@ static void add_identity(HPDF_Doc pdf, const fl_press *press) {
 		HPDF_Array_Add(ids, HPDF_Binary_New(pdf->mmgr, identity, sizeof identity));
 }
 
-/* ---- all of it -----------------------------------------------------------------------------------------------------
- */
+/* ---- all of it ------------------------------------------------------------- */
 
 static fl_status build(HPDF_Doc pdf, fl_press *press, fl_error *err) {
 	HPDF_Dict fonts[FL_WEIGHTS];

@@ -7,7 +7,7 @@
 typedef struct fl_breaker {
 	fl_press *press;
 	fl_weight weight;
-	double size, width;
+	double size, width, indent;
 	fl_line_of_text *lines;
 	size_t count, capacity;
 } fl_breaker;
@@ -27,7 +27,8 @@ static void add_line(fl_breaker *breaker, const char *start, const char *end) {
 
 static bool fits(const fl_breaker *breaker, const char *start, const char *end) {
 	double width = fl_press_width(breaker->press, breaker->weight, breaker->size, start, (size_t)(end - start));
-	return width <= breaker->width + 0.01;
+	double room = breaker->width - (breaker->count == 0 ? breaker->indent : 0);
+	return width <= room + 0.01;
 }
 
 /* End of the longest beginning of a word that fits; at least one character. */
@@ -70,7 +71,7 @@ static void break_paragraph(fl_breaker *breaker, const char *start, const char *
 		add_line(breaker, line, end);
 }
 
-size_t fl_press_lines(fl_press *press, fl_weight weight, double size, const char *text, double width,
+size_t fl_press_lines(fl_press *press, fl_weight weight, double size, const char *text, double width, double indent,
                       fl_line_of_text **lines) {
 	*lines = NULL;
 	if (press->status != FL_OK)
@@ -79,7 +80,7 @@ size_t fl_press_lines(fl_press *press, fl_weight weight, double size, const char
 		press->status = fl_fail(press->err, FL_E_VALUE, "a text of the certificate is not valid UTF-8");
 		return 0;
 	}
-	fl_breaker breaker = {.press = press, .weight = weight, .size = size, .width = width};
+	fl_breaker breaker = {.press = press, .weight = weight, .size = size, .width = width, .indent = indent};
 	for (const char *start = text;; start++) {
 		const char *end = strchr(start, '\n');
 		break_paragraph(&breaker, start, end ? end : start + strlen(start));

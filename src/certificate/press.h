@@ -16,8 +16,8 @@
 #define FL_LEFT 51.0
 #define FL_RIGHT (FL_PAGE_WIDTH - 51.0)
 #define FL_MEASURE (FL_RIGHT - FL_LEFT)
-#define FL_TOP (FL_PAGE_HEIGHT - 62.0)
-#define FL_BOTTOM 62.0
+#define FL_TOP (FL_PAGE_HEIGHT - 57.0)
+#define FL_BOTTOM 55.0
 
 /* Greys: 0 black to 1 white. */
 #define FL_BLACK 0.08
@@ -74,8 +74,9 @@ void fl_ink_words_right(fl_press *press, fl_weight weight, double size, double g
                         const char *text);
 double fl_press_width(fl_press *press, fl_weight weight, double size, const char *text, size_t length);
 
-/* ---- lines.c: breaking text into lines no wider than `width`; *lines in the press's arena, 0 when memory is out */
-size_t fl_press_lines(fl_press *press, fl_weight weight, double size, const char *text, double width,
+/* ---- lines.c: breaking text into lines no wider than `width`, the first shorter by `indent`; *lines in the press's
+ * arena, 0 when memory is out */
+size_t fl_press_lines(fl_press *press, fl_weight weight, double size, const char *text, double width, double indent,
                       fl_line_of_text **lines);
 
 /* ---- set_*.c: blocks */

@@ -7,7 +7,8 @@
 #include <stdio.h>
 #include <string.h>
 
-#define HEIGHT 178.0
+#define HEIGHT 172.0
+#define INSET 9.0   /* so that marks at the ends of the scale stand clear of the numbers */
 #define LABELS 22.0 /* room left of the frame for the numbers of the y axis */
 #define SIZE 7.2
 #define MARK 2.9
@@ -23,7 +24,7 @@ typedef struct fl_frame {
 
 static double page_x(const fl_frame *frame, double x) {
 	double share = (x - frame->chart->x_low) / (frame->chart->x_high - frame->chart->x_low);
-	return frame->left + share * (frame->right - frame->left);
+	return frame->left + INSET + share * (frame->right - frame->left - 2 * INSET);
 }
 
 static double page_y(const fl_frame *frame, double y) {
@@ -196,13 +197,16 @@ static void draw_points(const fl_frame *frame) {
 		if (point->bar > 0)
 			draw_bar(frame->press, x, page_y(frame, point->y - point->bar), page_y(frame, point->y + point->bar));
 	}
-	for (size_t i = 0; i < frame->chart->point_count; i++) {
-		const fl_plot_point *point = &frame->chart->points[i];
-		double x = page_x(frame, point->x) + aside(point->mark), y = page_y(frame, point->y);
-		draw_shape(frame->press, point->mark, point->filled, x, y);
-		if (point->crossed)
-			draw_cross(frame->press, x, y);
-	}
+	for (int crossed = 1; crossed >= 0; crossed--) /* what counts stands over what was struck */
+		for (size_t i = 0; i < frame->chart->point_count; i++) {
+			const fl_plot_point *point = &frame->chart->points[i];
+			double x = page_x(frame, point->x) + aside(point->mark), y = page_y(frame, point->y);
+			if (point->crossed != crossed)
+				continue;
+			draw_shape(frame->press, point->mark, point->filled, x, y);
+			if (crossed)
+				draw_cross(frame->press, x, y);
+		}
 }
 
 static void draw_sample(const fl_frame *frame, const fl_legend *entry, double x, double y) {

@@ -9,11 +9,11 @@
 
 #define BODY 8.4
 #define LEADING 11.4
-#define SMALL 7.2
-#define SMALL_LEADING 9.6
+#define SMALL 7.3
+#define SMALL_LEADING 9.5
 #define LABEL_SIZE 7.6
-#define COLUMN_GAP 22.0
-#define SIGN_ROOM 30.0
+#define COLUMN_GAP 20.0
+#define SIGN_ROOM 27.0
 
 typedef struct fl_style {
 	fl_weight weight;
@@ -22,18 +22,21 @@ typedef struct fl_style {
 
 static const fl_style STYLE_BODY = {FL_REGULAR, BODY, LEADING, FL_BLACK};
 static const fl_style STYLE_STATEMENT = {FL_BOLD, 9.4, 13.0, FL_BLACK};
-static const fl_style STYLE_SMALL = {FL_REGULAR, SMALL, SMALL_LEADING, FL_SOFT};
+static const fl_style STYLE_SMALL = {FL_REGULAR, SMALL, SMALL_LEADING, 0.2};
 
-/* Sets text in lines from x, `width` wide, going on overleaf where a page is full. Returns the height used. */
-static void set_text(fl_press *press, fl_style style, const char *text, double x, double width) {
+/* Sets text in lines from x, `width` wide, going on overleaf where a page is full; begun by words in bold, if any. */
+static void set_text(fl_press *press, fl_style style, const char *lead, const char *text, double x, double width) {
 	fl_line_of_text *lines;
-	size_t count = fl_press_lines(press, style.weight, style.size, text, width, &lines);
+	double indent = *lead ? fl_press_width(press, FL_BOLD, style.size, lead, strlen(lead)) + 0.4 * style.size : 0;
+	size_t count = fl_press_lines(press, style.weight, style.size, text, width, fmin(indent, width / 2), &lines);
 	if (count == 2 || count == 3) /* no single line left behind or alone overleaf */
 		fl_press_need(press, (double)count * style.leading);
 	for (size_t i = 0; i < count; i++) {
 		fl_press_need(press, i == 0 && count > 3 ? 2 * style.leading : style.leading);
-		fl_ink_text(press, style.weight, style.size, style.grey, x, press->y - style.size, lines[i].start,
-		            lines[i].length);
+		if (i == 0)
+			fl_ink_words(press, FL_BOLD, style.size, FL_BLACK, x, press->y - style.size, lead);
+		fl_ink_text(press, style.weight, style.size, style.grey, i == 0 ? x + indent : x, press->y - style.size,
+		            lines[i].start, lines[i].length);
 		press->y -= style.leading;
 	}
 }
@@ -41,7 +44,7 @@ static void set_text(fl_press *press, fl_style style, const char *text, double x
 /* Lines at a place, without going overleaf. */
 static double set_lines_at(fl_press *press, fl_style style, const char *text, double x, double y, double width) {
 	fl_line_of_text *lines;
-	size_t count = fl_press_lines(press, style.weight, style.size, text, width, &lines);
+	size_t count = fl_press_lines(press, style.weight, style.size, text, width, 0, &lines);
 	for (size_t i = 0; i < count; i++)
 		fl_ink_text(press, style.weight, style.size, style.grey, x, y - style.size - (double)i * style.leading,
 		            lines[i].start, lines[i].length);
@@ -50,34 +53,36 @@ static double set_lines_at(fl_press *press, fl_style style, const char *text, do
 
 static double lines_height(fl_press *press, fl_style style, const char *text, double width) {
 	fl_line_of_text *lines;
-	return (double)fl_press_lines(press, style.weight, style.size, text, width, &lines) * style.leading;
+	return (double)fl_press_lines(press, style.weight, style.size, text, width, 0, &lines) * style.leading;
 }
 
-/* ---- grids ------------------------------------------------------------------------------------------------------- */
+/* ---- grids ----------------------------------------------------------------- */
 
 typedef struct fl_grid_plan {
 	double column_width, label_width;
+	fl_style label, value; /* smaller where three columns or more share the page */
 } fl_grid_plan;
 
-static const fl_style STYLE_LABEL = {FL_REGULAR, LABEL_SIZE, LEADING, FL_SOFT};
-
 static fl_grid_plan plan_grid(fl_press *press, const fl_block *block) {
-	fl_grid_plan plan = {.label_width = 0};
+	bool narrow = block->grid_count > 2;
+	double size = narrow ? 7.7 : BODY, leading = narrow ? 10.3 : LEADING;
+	fl_grid_plan plan = {.label = {FL_REGULAR, narrow ? 7.3 : LABEL_SIZE, leading, FL_SOFT},
+	                     .value = {FL_REGULAR, size, leading, FL_BLACK}};
 	double columns = (double)block->grid_count;
 	plan.column_width = (FL_MEASURE - (columns - 1) * COLUMN_GAP) / columns;
 	for (size_t c = 0; c < block->grid_count; c++)
 		for (size_t i = 0; i < block->grid[c].count; i++) {
 			const char *label = block->grid[c].pairs[i].label;
 			plan.label_width =
-			    fmax(plan.label_width, fl_press_width(press, FL_REGULAR, LABEL_SIZE, label, strlen(label)));
+			    fmax(plan.label_width, fl_press_width(press, FL_REGULAR, plan.label.size, label, strlen(label)));
 		}
 	plan.label_width = fmin(plan.label_width + 9, 0.46 * plan.column_width);
 	return plan;
 }
 
 static double pair_height(fl_press *press, const fl_grid_plan *plan, const fl_pair *pair) {
-	double label = lines_height(press, STYLE_LABEL, pair->label, plan->label_width - 6);
-	return fmax(label, lines_height(press, STYLE_BODY, pair->value, plan->column_width - plan->label_width)) + 1.2;
+	double label = lines_height(press, plan->label, pair->label, plan->label_width - 6);
+	return fmax(label, lines_height(press, plan->value, pair->value, plan->column_width - plan->label_width)) + 1.2;
 }
 
 static double grid_height(fl_press *press, const fl_grid_plan *plan, const fl_block *block) {
@@ -92,8 +97,8 @@ static double grid_height(fl_press *press, const fl_grid_plan *plan, const fl_bl
 }
 
 static void set_pair(fl_press *press, const fl_grid_plan *plan, const fl_pair *pair, double x, double y) {
-	set_lines_at(press, STYLE_LABEL, pair->label, x, y - (BODY - LABEL_SIZE), plan->label_width - 6);
-	set_lines_at(press, STYLE_BODY, pair->value, x + plan->label_width, y, plan->column_width - plan->label_width);
+	set_lines_at(press, plan->label, pair->label, x, y - (plan->value.size - plan->label.size), plan->label_width - 6);
+	set_lines_at(press, plan->value, pair->value, x + plan->label_width, y, plan->column_width - plan->label_width);
 }
 
 static void set_grid_head(fl_press *press, const fl_grid_plan *plan, const char *head, double x, double y) {
@@ -114,9 +119,9 @@ static void set_long_grid(fl_press *press, const fl_block *block) {
 		for (size_t i = 0; i < block->grid[c].count; i++) {
 			const fl_pair *pair = &block->grid[c].pairs[i];
 			fl_press_need(press, 2 * LEADING);
-			set_lines_at(press, STYLE_LABEL, pair->label, FL_LEFT, press->y - (BODY - LABEL_SIZE),
+			set_lines_at(press, plan.label, pair->label, FL_LEFT, press->y - (plan.value.size - plan.label.size),
 			             plan.label_width - 6);
-			set_text(press, STYLE_BODY, pair->value, FL_LEFT + plan.label_width, FL_MEASURE - plan.label_width);
+			set_text(press, plan.value, "", pair->value, FL_LEFT + plan.label_width, FL_MEASURE - plan.label_width);
 			press->y -= 1.2;
 		}
 	}
@@ -141,10 +146,10 @@ static void set_grid(fl_press *press, const fl_block *block) {
 			y -= pair_height(press, &plan, &block->grid[c].pairs[i]);
 		}
 	}
-	press->y -= height + 7;
+	press->y -= height + 5;
 }
 
-/* ---- signatures -------------------------------------------------------------------------------------------------- */
+/* ---- signatures ------------------------------------------------------------ */
 
 static double signatures_height(const fl_block *block) {
 	size_t most = 0;
@@ -181,7 +186,7 @@ static void set_signatures(fl_press *press, const fl_block *block) {
 	press->y -= signatures_height(block);
 }
 
-/* ---- the rest ---------------------------------------------------------------------------------------------------- */
+/* ---- the rest -------------------------------------------------------------- */
 
 /* What of a block must stand on the page of the heading above it. */
 static double least_height(fl_press *press, const fl_block *block) {
@@ -204,16 +209,16 @@ static double least_height(fl_press *press, const fl_block *block) {
 static void set_heading(fl_press *press, const fl_block *block, const fl_block *next) {
 	double after = next ? least_height(press, next) : 0;
 	if (!fl_press_need(press, 26 + after) && press->y < FL_TOP)
-		press->y -= 7;
+		press->y -= 5;
 	fl_ink_words(press, FL_BOLD, 10.2, FL_BLACK, FL_LEFT, press->y - 10.2, block->text);
-	press->y -= 17.5;
+	press->y -= 16.5;
 }
 
-static void set_item(fl_press *press, const char *text) {
+static void set_item(fl_press *press, const fl_block *block, bool last) {
 	fl_press_need(press, LEADING);
 	fl_ink_words(press, FL_REGULAR, BODY, FL_BLACK, FL_LEFT, press->y - BODY, "–");
-	set_text(press, STYLE_BODY, text, FL_LEFT + 10, FL_MEASURE - 10);
-	press->y -= 1;
+	set_text(press, STYLE_BODY, block->lead, block->text, FL_LEFT + 10, FL_MEASURE - 10);
+	press->y -= last ? 4 : 1;
 }
 
 static void set_end(fl_press *press, const char *text) {
@@ -234,19 +239,19 @@ static void set_block(fl_press *press, const fl_block *block, const fl_block *ne
 		set_heading(press, block, next);
 		break;
 	case FL_BLOCK_STATEMENT:
-		set_text(press, STYLE_STATEMENT, block->text, FL_LEFT, FL_MEASURE);
+		set_text(press, STYLE_STATEMENT, block->lead, block->text, FL_LEFT, FL_MEASURE);
 		press->y -= 2;
 		break;
 	case FL_BLOCK_TEXT:
-		set_text(press, STYLE_BODY, block->text, FL_LEFT, FL_MEASURE);
+		set_text(press, STYLE_BODY, block->lead, block->text, FL_LEFT, FL_MEASURE);
 		press->y -= 4;
 		break;
 	case FL_BLOCK_SMALL:
-		set_text(press, STYLE_SMALL, block->text, FL_LEFT, FL_MEASURE);
-		press->y -= 4;
+		set_text(press, STYLE_SMALL, block->lead, block->text, FL_LEFT, FL_MEASURE);
+		press->y -= 2.5;
 		break;
 	case FL_BLOCK_ITEM:
-		set_item(press, block->text);
+		set_item(press, block, !next || next->kind != FL_BLOCK_ITEM);
 		break;
 	case FL_BLOCK_GRID:
 		set_grid(press, block);
@@ -272,7 +277,7 @@ static void set_block(fl_press *press, const fl_block *block, const fl_block *ne
 static void set_masthead(fl_press *press) {
 	const fl_sheet *sheet = press->sheet;
 	static const fl_style issuer = {FL_BOLD, 9.4, 12.4, FL_BLACK}, address = {FL_REGULAR, 7.8, 10.4, FL_SOFT};
-	double y = FL_PAGE_HEIGHT - 46, width = 0.58 * FL_MEASURE;
+	double y = FL_PAGE_HEIGHT - 43, width = 0.58 * FL_MEASURE;
 	double right = y;
 	y -= set_lines_at(press, issuer, sheet->issuer, FL_LEFT, y, width);
 	for (size_t i = 0; i < sheet->issuer_line_count; i++)
@@ -281,7 +286,7 @@ static void set_masthead(fl_press *press) {
 	double number = fl_press_width(press, FL_BOLD, 11.5, sheet->number, strlen(sheet->number));
 	double size = fmin(11.5, 11.5 * 0.4 * FL_MEASURE / fmax(number, 1));
 	fl_ink_words_right(press, FL_BOLD, size, FL_BLACK, FL_RIGHT, right - 23.5, sheet->number);
-	y = fmin(y, right - 26) - 16;
+	y = fmin(y, right - 26) - 12;
 	fl_ink_words(press, FL_BOLD, 21, FL_BLACK, FL_LEFT, y - 21, sheet->title);
 	y -= 28;
 	if (*sheet->subtitle) {
@@ -297,14 +302,14 @@ static void set_margins(fl_press *press, size_t page, size_t count) {
 	const fl_sheet *sheet = press->sheet;
 	char place[48];
 	snprintf(place, sizeof place, "page %zu of %zu", page, count);
-	double head = FL_PAGE_HEIGHT - 40, foot = 40;
+	double head = FL_PAGE_HEIGHT - 38, foot = 34;
 	if (page > 1) {
 		fl_ink_words(press, FL_REGULAR, SMALL, FL_SOFT, FL_LEFT, head, sheet->running);
 		fl_ink_line(press, FL_LEFT, head - 5, FL_RIGHT, head - 5, 0.35, FL_RULE);
 	}
 	if (*sheet->mark) {
 		double width = fl_press_width(press, FL_BOLD, 9, sheet->mark, strlen(sheet->mark));
-		double left = (FL_PAGE_WIDTH - width) / 2, y = FL_PAGE_HEIGHT - 26;
+		double left = (FL_PAGE_WIDTH - width) / 2, y = FL_PAGE_HEIGHT - 25;
 		const double box[4][2] = {
 		    {left - 12, y - 5}, {left + width + 12, y - 5}, {left + width + 12, y + 10.5}, {left - 12, y + 10.5}};
 		fl_ink_grey(press, FL_BLACK, true);

@@ -8,7 +8,7 @@
 
 #define LEAST_GAP 5.0
 #define WIDEST_GAP 22.0
-#define PAD 2.6 /* above and below the text of a row */
+#define PAD 2.2 /* above and below the text of a row */
 
 typedef struct fl_track {
 	double x, width;    /* where the column stands */
@@ -65,7 +65,7 @@ static void measure_column(fl_table_plan *plan, size_t c) {
 
 static double measure(fl_table_plan *plan, double size) {
 	plan->size = size;
-	plan->leading = size * 1.36;
+	plan->leading = size * 1.27;
 	double total = 0;
 	for (size_t c = 0; c < plan->block->column_count; c++) {
 		measure_column(plan, c);
@@ -99,7 +99,7 @@ static bool may_wrap(const fl_block *block) {
 /* Chooses size, widths and places: smaller type before squeezing, what is left over goes between the columns. */
 static void place_columns(fl_table_plan *plan) {
 	const size_t count = plan->block->column_count;
-	double total = measure(plan, 7.4);
+	double total = measure(plan, 7.3);
 	if (total > FL_MEASURE && !may_wrap(plan->block))
 		for (double size = 7.2; size > 6.25 && total > FL_MEASURE; size -= 0.2)
 			total = measure(plan, size);
@@ -215,7 +215,7 @@ static double break_row(const fl_table_plan *plan, const fl_row *row, fl_cell_li
 	size_t most = 1;
 	for (size_t c = 0; c < plan->block->column_count; c++) {
 		double room = plan->block->columns[c].align == FL_ALIGN_DECIMAL ? FL_MEASURE : plan->tracks[c].width;
-		cells[c].count = fl_press_lines(plan->press, FL_REGULAR, plan->size, row->cells[c], room, &cells[c].lines);
+		cells[c].count = fl_press_lines(plan->press, FL_REGULAR, plan->size, row->cells[c], room, 0, &cells[c].lines);
 		most = cells[c].count > most ? cells[c].count : most;
 	}
 	return (double)most * plan->leading + (row->kind == FL_ROW_FIRST ? PAD : PAD / 2);
@@ -298,5 +298,5 @@ void fl_set_table(fl_press *press, const fl_block *block) {
 	}
 	press->y -= PAD / 2;
 	fl_ink_line(press, FL_LEFT, press->y, FL_RIGHT, press->y, 0.6, FL_BLACK);
-	press->y -= 12;
+	press->y -= 9;
 }

@@ -76,7 +76,7 @@ static fl_block *add_block(fl_sheet *sheet, fl_block_kind kind) {
 		return NULL;
 	sheet->blocks = grown;
 	fl_block *block = &sheet->blocks[sheet->block_count++];
-	*block = (fl_block){.kind = kind, .text = ""};
+	*block = (fl_block){.kind = kind, .lead = "", .text = ""};
 	return block;
 }
 
@@ -95,6 +95,19 @@ void fl_sheet_addf(fl_sheet *sheet, fl_block_kind kind, const char *format, ...)
 	fl_block *block = add_block(sheet, kind);
 	if (block)
 		block->text = text;
+}
+
+void fl_sheet_add_led(fl_sheet *sheet, fl_block_kind kind, const char *lead, const char *format, ...) {
+	va_list values;
+	va_start(values, format);
+	const char *text = vprint(sheet, format, values);
+	va_end(values);
+	const char *copy = fl_sheet_copy(sheet, lead);
+	fl_block *block = add_block(sheet, kind);
+	if (block) {
+		block->lead = copy;
+		block->text = text;
+	}
 }
 
 fl_block *fl_sheet_add_grid(fl_sheet *sheet, fl_block_kind kind, const char *const *heads, size_t columns) {

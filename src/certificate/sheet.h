@@ -92,6 +92,7 @@ typedef enum fl_block_kind {
 
 typedef struct fl_block {
 	fl_block_kind kind;
+	const char *lead; /* words in bold that begin the text, "" if none */
 	const char *text; /* all but grid, table and signatures */
 	fl_pairs *grid;   /* grid, signatures: the columns */
 	size_t grid_count;
@@ -129,6 +130,8 @@ const char *fl_sheet_printf(fl_sheet *sheet, const char *format, ...) FL_PRINTF(
 /* Adds a block with text only (heading, statement, text, item, small, end). */
 void fl_sheet_add(fl_sheet *sheet, fl_block_kind kind, const char *text);
 void fl_sheet_addf(fl_sheet *sheet, fl_block_kind kind, const char *format, ...) FL_PRINTF(3, 4);
+/* The same, begun by words in bold. */
+void fl_sheet_add_led(fl_sheet *sheet, fl_block_kind kind, const char *lead, const char *format, ...) FL_PRINTF(4, 5);
 /* Adds a block with `columns` columns of pairs; fl_sheet_pair fills them. NULL when memory is out. */
 fl_block *fl_sheet_add_grid(fl_sheet *sheet, fl_block_kind kind, const char *const *heads, size_t columns);
 /* Left out if `value` is NULL or "". `block` may be NULL (memory out). */

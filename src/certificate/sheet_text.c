@@ -47,7 +47,7 @@ static void write_block(const fl_block *block, fl_text *out) {
 		fl_text_printf(out, "\n%s\n", block->text);
 		break;
 	case FL_BLOCK_ITEM:
-		fl_text_printf(out, "  – %s\n", block->text);
+		fl_text_printf(out, "  – %s%s%s\n", block->lead, *block->lead ? " " : "", block->text);
 		break;
 	case FL_BLOCK_GRID:
 	case FL_BLOCK_SIGNATURES:
@@ -63,7 +63,7 @@ static void write_block(const fl_block *block, fl_text *out) {
 	case FL_BLOCK_TEXT:
 	case FL_BLOCK_SMALL:
 	case FL_BLOCK_END:
-		fl_text_printf(out, "%s\n", block->text);
+		fl_text_printf(out, "%s%s%s\n", block->lead, *block->lead ? " " : "", block->text);
 		break;
 	}
 }
