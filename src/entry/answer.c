@@ -276,6 +276,9 @@ fl_status fl_entry_draft_go_on(fl_entry *entry, fl_text *say, fl_error *err) {
 
 static fl_status answer_reading(fl_entry *entry, const fl_step *step, const char *line, fl_text *say, fl_error *err) {
 	fl_error inner = {0};
+	if (strcasecmp(line, "close") == 0)
+		return fl_fail(err, FL_E_STATE, "the run cannot be closed yet: %d of %d readings are there", step->done,
+		               step->total);
 	fl_entry_draft_begin(entry, step, false);
 	fl_status status = fl_entry_draft_read(entry, line, &inner);
 	if (status == FL_ASK) {

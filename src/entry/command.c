@@ -96,7 +96,7 @@ static fl_status undo(fl_entry *entry, const char *rest, fl_text *say, fl_error 
 	int target = fl_session_last_undoable(entry->session);
 	char what[256];
 	if (target == 0)
-		return fl_fail(err, FL_E_STATE, "there is nothing that can be taken back: closed runs are locked");
+		return fl_fail(err, FL_E_STATE, "nothing here can be taken back; what a closed run holds is locked");
 	fl_text_printf(say, "  Taking back %s\n", describe(entry->session, target, what, sizeof what));
 	entry->shown_place = -1;
 	return with_reason(entry, FL_FORM_UNDO, target, rest, say, err);
@@ -105,15 +105,14 @@ static fl_status undo(fl_entry *entry, const char *rest, fl_text *say, fl_error 
 static fl_status strike(fl_entry *entry, const char *rest, fl_text *say, fl_error *err) {
 	char *end;
 	long target = strtol(rest, &end, 10);
-	if (end == rest || (*end && *end != ' ') || target <= 0 || target > entry->session->last_sequence)
+	if (end == rest || (*end && *end != ' ') || target <= 0)
 		return fl_fail(err, FL_E_VALUE, "strike what: type strike and the number in brackets before the reading");
 	while (*end == ' ')
 		end++;
 	/* Asked of the journal before the reason is, so that a wrong number is told at once. */
 	for (size_t i = 0; i < entry->session->reading_count; i++) {
 		const fl_reading *r = &entry->session->readings[i];
-		if (r->sequence == (int)target && !r->watched && !r->struck && !r->undone &&
-		    !entry->session->runs[r->run].closed)
+		if (r->sequence == target && !r->watched && !r->struck && !r->undone && !entry->session->runs[r->run].closed)
 			return with_reason(entry, FL_FORM_STRIKE, (int)target, end, say, err);
 	}
 	return fl_fail(err, FL_E_VALUE, "entry %ld is no reading that can be struck: list shows those of this run", target);

@@ -55,7 +55,7 @@
 	"conditions:\n"                                                                                            \
 	"  - {id: supply-frequency, ask: Supply frequency, answer: amount, unit: Hz, possible: 45 to 65 Hz, "      \
 	"plausible: 49 to 61 Hz}\n"                                                                                \
-	"  - {id: line-volume, ask: Speed of the motor, answer: amount, unit: r/min, possible: 1 to 4000 r/min, "  \
+	"  - {id: motor-speed, ask: Speed of the motor, answer: amount, unit: r/min, possible: 1 to 4000 r/min, "  \
 	"plausible: 1 to 3000 r/min, required: no}\n"                                                              \
 	"restore:\n"                                                                                               \
 	"  - {id: valves-open, ask: Are the valves open, answer: yes or no, may decline: yes}\n"
