@@ -18,10 +18,10 @@ struct fl_arena_block {
 };
 
 static struct fl_arena_block *new_block(fl_arena *arena, size_t size) {
-	struct fl_arena_block *block = calloc(1, sizeof *block + size);
+	struct fl_arena_block *block = malloc(sizeof *block + size);
 	if (!block)
 		return NULL;
-	block->size = size;
+	*block = (struct fl_arena_block){.size = size};
 	/* A block made to measure goes behind the current one, which may still have room. */
 	if (arena->head && size > BLOCK_BYTES) {
 		block->next = arena->head->next;
@@ -46,7 +46,7 @@ void *fl_arena_alloc(fl_arena *arena, size_t count, size_t size) {
 		return NULL;
 	void *place = (char *)block->bytes + block->used;
 	block->used += total;
-	return place;
+	return memset(place, 0, total); /* only what is handed out: most arenas use little of their block */
 }
 
 char *fl_arena_strndup(fl_arena *arena, const char *text, size_t length) {
@@ -62,13 +62,16 @@ char *fl_arena_strdup(fl_arena *arena, const char *text) {
 }
 
 char *fl_arena_printf(fl_arena *arena, const char *format, ...) {
+	char most[256]; /* nearly every text is shorter, and then it is formatted once */
 	va_list values, again;
 	va_start(values, format);
 	va_copy(again, values);
-	int length = vsnprintf(NULL, 0, format, values);
+	int length = vsnprintf(most, sizeof most, format, values);
 	va_end(values);
 	char *text = length < 0 ? NULL : fl_arena_alloc(arena, (size_t)length + 1, 1);
-	if (text)
+	if (text && (size_t)length < sizeof most)
+		memcpy(text, most, (size_t)length + 1);
+	else if (text)
 		vsnprintf(text, (size_t)length + 1, format, again);
 	va_end(again);
 	return text;

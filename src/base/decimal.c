@@ -209,15 +209,20 @@ static char *put_whole(const char *text, char *out, size_t size) {
 static bool print_magnitude(double value, int decimals, char *out) {
 	char raw[PRINTED_SIZE];
 	decimals = decimals < 0 ? 0 : decimals > DECIMALS_MOST ? DECIMALS_MOST : decimals;
-	snprintf(raw, sizeof raw, "%.*f", decimals, fabs(value));
-	size_t whole = strspn(raw, DIGITS);
-	const char *fraction = raw + strlen(raw) - decimals;
-	snprintf(out, PRINTED_SIZE, "%.*s%s%s", (int)whole, raw, decimals > 0 ? "." : "", decimals > 0 ? fraction : "");
-	return has_nonzero_digit(out, strlen(out));
+	size_t length = (size_t)snprintf(raw, sizeof raw, "%.*f", decimals, fabs(value));
+	size_t whole = strspn(raw, DIGITS), places = (size_t)decimals;
+	memcpy(out, raw, whole);
+	if (decimals > 0) {
+		out[whole++] = '.';
+		memcpy(out + whole, raw + length - places, places);
+		whole += places;
+	}
+	out[whole] = '\0';
+	return has_nonzero_digit(out, whole);
 }
 
 static char *format_with(double value, int decimals, const char *plus, const char *minus, char *out, size_t size) {
-	char digits[PRINTED_SIZE] = "", whole[PRINTED_SIZE + 8];
+	char digits[PRINTED_SIZE], whole[PRINTED_SIZE + 8] = "";
 	if (isnan(value))
 		return put_whole("nan", out, size);
 	bool nonzero = true;
@@ -225,7 +230,9 @@ static char *format_with(double value, int decimals, const char *plus, const cha
 		memcpy(digits, "inf", 4);
 	else
 		nonzero = print_magnitude(value, decimals, digits);
-	snprintf(whole, sizeof whole, "%s%s", !nonzero ? "" : value < 0 ? minus : plus, digits);
+	if (nonzero)
+		strcpy(whole, value < 0 ? minus : plus); /* at most three bytes */
+	strcat(whole, digits);
 	return put_whole(whole, out, size);
 }
 

@@ -46,14 +46,18 @@ void fl_text_printf(fl_text *text, const char *format, ...) {
 	va_list values, again;
 	va_start(values, format);
 	va_copy(again, values);
-	int length = vsnprintf(NULL, 0, format, values);
+	size_t room = text->failed ? 0 : text->capacity - text->length;
+	int length = vsnprintf(room ? text->data + text->length : NULL, room, format, values);
 	va_end(values);
+	bool fitted = length >= 0 && (size_t)length < room;
+	if (room > 0 && !fitted)
+		text->data[text->length] = '\0';
 	if (length < 0)
 		text->failed = true;
-	else if (reserve(text, (size_t)length)) {
-		vsnprintf(text->data + text->length, (size_t)length + 1, format, again);
+	else if (!fitted && reserve(text, (size_t)length))
+		fitted = vsnprintf(text->data + text->length, (size_t)length + 1, format, again) == length;
+	if (fitted)
 		text->length += (size_t)length;
-	}
 	va_end(again);
 }
 

@@ -148,7 +148,9 @@ static const char *next_plain(const char **text, char single[5]) {
 	}
 	const char *start = *text;
 	fl_utf8_next(text);
-	snprintf(single, 5, "%.*s", (int)(*text - start), start);
+	size_t length = (size_t)(*text - start); /* at most 4 */
+	memcpy(single, start, length);
+	single[length] = '\0';
 	return single;
 }
 

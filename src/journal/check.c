@@ -119,11 +119,19 @@ static bool taken_fits(const char *taken) {
 	return !taken || strcmp(taken, "unknown") == 0 || fl_utc_parse(taken, &utc, NULL) >= 0;
 }
 
-static bool same_place(const fl_reading *r, const fl_event *e) {
-	return r->run == (fl_run_kind)fl_words_index(fl_words_runs, field(e, FL_F_RUN)) &&
-	       r->cycle == fl_words_count(field(e, FL_F_CYCLE)) &&
-	       r->pass == (fl_pass)fl_words_index(fl_words_passes, field(e, FL_F_PASS)) &&
-	       r->point == fl_words_point(field(e, FL_F_POINT));
+/* The reading that stands already where this one wants to stand; NULL if there is none. */
+static const fl_reading *reading_in_place(const fl_session *s, const fl_event *e) {
+	fl_run_kind run = (fl_run_kind)fl_words_index(fl_words_runs, field(e, FL_F_RUN));
+	fl_pass pass = (fl_pass)fl_words_index(fl_words_passes, field(e, FL_F_PASS));
+	int cycle = fl_words_count(field(e, FL_F_CYCLE)), point = fl_words_point(field(e, FL_F_POINT));
+	int number = fl_words_count(field(e, FL_F_NUMBER));
+	for (size_t i = 0; i < s->reading_count; i++) {
+		const fl_reading *r = &s->readings[i];
+		if (r->run == run && r->cycle == cycle && r->pass == pass && r->point == point && r->number == number &&
+		    !r->undone && !r->watched)
+			return r;
+	}
+	return NULL;
 }
 
 static fl_status check_value(const fl_event *e, fl_error *err) {
@@ -149,12 +157,9 @@ static fl_status check_reading(const fl_session *s, const fl_event *e, fl_error 
 		return fl_fail(err, FL_E_VALUE, "there is no test point %d", point + 1);
 	if (!pairs_fit(e) || !taken_fits(field(e, FL_F_TAKEN)))
 		return fl_fail(err, FL_E_VALUE, "a temperature or pressure of the reading lacks its typed text or its value");
-	if (e->verb == FL_V_READ)
-		for (size_t i = 0; i < s->reading_count; i++)
-			if (!s->readings[i].undone && !s->readings[i].watched && same_place(&s->readings[i], e) &&
-			    s->readings[i].number == fl_words_count(field(e, FL_F_NUMBER)))
-				return fl_fail(err, FL_E_STATE, "this reading stands in the record already, as entry %d",
-				               s->readings[i].sequence);
+	const fl_reading *there = e->verb == FL_V_READ ? reading_in_place(s, e) : NULL;
+	if (there)
+		return fl_fail(err, FL_E_STATE, "this reading stands in the record already, as entry %d", there->sequence);
 	return check_value(e, err);
 }
 
