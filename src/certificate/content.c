@@ -32,6 +32,13 @@ const char *fl_writing_point_name(const fl_writing *w, int point) {
 	return fl_sheet_printf(w->sheet, "point %d", point + 1);
 }
 
+const char *fl_writing_why_missing(const fl_writing *w, const fl_run_result *run) {
+	const char *told = w->session->runs[run->kind].missing_reason;
+	if (!fl_word_is_empty(told))
+		return told;
+	return fl_word_is_empty(run->unavailable_reason) ? "the run was not taken" : run->unavailable_reason;
+}
+
 const char *fl_writing_run_title(fl_run_kind kind) {
 	return kind == FL_RUN_AS_FOUND ? "As-found" : "As-left";
 }

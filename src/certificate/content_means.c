@@ -60,30 +60,43 @@ static const char *four_digits(fl_sheet *sheet, double value) {
 	return fl_word_number(sheet, value, value > 0 ? 3 - (int)floor(log10(value)) : 3);
 }
 
-static void write_oil(fl_writing *w, fl_block *table, const fl_session_point *at) {
+/* One oil as certified; without its issuer where all have the same. */
+static void write_oil(fl_writing *w, fl_block *table, const fl_session_point *at, bool with_issuer) {
 	fl_sheet *sheet = w->sheet;
 	const fl_oil *oil = fl_stock_oil(w->stock, at->lot);
-	const char *cells[13] = {at->oil, at->lot, "unknown", "", "", "", "", "", "", "", "", "", "not traceable"};
+	const char *cells[13] = {at->oil, at->lot, "unknown", "", "", "", "", "", "", "", "", "not traceable", ""};
 	size_t i;
 	const fl_oil_point *point = oil ? nearest(w, oil, &i) : NULL;
 	if (point) {
 		cells[2] = oil->certificate;
-		cells[3] = oil->issuer;
-		cells[4] = fl_word_number(sheet, point->temp_c, 2);
-		cells[5] = four_digits(sheet, point->nu_m2_s * 1e6);
-		cells[6] = fl_word_number(sheet, 100 * oil->U_nu_rel[i], 2);
-		cells[7] = fl_word_number(sheet, point->rho_kg_m3, 1);
-		cells[8] = fl_word_number(sheet, oil->U_rho_kg_m3[i], 1);
-		cells[9] = fl_word_day(sheet, oil->certified_on);
-		cells[10] = fl_word_day(sheet, oil->use_before);
-		cells[11] = fl_word_day(sheet, oil->opened_on);
-		cells[12] = fl_stock_oil_in_date(oil, w->session->day, NULL) == FL_OK ? "in date" : "out of date";
+		cells[3] = fl_word_number(sheet, point->temp_c, 2);
+		cells[4] = four_digits(sheet, point->nu_m2_s * 1e6);
+		cells[5] = fl_word_number(sheet, 100 * oil->U_nu_rel[i], 2);
+		cells[6] = fl_word_number(sheet, point->rho_kg_m3, 1);
+		cells[7] = fl_word_number(sheet, oil->U_rho_kg_m3[i], 1);
+		cells[8] = fl_word_day(sheet, oil->certified_on);
+		cells[9] = fl_word_day(sheet, oil->use_before);
+		cells[10] = fl_word_day(sheet, oil->opened_on);
+		cells[11] = fl_stock_oil_in_date(oil, w->session->day, NULL) == FL_OK ? "in date" : "out of date";
+		cells[12] = with_issuer ? oil->issuer : "";
 	}
 	fl_sheet_row(sheet, table, FL_ROW_PLAIN, cells);
 }
 
-/* Coverage factors of the oils' certificates in one sentence, where they are all alike; else each. */
-static void write_oil_factors(fl_writing *w) {
+/* The issuer that all oils have; NULL if they differ or there is none. */
+static const char *common_issuer(const fl_writing *w) {
+	const char *issuer = NULL;
+	for (size_t i = 0; i < w->session->point_count; i++) {
+		const fl_oil *oil = fl_stock_oil(w->stock, w->session->points[i].lot);
+		if (!oil || fl_word_is_empty(oil->issuer) || (issuer && strcmp(issuer, oil->issuer) != 0))
+			return NULL;
+		issuer = oil->issuer;
+	}
+	return issuer;
+}
+
+/* Issuer and coverage factors of the oils' certificates in one sentence, where they are all alike; else each. */
+static void write_oil_factors(fl_writing *w, const char *issuer) {
 	const fl_oil *first = NULL;
 	bool alike = true;
 	for (size_t i = 0; i < w->session->point_count; i++) {
@@ -93,11 +106,14 @@ static void write_oil_factors(fl_writing *w) {
 		first = first ? first : oil;
 		alike = alike && oil->k_nu == first->k_nu && oil->k_rho == first->k_rho;
 	}
-	if (first && alike)
-		fl_sheet_addf(w->sheet, FL_BLOCK_SMALL,
-		              "U as the oils' certificates state it: k = %s for the viscosity, k = %s for the density. Between "
-		              "certified temperatures the viscosity follows ASTM D341 and the density a straight line.",
-		              fl_word_plain(w->sheet, first->k_nu, 2), fl_word_plain(w->sheet, first->k_rho, 2));
+	const char *by = issuer ? fl_sheet_printf(w->sheet, "Issued by %s. ", issuer) : "";
+	fl_sheet_add_led(
+	    w->sheet, FL_BLOCK_SMALL, "Certificates of the oils.",
+	    "%sBetween certified temperatures the viscosity follows ASTM D341 and the density a straight line.%s", by,
+	    !first || !alike
+	        ? ""
+	        : fl_sheet_printf(w->sheet, " U is stated with k = %s for the viscosity, k = %s for the density.",
+	                          fl_word_plain(w->sheet, first->k_nu, 2), fl_word_plain(w->sheet, first->k_rho, 2)));
 	for (size_t i = 0; !alike && i < w->session->point_count; i++) {
 		const fl_oil *oil = fl_stock_oil(w->stock, w->session->points[i].lot);
 		if (oil)
@@ -108,20 +124,21 @@ static void write_oil_factors(fl_writing *w) {
 }
 
 static void write_oils(fl_writing *w) {
-	static const char *const at = "certified, nearest to the bath";
+	static const char *const at = "as certified nearest to the bath";
 	const fl_column columns[] = {
 	    {"oil", "", "", FL_ALIGN_LEFT, false},         {"lot", "", "", FL_ALIGN_LEFT, false},
-	    {"certificate", "", "", FL_ALIGN_LEFT, false}, {"issued by", "", "", FL_ALIGN_LEFT, true},
-	    {"T", "°C", at, FL_ALIGN_DECIMAL, false},      {"ν", "mm²/s", at, FL_ALIGN_DECIMAL, false},
-	    {"U", "%", at, FL_ALIGN_DECIMAL, false},       {"ρ", "kg/m³", at, FL_ALIGN_DECIMAL, false},
-	    {"U", "kg/m³", at, FL_ALIGN_DECIMAL, false},   {"certified", "", "", FL_ALIGN_LEFT, false},
-	    {"use before", "", "", FL_ALIGN_LEFT, false},  {"opened", "", "", FL_ALIGN_LEFT, false},
-	    {"on the day", "", "", FL_ALIGN_LEFT, false}};
-	fl_block *table = fl_sheet_add_table(w->sheet, columns, sizeof columns / sizeof *columns);
+	    {"certificate", "", "", FL_ALIGN_LEFT, false}, {"T", "°C", at, FL_ALIGN_DECIMAL, false},
+	    {"ν", "mm²/s", at, FL_ALIGN_DECIMAL, false},   {"U", "%", at, FL_ALIGN_DECIMAL, false},
+	    {"ρ", "kg/m³", at, FL_ALIGN_DECIMAL, false},   {"U", "kg/m³", at, FL_ALIGN_DECIMAL, false},
+	    {"certified", "", "", FL_ALIGN_LEFT, false},   {"use before", "", "", FL_ALIGN_LEFT, false},
+	    {"opened", "", "", FL_ALIGN_LEFT, false},      {"on the day", "", "", FL_ALIGN_LEFT, false},
+	    {"issued by", "", "", FL_ALIGN_LEFT, true}};
+	const char *issuer = common_issuer(w);
+	fl_block *table = fl_sheet_add_table(w->sheet, columns, issuer ? 12 : 13);
 	for (size_t i = 0; i < w->session->point_count; i++)
 		if (!fl_word_is_empty(w->session->points[i].lot))
-			write_oil(w, table, &w->session->points[i]);
-	write_oil_factors(w);
+			write_oil(w, table, &w->session->points[i], !issuer);
+	write_oil_factors(w, issuer);
 }
 
 void fl_write_standards(fl_writing *w) {

@@ -50,7 +50,7 @@ static void write_struck(fl_writing *w) {
 	static const fl_column columns[] = {{"run", "", "", FL_ALIGN_LEFT, false},
 	                                    {"place", "", "", FL_ALIGN_LEFT, true},
 	                                    {"output as typed", "", "", FL_ALIGN_LEFT, false},
-	                                    {"error", "% of span", "", FL_ALIGN_DECIMAL, false},
+	                                    {"error, % of span", "", "", FL_ALIGN_DECIMAL, false},
 	                                    {"reason", "", "", FL_ALIGN_LEFT, true},
 	                                    {"struck by", "", "", FL_ALIGN_LEFT, false}};
 	fl_sheet *sheet = w->sheet;
@@ -121,11 +121,11 @@ static void write_remarks(fl_writing *w) {
 static const char *source_words(fl_source source) {
 	switch (source) {
 	case FL_SOURCE_KEYBOARD:
-		return "typed in step by step (keyboard)";
+		return "by keyboard, step by step";
 	case FL_SOURCE_REPLAY:
-		return "replayed from a file of answers (replay)";
+		return "replay of a file of answers";
 	case FL_SOURCE_IMPORT:
-		return "imported from a file of readings (import)";
+		return "import of a file of readings";
 	}
 	return "unknown";
 }
@@ -143,7 +143,7 @@ static void write_journal(fl_writing *w) {
 	if (session->questions > 0)
 		fl_sheet_pairf(sheet, grid, 1, "Asked back", "%d %s, and confirmed", session->questions,
 		               session->questions == 1 ? "time" : "times");
-	fl_sheet_pairf(sheet, grid, 1, "Programs", "foundleft %s; certificate by %s",
+	fl_sheet_pairf(sheet, grid, 1, "Programs", "foundleft %s, certificate %s",
 	               session->program ? session->program : "?", issue->program_version ? issue->program_version : "?");
 	fl_sheet_pairf(sheet, grid, 2, "Clock", "%s; UTC, local time is %s",
 	               session->declared_clock ? "times as the file states them, not a machine's"
@@ -169,9 +169,8 @@ void fl_write_close(fl_writing *w) {
 	static const char *const heads[] = {"Performed by", "Authorised by"};
 	fl_sheet *sheet = w->sheet;
 	const char *performer = fl_writing_setting(w, "performed-by");
-	fl_sheet_add(sheet, FL_BLOCK_HEADING, "Statements");
-	fl_sheet_add(
-	    sheet, FL_BLOCK_TEXT,
+	fl_sheet_add_led(
+	    sheet, FL_BLOCK_SMALL, "Validity.",
 	    "The results relate only to the item named on the first page, as it was on the day of the calibration and "
 	    "under the conditions stated. This certificate may be copied only in full, unless the issuer agrees in "
 	    "writing. It amends no earlier certificate.");

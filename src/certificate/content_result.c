@@ -282,9 +282,9 @@ static void explain_budget(fl_writing *w) {
 			               fl_word_u(w->sheet, 100 * line->contribution_span));
 	}
 	if (list.length > 0)
-		fl_sheet_add_led(w->sheet, FL_BLOCK_SMALL, "Largest of its contributions,",
-		                 "as standard uncertainties in %% of span, at %s %s: %s. They number %zu.",
-		                 fl_run_word(run->kind), name_of(w, point), list.data, point->budget_count);
+		fl_sheet_add_led(w->sheet, FL_BLOCK_SMALL, "Budget.",
+		                 "%zu contributions; the largest at %s %s, as standard uncertainties in %% of span: %s.",
+		                 point->budget_count, fl_run_word(run->kind), name_of(w, point), list.data);
 	w->sheet->failed |= list.failed;
 	fl_text_free(&list);
 }
@@ -327,9 +327,11 @@ void fl_write_meaning(fl_writing *w) {
 	fl_sheet_add_led(
 	    sheet, FL_BLOCK_SMALL, "Error.",
 	    "Output found less ideal output, over the output span of %s; positive where the instrument shows too "
-	    "much. n is the number of readings in a mean. The zero is read with the pump stopped and the legs "
-	    "equalised.",
-	    fl_physics_signal_range(w->instrument->scale.signal)->text);
+	    "much. n is the number of readings in a mean.%s",
+	    fl_physics_signal_range(w->instrument->scale.signal)->text,
+	    w->procedure->medium == FL_MEDIUM_OIL && w->procedure->stopped_zero
+	        ? " The zero is read with the pump stopped and the legs equalised."
+	        : "");
 	fl_sheet_add_led(
 	    sheet, FL_BLOCK_SMALL, "Uncertainty.",
 	    "U is the combined standard uncertainty u (JCGM 100) times the coverage factor k beside it, for a "
@@ -342,13 +344,19 @@ void fl_write_meaning(fl_writing *w) {
 		fl_sheet_add_led(sheet, FL_BLOCK_SMALL, "To be noted.", "%s", fl_word_sentence(sheet, result->warnings[i]));
 }
 
+/* No as-found is a gap, with its reason; never a number made up afterwards. */
+static void state_missing(fl_writing *w, const fl_run_result *run) {
+	fl_sheet_addf(w->sheet, FL_BLOCK_STATEMENT, "%s: not available", fl_writing_run_title(run->kind));
+	fl_sheet_addf(w->sheet, FL_BLOCK_TEXT, "Reason: %s", fl_word_sentence(w->sheet, fl_writing_why_missing(w, run)));
+}
+
 void fl_write_statements(fl_writing *w) {
 	const fl_run_result *found = &w->result->runs[FL_RUN_AS_FOUND], *left = &w->result->runs[FL_RUN_AS_LEFT];
 	fl_sheet_add(w->sheet, FL_BLOCK_HEADING, "Outcome");
 	if (found->available)
 		state_run(w, found);
 	else
-		fl_sheet_add(w->sheet, FL_BLOCK_STATEMENT, "As-found: not available");
+		state_missing(w, found);
 	state_decision(w);
 	if (left->same_as_found)
 		fl_sheet_add(w->sheet, FL_BLOCK_STATEMENT, "As-left = as-found");

@@ -147,7 +147,6 @@ static void write_table(fl_writing *w, const fl_run_result *run) {
 
 void fl_write_run(fl_writing *w, fl_run_kind kind) {
 	const fl_run_result *run = &w->result->runs[kind];
-	const fl_session_run *taken = &w->session->runs[kind];
 	const char *title = fl_writing_run_title(kind);
 	fl_sheet *sheet = w->sheet;
 	if (run->same_as_found) {
@@ -157,12 +156,9 @@ void fl_write_run(fl_writing *w, fl_run_kind kind) {
 		return;
 	}
 	if (!run->available) {
-		const char *reason = !fl_word_is_empty(run->unavailable_reason) ? run->unavailable_reason
-		                     : !fl_word_is_empty(taken->missing_reason) ? taken->missing_reason
-		                                                                : "the run was not taken";
 		fl_sheet_addf(sheet, FL_BLOCK_HEADING, "%s results", title);
 		fl_sheet_addf(sheet, FL_BLOCK_TEXT, "%s results are not available. Reason: %s", title,
-		              fl_word_sentence(sheet, reason));
+		              fl_word_sentence(sheet, fl_writing_why_missing(w, run)));
 		return;
 	}
 	fl_sheet_addf(sheet, FL_BLOCK_HEADING, "%s results, %s adjustment", title,

@@ -13,7 +13,7 @@
 #define SMALL_LEADING 9.5
 #define LABEL_SIZE 7.6
 #define COLUMN_GAP 20.0
-#define SIGN_ROOM 27.0
+#define SIGN_ROOM 26.0
 
 typedef struct fl_style {
 	fl_weight weight;
@@ -151,11 +151,22 @@ static void set_grid(fl_press *press, const fl_block *block) {
 
 /* ---- signatures ------------------------------------------------------------ */
 
-static double signatures_height(const fl_block *block) {
-	size_t most = 0;
-	for (size_t c = 0; c < block->grid_count; c++)
-		most = block->grid[c].count > most ? block->grid[c].count : most;
-	return 2 * LEADING + (double)most * SIGN_ROOM;
+static double signatures_height(fl_press *press, const fl_block *block, double width) {
+	double highest = 0;
+	for (size_t c = 0; c < block->grid_count; c++) {
+		double height = LEADING + 4;
+		for (size_t i = 0; i < block->grid[c].count; i++) {
+			const char *value = block->grid[c].pairs[i].value;
+			height += *value ? lines_height(press, STYLE_BODY, value, width) + 2 : SIGN_ROOM;
+		}
+		highest = fmax(highest, height);
+	}
+	return highest + 8;
+}
+
+static double signature_width(const fl_block *block) {
+	double columns = (double)block->grid_count;
+	return (FL_MEASURE - (columns - 1) * COLUMN_GAP) / columns;
 }
 
 /* A pair with a value is set; one without is a line to write on, with its label below. */
@@ -177,13 +188,12 @@ static void set_signature(fl_press *press, const fl_pairs *pairs, double x, doub
 }
 
 static void set_signatures(fl_press *press, const fl_block *block) {
-	double columns = (double)block->grid_count;
-	double width = (FL_MEASURE - (columns - 1) * COLUMN_GAP) / columns;
-	fl_press_need(press, signatures_height(block));
+	double width = signature_width(block), height = signatures_height(press, block, width);
+	fl_press_need(press, height);
 	press->y -= 4;
 	for (size_t c = 0; c < block->grid_count; c++)
 		set_signature(press, &block->grid[c], FL_LEFT + (double)c * (width + COLUMN_GAP), width);
-	press->y -= signatures_height(block);
+	press->y -= height - 4;
 }
 
 /* ---- the rest -------------------------------------------------------------- */
@@ -200,7 +210,7 @@ static double least_height(fl_press *press, const fl_block *block) {
 		plan = plan_grid(press, block);
 		return fmin(grid_height(press, &plan, block), (FL_TOP - FL_BOTTOM) / 2);
 	case FL_BLOCK_SIGNATURES:
-		return signatures_height(block);
+		return signatures_height(press, block, signature_width(block));
 	default:
 		return fmin(lines_height(press, STYLE_BODY, block->text, FL_MEASURE), 3 * LEADING);
 	}
@@ -222,15 +232,15 @@ static void set_item(fl_press *press, const fl_block *block, bool last) {
 }
 
 static void set_end(fl_press *press, const char *text) {
-	fl_press_need(press, 30);
+	fl_press_need(press, 24);
 	double width = fl_press_width(press, FL_BOLD, BODY, text, strlen(text));
-	double middle = (FL_LEFT + FL_RIGHT) / 2, y = press->y - 16;
+	double middle = (FL_LEFT + FL_RIGHT) / 2, y = press->y - 14;
 	fl_ink_words(press, FL_BOLD, BODY, FL_BLACK, middle - width / 2, y, text);
 	if (width + 24 < FL_MEASURE) {
 		fl_ink_line(press, FL_LEFT, y + 2.8, middle - width / 2 - 10, y + 2.8, 0.5, FL_BLACK);
 		fl_ink_line(press, middle + width / 2 + 10, y + 2.8, FL_RIGHT, y + 2.8, 0.5, FL_BLACK);
 	}
-	press->y -= 30;
+	press->y -= 24;
 }
 
 static void set_block(fl_press *press, const fl_block *block, const fl_block *next) {
@@ -239,6 +249,7 @@ static void set_block(fl_press *press, const fl_block *block, const fl_block *ne
 		set_heading(press, block, next);
 		break;
 	case FL_BLOCK_STATEMENT:
+		press->y -= 2;
 		set_text(press, STYLE_STATEMENT, block->lead, block->text, FL_LEFT, FL_MEASURE);
 		press->y -= 2;
 		break;
@@ -247,6 +258,9 @@ static void set_block(fl_press *press, const fl_block *block, const fl_block *ne
 		press->y -= 4;
 		break;
 	case FL_BLOCK_SMALL:
+		if (next && next->kind == FL_BLOCK_SIGNATURES)
+			fl_press_need(press, lines_height(press, STYLE_SMALL, block->text, FL_MEASURE) +
+			                         signatures_height(press, next, signature_width(next)) + 27);
 		set_text(press, STYLE_SMALL, block->lead, block->text, FL_LEFT, FL_MEASURE);
 		press->y -= 2.5;
 		break;

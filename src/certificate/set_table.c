@@ -266,12 +266,20 @@ static double group_height(const fl_table_plan *plan, size_t r, double height) {
 	return height;
 }
 
+/* A short table is not parted; of a longer one two fifths of the rows at least stand under its heading. */
+static size_t rows_together(size_t rows) {
+	return rows <= 8 ? rows : rows < 40 ? rows * 2 / 5 : 16;
+}
+
 double fl_table_least(fl_press *press, const fl_block *block) {
 	fl_table_plan plan;
 	if (!make_plan(press, block, &plan))
 		return 0;
-	double rows = (double)(block->row_count < 2 ? block->row_count : 2);
-	return plan.head_height + rows * (plan.leading + PAD);
+	fl_cell_lines *cells = fl_arena_alloc(&press->arena, block->column_count, sizeof *cells);
+	double height = plan.head_height + PAD, most = 0.6 * (FL_TOP - FL_BOTTOM);
+	for (size_t r = 0; cells && r < rows_together(block->row_count) && height < most; r++)
+		height += break_row(&plan, &block->rows[r], cells);
+	return fmin(height, most);
 }
 
 void fl_set_table(fl_press *press, const fl_block *block) {

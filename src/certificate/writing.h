@@ -22,6 +22,8 @@ typedef struct fl_writing {
 const char *fl_writing_setting(const fl_writing *w, const char *id);
 /* "LK-10 (2511B)", "stopped zero", "point 3 (40 % of span)". */
 const char *fl_writing_point_name(const fl_writing *w, int point);
+/* Why a run is not there: never empty. */
+const char *fl_writing_why_missing(const fl_writing *w, const fl_run_result *run);
 /* "as-found", "as-left": with a capital letter. */
 const char *fl_writing_run_title(fl_run_kind kind);
 
