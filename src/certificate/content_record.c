@@ -46,7 +46,7 @@ static double error_of(const fl_writing *w, const fl_reading *reading) {
 	return NAN;
 }
 
-static void write_struck(fl_writing *w) {
+static void write_struck(fl_writing *w, bool departures) {
 	static const fl_column columns[] = {{"run", "", "", FL_ALIGN_LEFT, false},
 	                                    {"place", "", "", FL_ALIGN_LEFT, true},
 	                                    {"output as typed", "", "", FL_ALIGN_LEFT, false},
@@ -73,8 +73,9 @@ static void write_struck(fl_writing *w) {
 		                       reading->struck_by};
 		fl_sheet_row(sheet, table, FL_ROW_PLAIN, cells);
 	}
-	fl_sheet_add_led(sheet, FL_BLOCK_SMALL, "Struck readings.", "%s",
-	                 table ? "They stay in the record and are left out of the means." : "None.");
+	fl_sheet_add_led(sheet, FL_BLOCK_SMALL, "Struck readings.", "%s%s",
+	                 table ? "They stay in the record and are left out of the means." : "None.",
+	                 departures ? "" : " No departures from the procedure are recorded.");
 	if (taken_back > 0)
 		fl_sheet_addf(sheet, FL_BLOCK_SMALL, "%zu mistyped %s taken back by a later line of the record, before use.",
 		              taken_back, taken_back == 1 ? "reading was" : "readings were");
@@ -82,33 +83,31 @@ static void write_struck(fl_writing *w) {
 
 /* ---- departures and remarks ------------------------------------------------ */
 
+static bool has_departures(const fl_session *session) {
+	return session->indicative_count > 0 || session->source == FL_SOURCE_IMPORT ||
+	       session->runs[FL_RUN_AS_FOUND].missing || session->runs[FL_RUN_AS_LEFT].missing;
+}
+
 static void write_departures(fl_writing *w) {
 	fl_sheet *sheet = w->sheet;
 	const fl_session *session = w->session;
-	size_t count = 0;
 	for (int kind = 0; kind < FL_RUN_KINDS; kind++)
 		if (session->runs[kind].missing) {
 			const char *reason = session->runs[kind].missing_reason;
 			fl_sheet_add_led(sheet, FL_BLOCK_SMALL, "Departure.", "No %s run: %s", fl_run_word((fl_run_kind)kind),
 			                 fl_word_sentence(sheet, reason ? reason : "no reason given"));
-			count++;
 		}
-	for (size_t i = 0; i < session->indicative_count; i++, count++) {
+	for (size_t i = 0; i < session->indicative_count; i++) {
 		const fl_indicative *entry = &session->indicative[i];
 		fl_sheet_add_led(sheet, FL_BLOCK_SMALL, "Departure.", "%s was used although it was out of date: %s %s",
 		                 entry->item ? entry->item : "An item",
 		                 fl_word_sentence(sheet, entry->reason ? entry->reason : "no reason given"),
 		                 entry->by ? entry->by : "");
 	}
-	if (session->source == FL_SOURCE_IMPORT) {
-		fl_sheet_add(
-		    sheet, FL_BLOCK_ITEM,
-		    "The readings were imported from a file: settling, the order of work and the safety questions were "
-		    "not followed by the program.");
-		count++;
-	}
-	if (count == 0)
-		fl_sheet_add_led(sheet, FL_BLOCK_SMALL, "Departures from the procedure.", "None recorded.");
+	if (session->source == FL_SOURCE_IMPORT)
+		fl_sheet_add_led(sheet, FL_BLOCK_SMALL, "Departure.",
+		                 "The readings were imported from a file: settling, the order of work and the safety questions "
+		                 "were not followed by the program.");
 }
 
 static void write_remarks(fl_writing *w) {
@@ -157,7 +156,7 @@ static void write_journal(fl_writing *w) {
 
 void fl_write_record(fl_writing *w) {
 	fl_sheet_add(w->sheet, FL_BLOCK_HEADING, "Struck readings, departures, remarks");
-	write_struck(w);
+	write_struck(w, has_departures(w->session));
 	write_departures(w);
 	write_remarks(w);
 	write_journal(w);
