@@ -82,7 +82,7 @@ verdicts interrupted pass pass
 verdicts expired-oil pass pass
 says adjusted "TY-2026-0417" "FL-0417" "+2.54" "0.36" "as-found" "as-left" "conditional pass" "2511E" "Lanternmoor-2511E" \
 	"TB-6603" "Ida Fenwick" "Mara Oduya" "900 kg/m³" "End of certificate"
-says in-tolerance "QH-2026-007" "as-left = as-found"
+says in-tolerance "QH-2026-007" "As-left = as-found"
 says interrupted "TY-2026-0421" "mbar"
 count_pages_with expired-oil "indicative, not traceable"
 says expired-oil "2411E" "no oil in date on board"
