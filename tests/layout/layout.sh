@@ -35,6 +35,7 @@ for folder in src/*/; do
 			hpdf*) owner=certificate ;;
 			openssl) owner=seal ;;
 			yaml) owner=document ;;
+			sqlite3 | zlib) owner=store ;;
 			jansson | histedit) owner=cli ;;
 			*) continue ;;
 			esac
