@@ -7,7 +7,22 @@
 #include <stdio.h>
 #include <string.h>
 
+static bool is_oil(const char *kind) {
+	return strcmp(kind, "oil") == 0;
+}
+
+static bool in_use(const fl_entry *entry, const char *kind, const char *name) {
+	return is_oil(kind) ? fl_stock_oil(&entry->used, name) != NULL : fl_stock_equipment(&entry->used, name) != NULL;
+}
+
+/* The item goes into the journal once, and is used as it stands there: a later change of the stock file does not change
+ * a session that has begun. */
 static fl_status keep_text(fl_entry *entry, const char *kind, const char *name, const char *body, fl_error *err) {
+	fl_status (*parse)(fl_stock *, const char *, const char *, fl_error *) =
+	    is_oil(kind) ? fl_stock_parse_oil : fl_stock_parse_equipment;
+	fl_status status = in_use(entry, kind, name) ? FL_OK : parse(&entry->used, body, name, err);
+	if (status < 0)
+		return status;
 	if (fl_session_text_body(entry->session, kind, name))
 		return FL_OK;
 	fl_event event = {

@@ -16,7 +16,9 @@ fl_status fl_entry_new(fl_entry **out, const fl_entry_setup *setup, fl_error *er
 	entry->session = &setup->journal->session;
 	entry->shown_part = -1;
 	entry->shown_place = -1;
-	fl_status status = entry->session->closed ? FL_OK : fl_entry_plain_points(entry, err);
+	fl_status status = fl_session_stock(entry->session, &entry->used, err);
+	if (status >= 0 && !entry->session->closed)
+		status = fl_entry_plain_points(entry, err);
 	if (status < 0) {
 		fl_entry_free(entry);
 		return status;
@@ -26,6 +28,8 @@ fl_status fl_entry_new(fl_entry **out, const fl_entry_setup *setup, fl_error *er
 }
 
 void fl_entry_free(fl_entry *entry) {
+	if (entry)
+		fl_stock_free(&entry->used);
 	free(entry);
 }
 

@@ -71,6 +71,7 @@ struct fl_entry {
 	fl_entry_setup setup;
 	fl_journal *journal;
 	const fl_session *session;
+	fl_stock used; /* oils and equipment as the journal carries them: what the session is judged by */
 	bool stopped;
 	int shown_part;   /* the part whose heading stands on the screen; -1 none */
 	long shown_place; /* the place on the plan likewise */
@@ -155,6 +156,10 @@ typedef struct fl_verdict {
 fl_status fl_entry_judge(const fl_entry *entry, const fl_reading *reading, fl_verdict *out, fl_error *err) FL_MUST_USE;
 /* Full-scale differential pressure, NAN if it is not known. */
 double fl_entry_dp_full(const fl_entry *entry);
+
+/* The oil of a point and the item of a role, as the journal carries them; NULL if there is none. */
+const fl_oil *fl_entry_oil(const fl_entry *entry, int point);
+const fl_equipment *fl_entry_equipment(const fl_entry *entry, fl_role role);
 
 /* ---- settle.c
  * -------------------------------------------------------------------------------------------------------- */

@@ -68,14 +68,16 @@ static bool has_part(const fl_procedure *p, part which) {
 
 static void show_instrument(const fl_entry *entry, fl_text *out) {
 	const fl_instrument *i = entry->setup.instrument;
-	fl_text_printf(out, "  %s, serial %s, %s. Compare with the plate before going on.\n", i->tag,
-	               *i->serial ? i->serial : "not stated", *i->site ? i->site : "site not stated");
+	fl_text_printf(out, "  %s, serial %s\n", i->tag, *i->serial ? i->serial : "not stated");
+	if (*i->site)
+		fl_text_printf(out, "  %s\n", i->site);
 	fl_text_printf(out, "  Scale %g to %g %s, signal %s", i->scale.low, i->scale.high,
 	               fl_unit_text(fl_physics_dial_unit(i->scale.dial_unit)),
 	               fl_physics_signal_range(i->scale.signal)->text);
 	if (i->scale.dial_unit != FL_DIAL_MPA_S)
 		fl_text_printf(out, ", dial density %g kg/m³", i->scale.dial_density_kg_m3);
-	fl_text_printf(out, ". Procedure: %s\n", entry->setup.procedure->title);
+	fl_text_printf(out, "\n  Procedure: %s\n  Compare this with the plate before going on.\n",
+	               entry->setup.procedure->title);
 }
 
 static void show_part_note(const fl_entry *entry, part which, fl_text *out) {

@@ -23,9 +23,9 @@ static bool wants_applied(const fl_entry *entry) {
 	return entry->setup.procedure->medium == FL_MEDIUM_PRESSURE;
 }
 
-static const fl_equipment *equipment_of(const fl_entry *entry, fl_role role) {
+const fl_equipment *fl_entry_equipment(const fl_entry *entry, fl_role role) {
 	const char *id = fl_session_equipment_id(entry->session, role);
-	return id ? fl_stock_equipment(entry->setup.stock, id) : NULL;
+	return id ? fl_stock_equipment(&entry->used, id) : NULL;
 }
 
 /* Indication plus correction, for an item whose unit may differ from the reading's. */
@@ -41,7 +41,7 @@ static double corrected(const fl_equipment *item, double value, fl_unit unit) {
 
 /* A thermometer's corrections are differences: °C whether its certificate is in °C or in K. */
 static double corrected_temp(const fl_entry *entry, double temp_c) {
-	const fl_equipment *item = equipment_of(entry, FL_ROLE_THERMOMETER);
+	const fl_equipment *item = fl_entry_equipment(entry, FL_ROLE_THERMOMETER);
 	return item && item->unit != FL_U_FAHRENHEIT ? fl_stock_corrected(item, temp_c) : temp_c;
 }
 
@@ -106,7 +106,7 @@ fl_status fl_entry_draft_temperature(fl_entry *entry, const char *text, fl_error
 }
 
 static fl_unit applied_unit(const fl_entry *entry) {
-	const fl_equipment *standard = equipment_of(entry, FL_ROLE_PRESSURE_STANDARD);
+	const fl_equipment *standard = fl_entry_equipment(entry, FL_ROLE_PRESSURE_STANDARD);
 	return standard ? standard->unit : FL_U_MBAR;
 }
 
@@ -213,9 +213,9 @@ static fl_status check_signal(const fl_entry *entry, fl_error *err) {
 	return FL_OK;
 }
 
-static const fl_oil *oil_of(const fl_entry *entry, int point) {
+const fl_oil *fl_entry_oil(const fl_entry *entry, int point) {
 	const fl_session *s = entry->session;
-	return point >= 0 && point < (int)s->point_count ? fl_stock_oil(entry->setup.stock, s->points[point].lot) : NULL;
+	return point >= 0 && point < (int)s->point_count ? fl_stock_oil(&entry->used, s->points[point].lot) : NULL;
 }
 
 static bool looks_fahrenheit(const fl_entry *entry) {
@@ -227,7 +227,7 @@ static bool looks_fahrenheit(const fl_entry *entry) {
 
 fl_status fl_entry_draft_check_temperature(const fl_entry *entry, fl_error *err) {
 	const fl_draft *d = &entry->draft;
-	const fl_oil *oil = oil_of(entry, d->reading.point);
+	const fl_oil *oil = fl_entry_oil(entry, d->reading.point);
 	if (!d->reading.has_temp || !oil)
 		return FL_OK;
 	double low = oil->table.points[0].temp_c, high = oil->table.points[oil->table.count - 1].temp_c;
@@ -332,7 +332,7 @@ static fl_status expect_zero(const fl_entry *entry, double *x, fl_error *err) {
 }
 
 static fl_status expect_oil(const fl_entry *entry, const fl_reading *r, double *x, fl_verdict *out, fl_error *err) {
-	const fl_oil *oil = oil_of(entry, r->point);
+	const fl_oil *oil = fl_entry_oil(entry, r->point);
 	fl_oil_state state;
 	fl_ideal ideal;
 	if (!oil || !r->has_temp)
@@ -350,7 +350,7 @@ static fl_status expect_applied(const fl_entry *entry, const fl_reading *r, doub
 	double full = fl_entry_dp_full(entry);
 	if (!r->has_applied || isnan(full))
 		return fl_fail(err, FL_E_STATE, "the pressure at full scale is not known");
-	const fl_equipment *standard = equipment_of(entry, FL_ROLE_PRESSURE_STANDARD);
+	const fl_equipment *standard = fl_entry_equipment(entry, FL_ROLE_PRESSURE_STANDARD);
 	*x = corrected(standard, r->applied_pa, FL_U_PA) / full;
 	return FL_OK;
 }
@@ -365,7 +365,7 @@ fl_status fl_entry_judge(const fl_entry *entry, const fl_reading *r, fl_verdict 
 	                                               : expect_oil(entry, r, &x, out, err);
 	if (status < 0)
 		return status;
-	double value = corrected(equipment_of(entry, meter), r->output, r->unit);
+	double value = corrected(fl_entry_equipment(entry, meter), r->output, r->unit);
 	out->corrected = value != r->output || (r->has_temp && out->temp_c != r->temp_c);
 	out->output = r->unit == range->unit ? value : fl_from_inside(fl_to_inside(value, r->unit), range->unit);
 	out->expected = range->low + x * (range->high - range->low);
@@ -546,14 +546,25 @@ static int places_of(fl_unit unit) {
 	return unit == FL_U_BAR ? 4 : 3;
 }
 
-void fl_entry_tell_reading(const fl_entry *entry, const fl_reading *r, fl_text *say) {
-	char name[160], expected[40], error[40], value[40];
+/* More than this at the stopped zero is more often a shut equalising valve or an empty leg than the zero screw. */
+static const double zero_hint_pct_span = 1.0;
+
+static void tell_corrections(const fl_entry *entry, const fl_reading *r, const fl_verdict *v, fl_text *say) {
+	char value[40];
 	const fl_signal_range *range = signal_of(entry);
-	const char *unit = fl_unit_text(range->unit);
+	fl_text_printf(say, "       corrected by the certificates: %s %s",
+	               fl_decimal_format(v->output, places_of(range->unit) + 1, value, sizeof value),
+	               fl_unit_text(range->unit));
+	if (r->has_temp)
+		fl_text_printf(say, " at %.3f °C", v->temp_c);
+	fl_text_add(say, "\n");
+}
+
+void fl_entry_tell_reading(const fl_entry *entry, const fl_reading *r, fl_text *say) {
+	char expected[40], error[40];
+	const fl_signal_range *range = signal_of(entry);
 	fl_verdict v;
-	fl_text_printf(say, "  [%d] %s, %s %d of %d: %s %s", r->sequence,
-	               fl_entry_point_name(entry, r->point, name, sizeof name), fl_pass_word(r->pass), r->number,
-	               entry->setup.procedure->readings, r->typed, fl_unit_text(r->unit));
+	fl_text_printf(say, "  [%d] %s %s", r->sequence, r->typed, fl_unit_text(r->unit));
 	if (r->has_temp)
 		fl_text_printf(say, " at %s%s", r->temp_typed, strstr(r->temp_typed, "°F") ? "" : " °C");
 	if (r->has_applied)
@@ -562,14 +573,14 @@ void fl_entry_tell_reading(const fl_entry *entry, const fl_reading *r, fl_text *
 		fl_text_add(say, "\n");
 		return;
 	}
-	fl_text_printf(say, "; expected %s %s, error %s %% of span\n",
-	               fl_decimal_format(v.expected, places_of(range->unit), expected, sizeof expected), unit,
-	               fl_decimal_format_signed(v.error_pct_span, 2, true, error, sizeof error));
-	if (!v.corrected)
-		return;
-	fl_text_printf(say, "       corrected by the certificates: %s %s",
-	               fl_decimal_format(v.output, places_of(range->unit) + 1, value, sizeof value), unit);
-	if (r->has_temp)
-		fl_text_printf(say, " at %.3f °C", v.temp_c);
-	fl_text_add(say, "\n");
+	fl_text_printf(say, ": expected %s %s, error %s %% of span\n",
+	               fl_decimal_format(v.expected, places_of(range->unit), expected, sizeof expected),
+	               fl_unit_text(range->unit), fl_decimal_format_signed(v.error_pct_span, 2, true, error, sizeof error));
+	if (v.corrected)
+		tell_corrections(entry, r, &v, say);
+	if (r->point == FL_POINT_ZERO && fabs(v.error_pct_span) > zero_hint_pct_span + 1e-9)
+		fl_text_printf(say,
+		               "       More than %g %% off: look at the equalising valve and at both legs, full and free of\n"
+		               "       air, before anybody thinks of the zero screw.\n",
+		               zero_hint_pct_span);
 }

@@ -145,27 +145,61 @@ static void the_expected_output_stands_only_behind_a_committed_reading(void **st
 	talk_end(&t);
 }
 
+/* Invented: the thermometer reads 0.05 K low, the meter 0.010 mA low. */
+static const char corrected_equipment[] =
+    "equipment:\n"
+    "  - {id: TH-8, role: thermometer, certificate: TB-1, issuer: invented, calibrated on: 2026-01-05, "
+    "due on: 2027-01-05, range: 0 to 150 °C, resolution: 0.01 K, U: 0.03 K, k: 2, drift per year: 0.02 K, "
+    "corrections: [{at: 0 °C, add: 0.05 K}, {at: 100 °C, add: 0.05 K}]}\n"
+    "  - {id: MA-8, role: current meter, certificate: TB-2, issuer: invented, calibrated on: 2026-01-05, "
+    "due on: 2027-01-05, range: 0 to 24 mA, resolution: 0.001 mA, U: 0.003 mA, k: 2, drift per year: 0.002 mA, "
+    "corrections: [{at: 4 mA, add: 0.010 mA}, {at: 20 mA, add: 0.010 mA}]}\n";
+
 static void a_correction_of_the_certificate_is_applied(void **state) {
 	talk t;
-	to_thin_oil(&t, *state, SMALL_PROCEDURE);
-	/* as if TH-7's certificate said +0.05 K throughout and MA-3's +0.010 mA */
-	static const fl_correction th[] = {{0.0, 0.05}}, ma[] = {{0.0, 0.010}};
-	for (size_t i = 0; i < t.stock.equipment_count; i++) {
-		fl_equipment *item = &t.stock.equipment[i];
-		if (strcmp(item->id, "TH-7") == 0) {
-			item->corrections = th;
-			item->correction_count = 1;
-		}
-		if (strcmp(item->id, "MA-3") == 0) {
-			item->corrections = ma;
-			item->correction_count = 1;
-		}
-	}
+	talk_begin(&t, *state, SMALL_PROCEDURE);
+	if (fl_stock_parse(&t.stock, corrected_equipment, "corrected.yaml", &t.err) < 0)
+		fail_msg("%d: %s %s", t.err.line, t.err.field, t.err.message);
+	talk_take_all(&t, lines_before, 5);
+	talk_take_all(&t, (const char *const[]){"TH-8", "", "MA-8"}, 3);
+	talk_take_all(&t, lines_before + 8, COUNT(lines_before) - 8);
+	talk_take(&t, "4.025");
+	talk_says(&t, "error +0.22 % of span"); /* 4.035 mA against 4.000 mA */
+	talk_take(&t, "4.020");
 	talk_take(&t, "7.059 at 39.95");
 	talk_says(&t, "expected 6.947 mA, error +0.76 % of span");
 	talk_says(&t, "7.0690 mA at 40.000 °C");
 	check_near("as read", 39.95, t.journal.session.readings[2].temp_c, 0.0);
 	talk_end(&t);
+}
+
+static void a_stopped_zero_far_off_points_at_the_equalising_valve(void **state) {
+	talk t;
+	talk_begin(&t, *state, SMALL_PROCEDURE);
+	talk_to_readings(&t);
+	talk_take(&t, "4.16");
+	assert_null(strstr(talk_said(&t), "equalising valve"));
+	talk_take(&t, "4.17");
+	talk_says(&t, "equalising valve");
+	talk_end(&t);
+}
+
+/* What the journal carries counts, not what the stock file says today. */
+static void a_changed_stock_file_does_not_change_a_session(void **state) {
+	talk t;
+	to_thin_oil(&t, *state, SMALL_PROCEDURE);
+	fl_entry_free(t.entry);
+	fl_journal_close(&t.journal);
+	assert_int_equal(fl_journal_resume(&t.journal, fl_io_system(), t.path, t.now, &t.err), FL_OK);
+	fl_stock_free(&t.stock); /* the bench has lost its files; the instrument comes from the journal too */
+	fl_stock own = {0};
+	assert_int_equal(fl_session_stock(&t.journal.session, &own, &t.err), FL_OK);
+	t.instrument = fl_stock_instrument(&own, "VT-1");
+	talk_attach(&t);
+	talk_take(&t, "7.059 at 40.00");
+	talk_says(&t, "expected 6.947 mA");
+	talk_end(&t);
+	fl_stock_free(&own);
 }
 
 /* ---- temperatures
@@ -499,6 +533,8 @@ int main(void) {
 	    IN_SCRATCH(a_pneumatic_output_takes_pressures_only),
 	    IN_SCRATCH(the_expected_output_stands_only_behind_a_committed_reading),
 	    IN_SCRATCH(a_correction_of_the_certificate_is_applied),
+	    IN_SCRATCH(a_stopped_zero_far_off_points_at_the_equalising_valve),
+	    IN_SCRATCH(a_changed_stock_file_does_not_change_a_session),
 	    IN_SCRATCH(fahrenheit_is_asked_and_never_converted_silently),
 	    IN_SCRATCH(a_temperature_away_from_the_bath_is_asked),
 	    IN_SCRATCH(a_temperature_may_follow_on_its_own_line),
