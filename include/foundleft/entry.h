@@ -16,6 +16,13 @@
 #include "foundleft/procedure.h"
 #include "foundleft/stock.h"
 
+/* Settings that the conversation writes besides the procedure's conditions (which go by their own ids):
+ *   signal            typed the signal in words, unit that of the output; written by fl_entry_begin
+ *   place, customer, job, performed-by, others   identification and people; job and others may be empty
+ *   no-tachometer     none is used
+ *   remarks-complete  the remarks are finished
+ * Gates and restoring steps go by the ids of the procedure; "not recorded (imported)" where a table has none. */
+
 /* What the next line is about. */
 typedef enum fl_step_kind {
 	FL_STEP_SETTING,    /* identification, people, conditions */
