@@ -128,7 +128,7 @@ static void explain(fl_writing *w, fl_chart *chart, const fl_run_result *found, 
 	if (chart->edge_count > 1) {
 		fl_chart_legend(w->sheet, chart, (fl_legend){.text = "tolerance", .kind = FL_LEGEND_BAND});
 		if (!isnan(chart->edges[0].inner))
-			fl_chart_legend(w->sheet, chart, (fl_legend){.text = "guard band, as wide as U", .kind = FL_LEGEND_GUARD});
+			fl_chart_legend(w->sheet, chart, (fl_legend){.text = "guard band, U wide", .kind = FL_LEGEND_GUARD});
 	}
 	if (any_struck(found) || any_struck(left))
 		fl_chart_legend(w->sheet, chart,

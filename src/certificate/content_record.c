@@ -25,7 +25,7 @@ void fl_write_adjustments(fl_writing *w) {
 		if (made->undone)
 			continue;
 		const char *cells[] = {made->item, made->before, made->after,
-		                       fl_word_time(sheet, made->at, w->issue->utc_offset_min)};
+		                       fl_word_clock(sheet, made->at, w->issue->utc_offset_min)};
 		fl_sheet_row(sheet, table, FL_ROW_PLAIN, cells);
 	}
 }
@@ -99,10 +99,9 @@ static void write_departures(fl_writing *w) {
 		}
 	for (size_t i = 0; i < session->indicative_count; i++) {
 		const fl_indicative *entry = &session->indicative[i];
-		fl_sheet_add_led(sheet, FL_BLOCK_SMALL, "Departure.", "%s was used although it was out of date: %s %s",
-		                 entry->item ? entry->item : "An item",
-		                 fl_word_sentence(sheet, entry->reason ? entry->reason : "no reason given"),
-		                 entry->by ? entry->by : "");
+		fl_sheet_add_led(sheet, FL_BLOCK_SMALL, "Departure.", "%s was used although it was out of date (%s): %s",
+		                 entry->item ? entry->item : "An item", entry->by ? entry->by : "nobody named",
+		                 fl_word_sentence(sheet, entry->reason ? entry->reason : "no reason given"));
 	}
 	if (session->source == FL_SOURCE_IMPORT)
 		fl_sheet_add_led(sheet, FL_BLOCK_SMALL, "Departure.",
@@ -144,10 +143,10 @@ static void write_journal(fl_writing *w) {
 		               session->questions == 1 ? "time" : "times");
 	fl_sheet_pairf(sheet, grid, 1, "Programs", "foundleft %s, certificate %s",
 	               session->program ? session->program : "?", issue->program_version ? issue->program_version : "?");
-	fl_sheet_pairf(sheet, grid, 2, "Clock", "%s; UTC, local time is %s",
-	               session->declared_clock ? "times as the file states them, not a machine's"
+	fl_sheet_pairf(sheet, grid, 2, "Clock", "%s; times in UTC, local time %s",
+	               session->declared_clock ? "as the file states it, not a machine's"
 	                                       : "of the machine it was written on",
-	               fl_word_offset(sheet, issue->utc_offset_min));
+	               issue->utc_offset_min == 0 ? "the same" : fl_word_offset(sheet, issue->utc_offset_min));
 	fl_sheet_add_led(sheet, FL_BLOCK_SMALL, "Digest of the journal (SHA-256):", "%s",
 	                 issue->journal_digest ? issue->journal_digest : "not stated");
 	fl_sheet_add_led(sheet, FL_BLOCK_SMALL, "Source of the procedure:", "%s, version %s: %s", w->procedure->id,

@@ -26,11 +26,11 @@ static void state_limits(fl_writing *w, const fl_run_result *run) {
 	if (run->hysteresis_exceeded)
 		fl_sheet_addf(w->sheet, FL_BLOCK_TEXT, "%s hysteresis of %s %% of span exceeds its limit of %s %% of span.",
 		              run_name, fl_word_number(w->sheet, 100 * run->hysteresis_span, 3),
-		              fl_word_plain(w->sheet, 100 * result->hysteresis_limit_span, 3));
+		              fl_word_limit(w->sheet, 100 * result->hysteresis_limit_span));
 	if (run->linearity_exceeded)
 		fl_sheet_addf(w->sheet, FL_BLOCK_TEXT, "%s linearity (%s) exceeds its limit of %s %% of span.", run_name,
 		              fl_procedure_linearity_word(result->deciding_linearity),
-		              fl_word_plain(w->sheet, 100 * result->linearity_limit_span, 3));
+		              fl_word_limit(w->sheet, 100 * result->linearity_limit_span));
 }
 
 static void state_run(fl_writing *w, const fl_run_result *run) {
@@ -40,7 +40,7 @@ static void state_run(fl_writing *w, const fl_run_result *run) {
 	if (run->verdict != FL_VERDICT_NONE && point) {
 		fl_sheet_addf(sheet, FL_BLOCK_STATEMENT, "%s: %s", title, fl_verdict_word(run->verdict));
 		fl_sheet_addf(sheet, FL_BLOCK_TEXT, "Decided by %s: error %s, tolerance ±%s %% of span.", name_of(w, point),
-		              error_with_u(w, point), fl_word_plain(sheet, 100 * point->tolerance_span, 3));
+		              error_with_u(w, point), fl_word_limit(sheet, 100 * point->tolerance_span));
 	} else {
 		fl_sheet_addf(sheet, FL_BLOCK_STATEMENT, "%s: %s", title,
 		              w->result->rule == FL_RULE_NONE ? "no statement of conformity" : "no verdict");
@@ -239,8 +239,8 @@ static const char *tolerance_words(fl_writing *w) {
 	fl_band band = w->result->tolerance;
 	const char *words = fl_word_band(sheet, band, w->dial_unit);
 	if (band.basis == FL_BAND_PERCENT_SPAN && isfinite(w->dial_span))
-		words = fl_sheet_printf(sheet, "%s (±%s %s)", words,
-		                        fl_word_plain(sheet, band.half_width / 100 * w->dial_span, 4), w->dial_unit);
+		words = fl_sheet_printf(sheet, "%s (±%s %s)", words, fl_word_limit(sheet, band.half_width / 100 * w->dial_span),
+		                        w->dial_unit);
 	return words;
 }
 

@@ -252,7 +252,7 @@ static double set_legend(const fl_frame *frame, double top, bool draw) {
 			draw_sample(frame, entry, x + 5, y - 5);
 			fl_ink_words(frame->press, FL_REGULAR, SIZE, FL_BLACK, x + 14, y - 7.6, entry->text);
 		}
-		x += width + 14;
+		x += width + 9;
 	}
 	return top - y + 14;
 }

@@ -228,7 +228,7 @@ static void set_item(fl_press *press, const fl_block *block, bool last) {
 	fl_press_need(press, LEADING);
 	fl_ink_words(press, FL_REGULAR, BODY, FL_BLACK, FL_LEFT, press->y - BODY, "–");
 	set_text(press, STYLE_BODY, block->lead, block->text, FL_LEFT + 10, FL_MEASURE - 10);
-	press->y -= last ? 4 : 1;
+	press->y -= last ? 5 : 1;
 }
 
 static void set_end(fl_press *press, const char *text) {

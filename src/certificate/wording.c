@@ -78,6 +78,19 @@ const char *fl_word_plain(fl_sheet *sheet, double value, int most) {
 	return with_minus(sheet, number);
 }
 
+const char *fl_word_limit(fl_sheet *sheet, double value) {
+	double tenths = value * 10;
+	return fabs(tenths - rint(tenths)) < 1e-9 ? fl_word_number(sheet, value, 1) : fl_word_plain(sheet, value, 4);
+}
+
+const char *fl_word_clock(fl_sheet *sheet, fl_utc at, int utc_offset_min) {
+	char utc[FL_UTC_SIZE], local[FL_UTC_SIZE];
+	fl_utc_format(at, utc);
+	fl_utc_format(at + 60 * (fl_utc)utc_offset_min, local);
+	return utc_offset_min == 0 ? fl_sheet_printf(sheet, "%.5s UTC", utc + 11)
+	                           : fl_sheet_printf(sheet, "%.5s UTC (%.5s local)", utc + 11, local + 11);
+}
+
 const char *fl_word_day(fl_sheet *sheet, fl_day day) {
 	char text[FL_DAY_SIZE];
 	return day == FL_NO_DAY ? FL_ABSENT : fl_sheet_copy(sheet, fl_day_format(day, text));
@@ -120,10 +133,7 @@ const char *fl_word_sentence(fl_sheet *sheet, const char *text) {
 }
 
 const char *fl_word_band(fl_sheet *sheet, fl_band band, const char *dial_unit) {
-	/* as written in stock or procedure: at least one decimal, no more than it needs */
-	double tenths = band.half_width * 10;
-	const char *width = fabs(tenths - rint(tenths)) < 1e-9 ? fl_word_number(sheet, band.half_width, 1)
-	                                                       : fl_word_plain(sheet, band.half_width, 4);
+	const char *width = fl_word_limit(sheet, band.half_width);
 	switch (band.basis) {
 	case FL_BAND_PERCENT_SPAN:
 		return fl_sheet_printf(sheet, "±%s %% of span", width);

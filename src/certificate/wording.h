@@ -27,7 +27,12 @@ const char *fl_word_error(fl_sheet *sheet, double value, double u);
 /* The shortest of up to `most` decimals that says the same value: "2", "0.95". */
 const char *fl_word_plain(fl_sheet *sheet, double value, int most);
 
+/* A limit: at least one decimal, no more than it needs: "2.0", "0.75". */
+const char *fl_word_limit(fl_sheet *sheet, double value);
+
 const char *fl_word_day(fl_sheet *sheet, fl_day day);
+/* "09:20 UTC (11:20 local)" */
+const char *fl_word_clock(fl_sheet *sheet, fl_utc at, int utc_offset_min);
 /* "2026-04-14 08:00 UTC (10:00 local, UTC+02:00)"; FL_ABSENT for an unknown time. */
 const char *fl_word_time(fl_sheet *sheet, fl_utc at, int utc_offset_min);
 const char *fl_word_offset(fl_sheet *sheet, int utc_offset_min); /* "UTC+02:00" */
