@@ -163,6 +163,13 @@ fl_status fl_numeric_inverse(const fl_line *line, double y, size_t repeats, doub
 fl_status fl_numeric_inverse_known(const fl_line *line, double y, double u_y, double probability, fl_inverse *out,
                                    fl_error *err) FL_MUST_USE;
 
+/* By a polynomial c[0] + c[1] x + ... of p coefficients with its covariance (as fl_numeric_least_squares gives them),
+ * rising or falling throughout [from, to]. low and high invert the prediction limits; half and g are left 0. bounded is
+ * false where a limit is not met within [from, to]: that end is then infinite. */
+fl_status fl_numeric_inverse_curve(const double *c, const double *covariance, size_t p, double s, double dof, double y,
+                                   size_t repeats, double probability, double from, double to, fl_inverse *out,
+                                   fl_error *err) FL_MUST_USE;
+
 /* ==== Conformity: the risks of a decision, JCGM 106:2012 ==================================================== */
 
 /* A tolerance; -INFINITY or INFINITY for a side without limit. */
