@@ -280,6 +280,16 @@ static fl_status find_open_session(const fl_cli *cli, char path[FL_PATH_SIZE], f
 	return status;
 }
 
+static fl_status record_resume(bench *b, fl_error *err) {
+	if (b->journal.session.closed)
+		return fl_fail_at(err, FL_E_STATE, (fl_place){.file = b->path},
+		                  "the session is closed: there is nothing to go on with; assess and certify work from it");
+	fl_event event = {.at = bench_clock(b), .verb = FL_V_RESUME};
+	event.fields[FL_F_PROGRAM] = FOUNDLEFT_VERSION;
+	event.fields[FL_F_SOURCE] = fl_source_word(FL_SOURCE_KEYBOARD);
+	return fl_journal_commit(&b->journal, &event, err);
+}
+
 fl_status fl_command_resume(fl_cli *cli, fl_exit *code, fl_error *err) {
 	(void)code;
 	bench b = {0};
@@ -292,6 +302,8 @@ fl_status fl_command_resume(fl_cli *cli, fl_exit *code, fl_error *err) {
 	if (status >= 0)
 		status = fl_journal_resume(&b.journal, cli->io, b.path, fl_cli_now(), err);
 	b.journal_open = status >= 0;
+	if (status >= 0)
+		status = record_resume(&b, err);
 	if (status >= 0)
 		status = fl_session_procedure(&b.journal.session, &b.procedure, err);
 	if (status >= 0)
@@ -469,6 +481,9 @@ static fl_status import_rows(fl_cli *cli, bench *b, const char *csv, const char 
 	if (say.length)
 		fputs(say.data, cli->out);
 	fl_text_free(&say);
+	/* Half a table is no session, and the table still has everything. */
+	if (status < 0 && b->journal_open)
+		cli->io->unlink(cli->io->self, b->path);
 	return status;
 }
 

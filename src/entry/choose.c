@@ -4,6 +4,7 @@
  */
 #include "entry_private.h"
 
+#include <math.h>
 #include <stdio.h>
 #include <string.h>
 
@@ -85,16 +86,21 @@ static bool fits_point(const fl_entry *entry, const fl_oil *oil, int point, doub
 	       *pct >= plan->oil_low_pct_span && *pct <= plan->oil_high_pct_span;
 }
 
-/* Among the lots in date that fit, the one opened or certified last. */
+/* Among the lots in date that fit, the one nearest to the point's place; of several such the one certified last. */
 const fl_oil *fl_entry_propose_oil(const fl_entry *entry, int point) {
 	const fl_stock *stock = entry->setup.stock;
 	const fl_oil *best = NULL;
-	double pct;
+	double pct, nearest = INFINITY;
+	const double same_pct = 0.5; /* two lots of one oil differ by less */
 	for (size_t i = 0; i < stock->oil_count; i++) {
 		const fl_oil *oil = &stock->oils[i];
-		if (fl_stock_oil_in_date(oil, entry->session->day, NULL) == FL_OK && fits_point(entry, oil, point, &pct) &&
-		    (!best || oil->certified_on > best->certified_on))
+		if (fl_stock_oil_in_date(oil, entry->session->day, NULL) != FL_OK || !fits_point(entry, oil, point, &pct))
+			continue;
+		double away = fabs(pct - entry->setup.procedure->points[point].position_pct_span);
+		if (away < nearest - same_pct || (away < nearest + same_pct && oil->certified_on > best->certified_on)) {
+			nearest = away;
 			best = oil;
+		}
 	}
 	return best;
 }

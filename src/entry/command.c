@@ -54,8 +54,8 @@ static fl_status help(fl_entry *entry, const char *rest, fl_text *say, fl_error 
 	fl_step step = fl_entry_step(entry->session, entry->setup.procedure);
 	fl_text_printf(say,
 	               "  %s\n"
-	               "  At any prompt: ? this help; undo takes the last entry back; strike N sets reading N aside;\n"
-	               "  watch VALUE (or w) notes an output that settles; remark TEXT; list shows the run; stop leaves.\n",
+	               "  At any prompt: ? this help; undo takes the last entry back; strike N sets reading N aside; "
+	               "watch VALUE (or w) notes an output that settles; remark TEXT; list shows the run; stop leaves.\n",
 	               step_help(&step));
 	return FL_OK;
 }

@@ -84,9 +84,9 @@ static void show_part_note(const fl_entry *entry, part which, fl_text *out) {
 	if (which == PART_IDENTITY)
 		show_instrument(entry, out);
 	if (which == PART_SAFETY)
-		fl_text_add(out,
-		            "  Hot fuel, pressure, rotating parts and electricity can injure or kill. Local rules and the\n"
-		            "  permit rule over anything said here.\n");
+		fl_text_add(
+		    out, "  Hot fuel, pressure, rotating parts and electricity can injure or kill. Local rules and the permit "
+		         "rule over anything said here.\n");
 	if (which == PART_AS_FOUND)
 		fl_text_add(out, "  Nothing is touched or adjusted before this run is closed.\n");
 	if (which == PART_ADJUSTMENT)

@@ -13,7 +13,7 @@
 const fl_entry_item fl_entry_items[] = {
     {"place", "Where is the work done (ship or plant, and port or shop)", "The place goes on the certificate.", true,
      0},
-    {"customer", "Who asked for it", "The customer as the certificate shall name him.", true, 0},
+    {"customer", "Who asked for it", "The customer, as the certificate shall say it.", true, 0},
     {"job", "Job or order number (empty if there is none)", "Your own number for this job.", false, 0},
     {"performed-by", "Your name: who performs the work", "The performer. Another person countersigns later.", true, 1},
     {"others", "Others present (empty if none)", "Names of witnesses or helpers.", false, 1},

@@ -49,9 +49,13 @@ static void uncertainty_above_tolerance(void **state) {
 	check_verdict(FL_VERDICT_CONDITIONAL_FAIL, fl_analysis_decide(FL_RULE_FOUR_STATES, 3.0, 2.1, 2.0));
 }
 
-/* A transmitter that reads `excess_ma` too much at five places; no equipment, so U is 0 unless a term is added. */
+/* A transmitter that reads `excess_ma` too much at five places; no equipment, so U is next to
+ * nothing unless another term is put in its place. */
 static void fill(bench *b, double excess_ma) {
+	static const fl_extra_term next_to_nothing = {"next to nothing", 1e-9, 2.0, FL_DIST_NORMAL, FL_BAND_PERCENT_SPAN};
 	bench_begin_pressure(b);
+	b->procedure.extra = &next_to_nothing;
+	b->procedure.extra_count = 1;
 	b->procedure.rule = FL_RULE_SIMPLE;
 	for (int i = 0; i < 5; i++)
 		bench_dp(b, 1, FL_PASS_RISING, i, 4.0 * (i + 1) + excess_ma, i * 2500.0);

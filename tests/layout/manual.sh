@@ -8,7 +8,7 @@ commands=$("$program" help | sed -n 's/^  \([a-z]*\) .*/\1/p')
 [ "$(echo "$commands" | wc -w)" -ge 8 ] || { echo "manual: help lists too few commands"; exit 1; }
 for command in $commands; do
 	grep -q "^\.It Cm $command" "$root/src/cli/foundleft.1" || { echo "manual: foundleft.1 lacks the command $command"; bad=1; }
-	grep -q "begin resume.*\b$command\b" "$root/src/cli/completion.bash" || { echo "manual: the completion lacks $command"; bad=1; }
+	grep -o 'compgen -W "begin [^"]*"' "$root/src/cli/completion.bash" | grep -qw -- "$command" || { echo "manual: the completion lacks $command"; bad=1; }
 	case $command in help | version) continue ;; esac
 	for option in $("$program" help "$command" | sed -n 's/^  \(--[a-z-]*\).*/\1/p'); do
 		grep -q "Fl $(echo "$option" | sed 's/^-//')\b" "$root/src/cli/foundleft.1" ||
