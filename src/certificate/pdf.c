@@ -21,8 +21,8 @@ static fl_status load(fl_press *press, const fl_io *io, const char *folder, cons
 /* Number 0 of every face is its "not defined" glyph, which is never set. */
 static fl_status load_face(fl_press *press, const fl_io *io, const char *folder, const char *name, fl_typeface *type,
                            fl_error *err) {
-	unsigned char *bytes;
-	size_t length;
+	unsigned char *bytes = NULL;
+	size_t length = 0;
 	fl_status status = load(press, io, folder, name, &bytes, &length, err);
 	if (status == FL_OK)
 		status = fl_face_open(&type->face, bytes, length, name, err);
