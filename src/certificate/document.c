@@ -264,12 +264,12 @@ static void write_xmp(const fl_sheet *sheet, const char *title, fl_text *out) {
 	fl_text_add(out, "</rdf:Description>\n</rdf:RDF>\n</x:xmpmeta>\n<?xpacket end=\"w\"?>\n");
 }
 
-/* UTF-16BE with its mark, as an information dictionary holds text. */
-static void put_text(HPDF_Doc pdf, fl_press *press, const char *key, const char *text) {
+/* UTF-16BE with its mark, as an information dictionary holds text. False when memory is out. */
+static bool put_text(HPDF_Doc pdf, fl_press *press, const char *key, const char *text) {
 	size_t length = strlen(text);
 	unsigned char *wide = fl_arena_alloc(&press->arena, 2 * length + 4, 1);
 	if (!wide)
-		return;
+		return false;
 	HPDF_UINT at = 0;
 	wide[at++] = 0xFE;
 	wide[at++] = 0xFF;
@@ -284,18 +284,18 @@ static void put_text(HPDF_Doc pdf, fl_press *press, const char *key, const char 
 		wide[at++] = (unsigned char)(point >> 8);
 		wide[at++] = (unsigned char)point;
 	}
-	HPDF_Dict_Add(pdf->info, key, HPDF_Binary_New(pdf->mmgr, wide, at));
+	return HPDF_Dict_Add(pdf->info, key, HPDF_Binary_New(pdf->mmgr, wide, at)) == HPDF_OK;
 }
 
-static void add_information(HPDF_Doc pdf, fl_press *press, const char *title) {
+/* The information dictionary and the XMP that says the same. False when memory is out. */
+static bool add_information(HPDF_Doc pdf, fl_press *press, const char *title) {
 	const fl_sheet *sheet = press->sheet;
 	char time[40];
 	pdf_time(sheet, time);
-	put_text(pdf, press, "Title", title);
-	put_text(pdf, press, "Author", sheet->author);
-	put_text(pdf, press, "Subject", sheet->subject);
-	put_text(pdf, press, "Creator", sheet->program);
-	put_text(pdf, press, "Producer", sheet->program);
+	if (!put_text(pdf, press, "Title", title) || !put_text(pdf, press, "Author", sheet->author) ||
+	    !put_text(pdf, press, "Subject", sheet->subject) || !put_text(pdf, press, "Creator", sheet->program) ||
+	    !put_text(pdf, press, "Producer", sheet->program))
+		return false;
 	HPDF_Dict_Add(pdf->info, "CreationDate", HPDF_String_New(pdf->mmgr, time, NULL));
 	HPDF_Dict_Add(pdf->info, "ModDate", HPDF_String_New(pdf->mmgr, time, NULL));
 	fl_text xmp = {0};
@@ -303,11 +303,12 @@ static void add_information(HPDF_Doc pdf, fl_press *press, const char *title) {
 	HPDF_Dict metadata = xmp.failed ? NULL : add_stream(pdf, xmp.data, xmp.length, false);
 	fl_text_free(&xmp);
 	if (!metadata)
-		return;
+		return false;
 	HPDF_Dict_AddName(metadata, "Type", "Metadata");
 	HPDF_Dict_AddName(metadata, "Subtype", "XML");
 	HPDF_Dict_Add(pdf->catalog, "Metadata", metadata);
 	HPDF_Dict_Add(pdf->catalog, "Lang", HPDF_String_New(pdf->mmgr, "en-GB", NULL));
+	return true;
 }
 
 static void add_output_intent(HPDF_Doc pdf, const fl_press *press) {
@@ -353,9 +354,8 @@ static fl_status build(HPDF_Doc pdf, fl_press *press, fl_error *err) {
 		add_page(pdf, &press->pages[i], fonts);
 	const fl_sheet *sheet = press->sheet;
 	char *title = fl_arena_printf(&press->arena, "%s %s", sheet->title, sheet->number);
-	if (!title)
+	if (!title || !add_information(pdf, press, title))
 		return fl_fail(err, FL_E_MEMORY, "out of memory while writing the certificate");
-	add_information(pdf, press, title);
 	add_output_intent(pdf, press);
 	add_identity(pdf, press);
 	HPDF_SaveToStream(pdf);

@@ -110,8 +110,8 @@ const char *fl_word_time(fl_sheet *sheet, fl_utc at, int utc_offset_min) {
 		return fl_sheet_printf(sheet, "%.10s %.5s UTC", utc, utc + 11);
 	fl_utc_format(at + 60 * (fl_utc)utc_offset_min, local);
 	bool same_day = strncmp(utc, local, 10) == 0;
-	return fl_sheet_printf(sheet, "%.10s %.5s UTC (%.*s%.5s local, %s)", utc, utc + 11, same_day ? 0 : 11, local,
-	                       local + 11, fl_word_offset(sheet, utc_offset_min));
+	return fl_sheet_printf(sheet, "%.10s %.5s UTC (%.*s%s%.5s local, %s)", utc, utc + 11, same_day ? 0 : 10, local,
+	                       same_day ? "" : " ", local + 11, fl_word_offset(sheet, utc_offset_min));
 }
 
 const char *fl_word_sentence(fl_sheet *sheet, const char *text) {

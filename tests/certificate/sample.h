@@ -62,7 +62,8 @@ static inline void sample_equip(fl_session *s, fl_role role, const char *id) {
 
 /* Noise that is the same every time: -1 to 1. */
 static inline double sample_noise(int a, int b, int c, int d) {
-	unsigned n = (unsigned)(a * 73856093 ^ b * 19349663 ^ c * 83492791 ^ (d + 7) * 2654435761u);
+	unsigned n =
+	    (unsigned)a * 73856093u ^ (unsigned)b * 19349663u ^ (unsigned)c * 83492791u ^ (unsigned)(d + 7) * 2654435761u;
 	n = (n ^ n >> 13) * 1274126177u;
 	return (double)((n ^ n >> 16) & 0xffff) / 32767.5 - 1;
 }
