@@ -87,6 +87,7 @@ static fl_status check_readable(const fl_text *facts, fl_error *err) {
 static fl_status append_within(fl_store *store, fl_entry *entry, const void *packed, fl_text *facts,
                                char digest[FL_DIGEST_HEX_SIZE], fl_error *err) {
 	fl_head head;
+	int64_t row = 0;
 	fl_status status = fl_link_head(store, store->own, store->own_digest, &head, err);
 	if (status < 0)
 		return status;
@@ -99,7 +100,7 @@ static fl_status append_within(fl_store *store, fl_entry *entry, const void *pac
 	if (status >= 0)
 		status = fl_seal_digest(store->hasher, facts->data, facts->length, digest, err);
 	if (status >= 0)
-		status = fl_link_append(store, store->own, entry, digest, facts, packed, err);
+		status = fl_link_append(store, store->own, entry, digest, facts, packed, &row, err);
 	return status < 0 ? status : fl_sql_run(store, SQL_COMMIT, err, "");
 }
 

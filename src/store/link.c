@@ -35,11 +35,11 @@ static fl_status add_entry(fl_store *store, int64_t origin_row, int64_t sequence
 }
 
 fl_status fl_link_append(fl_store *store, int64_t origin_row, const fl_entry *entry, const char *digest,
-                         const fl_text *facts, const void *packed, fl_error *err) {
+                         const fl_text *facts, const void *packed, int64_t *entry_row, fl_error *err) {
 	fl_status status = add_entry(store, origin_row, entry->head.sequence, digest, facts, err);
 	if (status < 0)
 		return status;
-	int64_t row = sqlite3_last_insert_rowid(store->db);
+	int64_t row = *entry_row = sqlite3_last_insert_rowid(store->db);
 	if (packed)
 		status = fl_sql_run(store, SQL_ADD_BYTES, err, "iib", row, (int64_t)entry->head.carried.size, packed,
 		                    (size_t)entry->head.carried.packed_size);

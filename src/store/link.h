@@ -17,9 +17,9 @@ typedef struct fl_head {
 fl_status fl_link_head(fl_store *store, int64_t origin_row, const char *origin_digest, fl_head *out,
                        fl_error *err) FL_MUST_USE;
 /* Appends an entry: facts[length] with this digest, and packed bytes (NULL: none here), with its rows for looking up.
- * Within a transaction. */
+ * Within a transaction. *entry_row becomes its row. */
 fl_status fl_link_append(fl_store *store, int64_t origin_row, const fl_entry *entry, const char *digest,
-                         const fl_text *facts, const void *packed, fl_error *err) FL_MUST_USE;
+                         const fl_text *facts, const void *packed, int64_t *entry_row, fl_error *err) FL_MUST_USE;
 /* Adds a chain's founding. */
 fl_status fl_link_found(fl_store *store, const fl_founding_text *founding, bool own, fl_error *err) FL_MUST_USE;
 /* Does what the row says fit the last entry of its chain: digest of the founding, of the facts, of the bytes? */

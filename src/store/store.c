@@ -223,8 +223,8 @@ static fl_status make_ready(fl_store *store, fl_error *err) {
 	if (status >= 0 && store->writable)
 		status = fl_schema_check(store, err);
 	if (status >= 0)
-		status = fl_link_load_own(store, err);
-	return status < 0 ? status : check_heads(store, err);
+		status = check_heads(store, err);
+	return status < 0 ? status : fl_link_load_own(store, err);
 }
 
 fl_status fl_store_open(const char *path, fl_store_mode mode, int patience_ms, fl_store **out, fl_error *err) {
