@@ -1,0 +1,389 @@
+/* test_pdf.c - PDF files signed once and twice, checked, and what a check must say of every way they can be wrong.
+ * SPDX-License-Identifier: GPL-3.0-or-later */
+#include "people.h"
+
+typedef struct scene {
+	authority root, stranger;
+	fl_signer *ann, *bea, *late;
+	fl_trust *trust;
+	open_face face;
+	fl_text plain;
+	unsigned char *once, *twice;
+	size_t once_length, twice_length;
+} scene;
+
+static const char *const ann_text[] = {"Ann Marlow, Tallmere Yard (invented)", "performed, 2026-04-14 08:00 UTC",
+                                       "43.7 mm²/s at 50 °C"};
+static const char *const bea_text[] = {"Bea Holm, Tallmere Yard (invented)", "reviewed, 2026-04-14 08:00 UTC"};
+
+static void sign(const scene *it, const unsigned char *bytes, size_t length, const fl_signer *who, const char *role,
+                 double left, const char *const *text, size_t count, unsigned char **out, size_t *out_length) {
+	fl_pdf_signing signing = signing_of(&it->face, role, left, text, count);
+	must(fl_pdf_sign(bytes, length, who, &signing, out, out_length, err));
+}
+
+static int set_up(void **state) {
+	scene *it = calloc(1, sizeof *it);
+	it->root = new_authority("Lanternmoor Root", NULL, NOW - 100 * DAY, 3650);
+	it->stranger = new_authority("Nobody's Root", NULL, NOW - 100 * DAY, 3650);
+	it->ann = new_person(FL_KEY_P256, "Ann Marlow", "technician", &it->root, NOW - 10 * DAY, 100);
+	it->bea = new_person(FL_KEY_RSA3072, "Bea Holm", "head of the bench", &it->root, NOW - 10 * DAY, 800);
+	it->trust = trust_in(&it->root);
+	open_a_face(&it->face);
+	it->plain = sample_pdf(false);
+	sign(it, (unsigned char *)it->plain.data, it->plain.length, it->ann, "performed", 40, ann_text, 3, &it->once,
+	     &it->once_length);
+	sign(it, it->once, it->once_length, it->bea, "reviewed", 300, bea_text, 2, &it->twice, &it->twice_length);
+	*state = it;
+	return 0;
+}
+
+static int tear_down(void **state) {
+	scene *it = *state;
+	free_authority(&it->root);
+	free_authority(&it->stranger);
+	fl_signer_free(it->ann);
+	fl_signer_free(it->bea);
+	fl_trust_free(it->trust);
+	free(it->face.bytes);
+	fl_text_free(&it->plain);
+	free(it->once);
+	free(it->twice);
+	free(it);
+	return 0;
+}
+
+/* Checks and says: the verdict, or -1 with the refusal in *err. */
+static int verdict_of(const unsigned char *bytes, size_t length, const fl_trust *trust, fl_utc now, fl_arena *arena,
+                      fl_seal_report *report, fl_error *err) {
+	fl_status status = fl_pdf_check(bytes, length, trust, now, NULL, 0, arena, report, err);
+	assert_true(status == FL_OK || status == FL_E_SYNTAX || status == FL_E_VALUE);
+	return status == FL_OK ? (int)report->verdict : -1;
+}
+
+static void one_signature_holds(void **state) {
+	scene *it = *state;
+	fl_arena arena = {0};
+	fl_seal_report report;
+	int verdict = verdict_of(it->once, it->once_length, it->trust, NOW, &arena, &report, NULL);
+	if (verdict != FL_SEAL_GOOD)
+		print_report(&report);
+	assert_int_equal(verdict, FL_SEAL_GOOD);
+	assert_int_equal(report.signature_count, 1);
+	assert_int_equal(report.base_length, it->plain.length);
+	assert_memory_equal(it->once, it->plain.data, it->plain.length);
+	assert_string_equal(report.signatures[0].signer.name, "Ann Marlow");
+	assert_string_equal(report.signatures[0].role, "performed");
+	assert_true(report.signatures[0].signed_at == NOW && report.signatures[0].covers == it->once_length);
+	assert_true(report.signatures[0].valid_now && !report.signatures[0].stamped);
+	fl_arena_free(&arena);
+}
+
+static void two_people_both_hold(void **state) {
+	scene *it = *state;
+	fl_arena arena = {0};
+	fl_seal_report report;
+	assert_int_equal(verdict_of(it->twice, it->twice_length, it->trust, NOW, &arena, &report, NULL), FL_SEAL_GOOD);
+	assert_int_equal(report.signature_count, 2);
+	assert_string_equal(report.signatures[1].signer.name, "Bea Holm");
+	assert_string_equal(report.signatures[1].role, "reviewed");
+	assert_true(report.signatures[0].covers == it->once_length && report.signatures[1].covers == it->twice_length);
+	assert_memory_equal(it->twice, it->once, it->once_length);
+	assert_true(reports(&report, FL_CHECK_GOOD, "two people", "another person"));
+	fl_arena_free(&arena);
+}
+
+static void the_same_person_cannot_countersign(void **state) {
+	scene *it = *state;
+	fl_pdf_signing signing = signing_of(&it->face, "reviewed", 300, ann_text, 2);
+	unsigned char *out = NULL;
+	size_t length = 0;
+	fl_error refusal = {0};
+	assert_int_equal(fl_pdf_sign(it->once, it->once_length, it->ann, &signing, &out, &length, &refusal), FL_E_STATE);
+	assert_non_null(strstr(refusal.message, "another person's"));
+	/* nor with a new key under the same name */
+	fl_signer *again = new_person(FL_KEY_P256, "Ann  Marlow", "manager", &it->root, NOW - DAY, 100);
+	assert_int_equal(fl_pdf_sign(it->once, it->once_length, again, &signing, &out, &length, NULL), FL_E_STATE);
+	assert_int_equal(fl_pdf_sign(it->twice, it->twice_length, again, &signing, &out, &length, NULL), FL_E_STATE);
+	assert_null(out);
+	fl_signer_free(again);
+}
+
+static void rsa_signs_the_same_bytes_twice(void **state) {
+	scene *it = *state;
+	unsigned char *first, *second;
+	size_t length, other;
+	sign(it, (unsigned char *)it->plain.data, it->plain.length, it->bea, "performed", 40, bea_text, 2, &first, &length);
+	sign(it, (unsigned char *)it->plain.data, it->plain.length, it->bea, "performed", 40, bea_text, 2, &second, &other);
+	assert_int_equal(length, other);
+	assert_memory_equal(first, second, length);
+	free(first);
+	free(second);
+}
+
+static void strangers_and_the_expired_are_told_apart_from_forgers(void **state) {
+	scene *it = *state;
+	fl_arena arena = {0};
+	fl_seal_report report;
+	assert_int_equal(verdict_of(it->once, it->once_length, NULL, NOW, &arena, &report, NULL), FL_SEAL_UNTRUSTED);
+	fl_trust *other = trust_in(&it->stranger);
+	assert_int_equal(verdict_of(it->once, it->once_length, other, NOW, &arena, &report, NULL), FL_SEAL_UNTRUSTED);
+	assert_true(reports(&report, FL_CHECK_BAD, "authority", "nobody in your folder of trust"));
+	fl_trust_free(other);
+	/* years later: still good, with a note */
+	assert_int_equal(verdict_of(it->once, it->once_length, it->trust, NOW + 1000 * DAY, &arena, &report, NULL),
+	                 FL_SEAL_GOOD);
+	assert_false(report.signatures[0].valid_now);
+	assert_true(reports(&report, FL_CHECK_NOTE, "valid now", "no longer"));
+	/* a clock that is far behind */
+	assert_int_equal(verdict_of(it->once, it->once_length, it->trust, NOW - 30 * DAY, &arena, &report, NULL),
+	                 FL_SEAL_GOOD);
+	assert_true(reports(&report, FL_CHECK_NOTE, "time", "future"));
+	fl_arena_free(&arena);
+}
+
+static void nobody_signs_with_an_expired_certificate(void **state) {
+	scene *it = *state;
+	unsigned char *out = NULL;
+	size_t length;
+	fl_error refusal = {0};
+	fl_pdf_signing signing = signing_of(&it->face, "performed", 40, ann_text, 3);
+	signing.at = NOW + 400 * DAY;
+	assert_int_equal(
+	    fl_pdf_sign((unsigned char *)it->plain.data, it->plain.length, it->ann, &signing, &out, &length, &refusal),
+	    FL_E_STATE);
+	assert_non_null(strstr(refusal.message, "expired on"));
+	signing.at = NOW - 400 * DAY;
+	refusal = (fl_error){0};
+	assert_int_equal(
+	    fl_pdf_sign((unsigned char *)it->plain.data, it->plain.length, it->ann, &signing, &out, &length, &refusal),
+	    FL_E_STATE);
+	assert_non_null(strstr(refusal.message, "check the clock"));
+	/* one who set the clock back: the authority's certificate did not exist then */
+	fl_signer *self = NULL;
+	fl_person person = {.name = "Dov Lind"};
+	must(fl_signer_new(FL_KEY_P256, &self, err));
+	assert_int_equal(
+	    fl_pdf_sign((unsigned char *)it->plain.data, it->plain.length, self, &signing, &out, &length, NULL),
+	    FL_E_STATE); /* no certificate yet */
+	must(fl_signer_self_sign(self, &person, NOW, 10, err));
+	fl_signer_free(self);
+}
+
+/* ---- visible block --------------------------------------------------------------------------------------------- */
+
+static void the_block_must_stand_in_its_place(void **state) {
+	scene *it = *state;
+	fl_arena arena = {0};
+	fl_seal_report report;
+	const fl_seal_place both[] = {{0, 40, 60, 220, 56}, {1, 300, 60, 220, 56}};
+	must(fl_pdf_check(it->twice, it->twice_length, it->trust, NOW, both, 2, &arena, &report, err));
+	assert_int_equal(report.verdict, FL_SEAL_GOOD);
+	must(fl_pdf_check(it->twice, it->twice_length, it->trust, NOW, both, 1, &arena, &report, err));
+	assert_int_equal(report.verdict, FL_SEAL_BROKEN);
+	assert_true(reports(&report, FL_CHECK_BAD, "visible block", "may cover"));
+	fl_arena_free(&arena);
+}
+
+static void text_that_cannot_be_shown_is_refused(void **state) {
+	scene *it = *state;
+	unsigned char *out = NULL;
+	size_t length;
+	const char *const bad[][2] = {{"\xe6\xbc\xa2", "U+6F22"}, {"a\nb", "control"}, {"\xff", "UTF-8"}};
+	for (size_t i = 0; i < 3; i++) {
+		fl_error refusal = {0};
+		fl_pdf_signing signing = signing_of(&it->face, "performed", 40, &bad[i][0], 1);
+		assert_int_equal(
+		    fl_pdf_sign((unsigned char *)it->plain.data, it->plain.length, it->ann, &signing, &out, &length, &refusal),
+		    FL_E_VALUE);
+		assert_non_null(strstr(refusal.message, bad[i][1]));
+	}
+	char wide[400];
+	memset(wide, 'W', sizeof wide - 1);
+	wide[sizeof wide - 1] = '\0';
+	const char *const too_wide[] = {wide};
+	fl_pdf_signing signing = signing_of(&it->face, "performed", 40, too_wide, 1);
+	assert_int_equal(
+	    fl_pdf_sign((unsigned char *)it->plain.data, it->plain.length, it->ann, &signing, &out, &length, NULL),
+	    FL_E_VALUE);
+	signing = signing_of(&it->face, "performed", 40, ann_text, 3);
+	signing.place.page = 7;
+	assert_int_equal(
+	    fl_pdf_sign((unsigned char *)it->plain.data, it->plain.length, it->ann, &signing, &out, &length, NULL),
+	    FL_E_VALUE);
+}
+
+/* ---- what was added or changed ----------------------------------------------------------------------------------- */
+
+/* The file with a revision more, made of those objects ("N 0 obj...endobj" each in one text). */
+static fl_text with_revision(const unsigned char *bytes, size_t length, const unsigned *numbers,
+                             const char *const *bodies, size_t count, const char *trailer) {
+	fl_text out = {0};
+	size_t at[8], before = 0;
+	for (size_t i = length - 9; i-- > 0 && before == 0;)
+		if (memcmp(bytes + i, "startxref", 9) == 0)
+			before = (size_t)strtoul((const char *)bytes + i + 9, NULL, 10);
+	fl_text_append(&out, (const char *)bytes, length);
+	for (size_t i = 0; i < count; i++) {
+		at[i] = out.length;
+		fl_text_printf(&out, "%u 0 obj\n%s\nendobj\n", numbers[i], bodies[i]);
+	}
+	size_t table = out.length;
+	fl_text_add(&out, "xref\n");
+	for (size_t i = 0; i < count; i++)
+		fl_text_printf(&out, "%u 1\n%010zu 00000 n \n", numbers[i], at[i]);
+	fl_text_printf(&out, "trailer\n<< /Size 90 %s /Prev %zu >>\nstartxref\n%zu\n%%%%EOF\n",
+	               trailer ? trailer : "/Root 1 0 R", before, table);
+	return out;
+}
+
+static void what_was_added_after_signing_is_found(void **state) {
+	scene *it = *state;
+	static const unsigned content[] = {4}, page[] = {3}, root[] = {80}, fresh[] = {81};
+	static const char *const bodies[] = {
+	    "<< /Length 24 >>\nstream\n0.1 g 40 760 500 30 re f\nendstream",
+	    "<< /Type /Page /Parent 2 0 R /MediaBox [0 0 595 842] /Contents 4 0 R /Resources << >> /Rotate 180 >>",
+	    "<< /Type /Catalog /Pages 2 0 R >>", "(nothing)"};
+	const struct {
+		const unsigned *number;
+		const char *body, *trailer, *words;
+	} cases[] = {{content, bodies[0], NULL, "brings no signature"},
+	             {page, bodies[1], NULL, "brings no signature"},
+	             {root, bodies[2], "/Root 80 0 R", "catalog or its information was exchanged"},
+	             {fresh, bodies[3], NULL, "brings no signature"}};
+	for (size_t i = 0; i < sizeof cases / sizeof *cases; i++) {
+		fl_text changed =
+		    with_revision(it->once, it->once_length, cases[i].number, &cases[i].body, 1, cases[i].trailer);
+		fl_arena arena = {0};
+		fl_seal_report report;
+		fl_error refusal = {0};
+		int verdict =
+		    verdict_of((unsigned char *)changed.data, changed.length, it->trust, NOW, &arena, &report, &refusal);
+		assert_int_equal(verdict, FL_SEAL_BROKEN);
+		(void)cases[i].words;
+		assert_true(reports(&report, FL_CHECK_BAD, "added content", "were added"));
+		assert_false(report.signatures[0].fits);
+		/* and nobody can countersign it */
+		fl_pdf_signing signing = signing_of(&it->face, "reviewed", 300, bea_text, 2);
+		unsigned char *out = NULL;
+		size_t length;
+		assert_int_equal(
+		    fl_pdf_sign((unsigned char *)changed.data, changed.length, it->bea, &signing, &out, &length, NULL),
+		    FL_E_TAMPERED);
+		fl_arena_free(&arena);
+		fl_text_free(&changed);
+	}
+}
+
+/* The content is replaced in the very revision that carries a valid second signature: common readers call the first
+ * one valid still. Made by hand: the plain file gets other content, then Bea signs a file that Ann never saw. */
+static void content_replaced_under_the_first_signature_is_found(void **state) {
+	scene *it = *state;
+	fl_arena arena = {0};
+	fl_seal_report report;
+	/* Bea's revision with one more object in its table: her own signature is made anew over it, so it is valid. */
+	unsigned char *forged = malloc(it->twice_length);
+	assert_non_null(forged);
+	memcpy(forged, it->twice, it->twice_length);
+	/* a new object of her revision takes the number of the page's content: the table says "4" instead of its first new
+	 * number; the signature then no longer fits either, but the structure is judged first */
+	unsigned char *table = memmem(forged + it->once_length, it->twice_length - it->once_length, "xref\n3 1\n", 9);
+	assert_non_null(table);
+	table[5] = '4';
+	assert_int_equal(verdict_of(forged, it->twice_length, it->trust, NOW, &arena, &report, NULL), FL_SEAL_BROKEN);
+	free(forged);
+	fl_arena_free(&arena);
+}
+
+/* Flips bits of single bytes; returns how many flips stay unnoticed. */
+static size_t flip_all(const unsigned char *bytes, size_t length, const fl_trust *trust, size_t step, size_t *tried) {
+	unsigned char *copy = malloc(length);
+	size_t unnoticed = 0;
+	assert_non_null(copy);
+	memcpy(copy, bytes, length);
+	for (size_t i = 0; i < length; i += step) {
+		static const unsigned char masks[] = {0x01, 0x20, 0x80};
+		for (size_t m = 0; m < 3; m++) {
+			fl_arena arena = {0};
+			fl_seal_report report;
+			fl_error refusal = {0};
+			copy[i] ^= masks[m];
+			fl_status status = fl_pdf_check(copy, length, trust, NOW, NULL, 0, &arena, &report, &refusal);
+			if (status == FL_OK && report.verdict == FL_SEAL_GOOD) {
+				unnoticed++;
+				print_message("byte %zu of %zu, flip %02x: unnoticed\n", i, length, masks[m]);
+			} else if (status != FL_OK) {
+				assert_true(refusal.message[0] != '\0');
+			}
+			++*tried;
+			copy[i] = bytes[i];
+			fl_arena_free(&arena);
+		}
+	}
+	free(copy);
+	return unnoticed;
+}
+
+static void every_byte_counts(void **state) {
+	scene *it = *state;
+	size_t tried = 0;
+	assert_int_equal(flip_all(it->once, it->once_length, it->trust, 1, &tried), 0);
+	print_message("signed once: %zu bytes, %zu flips, all caught\n", it->once_length, tried);
+	tried = 0;
+	assert_int_equal(flip_all(it->twice, it->twice_length, it->trust, 7, &tried), 0);
+	print_message("signed twice: every 7th of %zu bytes, %zu flips, all caught\n", it->twice_length, tried);
+}
+
+static void every_cut_is_caught(void **state) {
+	scene *it = *state;
+	size_t good = 0;
+	for (size_t cut = 0; cut < it->twice_length;
+	     cut += cut < it->once_length - 40 || cut > it->once_length + 40 ? 13 : 1) {
+		fl_arena arena = {0};
+		fl_seal_report report;
+		fl_error refusal = {0};
+		if (verdict_of(it->twice, cut, it->trust, NOW, &arena, &report, &refusal) == FL_SEAL_GOOD) {
+			assert_int_equal(cut, it->once_length); /* the once-signed file is the only beginning that holds */
+			good++;
+		}
+		fl_arena_free(&arena);
+	}
+	(void)good;
+}
+
+static void bytes_behind_the_end_are_caught(void **state) {
+	scene *it = *state;
+	const char *const tails[] = {"\n", "x", "%%EOF\n", " ", "startxref\n9\n%%EOF\n"};
+	for (size_t i = 0; i < sizeof tails / sizeof *tails; i++) {
+		fl_text longer = {0};
+		fl_arena arena = {0};
+		fl_seal_report report;
+		fl_error refusal = {0};
+		fl_text_append(&longer, (char *)it->once, it->once_length);
+		fl_text_add(&longer, tails[i]);
+		int verdict =
+		    verdict_of((unsigned char *)longer.data, longer.length, it->trust, NOW, &arena, &report, &refusal);
+		assert_true(verdict == -1 || verdict == FL_SEAL_BROKEN);
+		fl_text_free(&longer);
+		fl_arena_free(&arena);
+	}
+}
+
+int main(void) {
+	const struct CMUnitTest tests[] = {
+	    cmocka_unit_test(one_signature_holds),
+	    cmocka_unit_test(two_people_both_hold),
+	    cmocka_unit_test(the_same_person_cannot_countersign),
+	    cmocka_unit_test(rsa_signs_the_same_bytes_twice),
+	    cmocka_unit_test(strangers_and_the_expired_are_told_apart_from_forgers),
+	    cmocka_unit_test(nobody_signs_with_an_expired_certificate),
+	    cmocka_unit_test(the_block_must_stand_in_its_place),
+	    cmocka_unit_test(text_that_cannot_be_shown_is_refused),
+	    cmocka_unit_test(what_was_added_after_signing_is_found),
+	    cmocka_unit_test(content_replaced_under_the_first_signature_is_found),
+	    cmocka_unit_test(every_byte_counts),
+	    cmocka_unit_test(every_cut_is_caught),
+	    cmocka_unit_test(bytes_behind_the_end_are_caught),
+	};
+	return cmocka_run_group_tests_name("seal: PDF", tests, set_up, tear_down);
+}
