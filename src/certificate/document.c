@@ -8,7 +8,8 @@
  *   - a Type 0 font with Identity-H, whose codes are the numbers of the subset's glyphs, each code one code point
  *   - ToUnicode from the code points themselves, so that text copied out is the text put in
  *   - XMP that says the same as the information dictionary; an sRGB output intent; /ID from the sheet's fingerprint
- * Errors of libharu stick in its document and are looked at once, at the end. */
+ * Errors of libharu stick in its document and are looked at once, at the end. Where it runs out of memory it goes on
+ * with what it has already freed; so its memory comes from an arena, which gives nothing back before the end. */
 #include "press.h"
 
 #include <hpdf.h>
@@ -51,9 +52,7 @@ static HPDF_Dict add_dict(HPDF_Doc pdf, const char *type) {
 
 static HPDF_Array add_array(HPDF_Doc pdf, HPDF_Dict owner, const char *key) {
 	HPDF_Array array = HPDF_Array_New(pdf->mmgr);
-	if (array)
-		HPDF_Dict_Add(owner, key, array);
-	return array;
+	return array && HPDF_Dict_Add(owner, key, array) == HPDF_OK ? array : NULL; /* what can't be added is freed */
 }
 
 /* ---- fonts ----------------------------------------------------------------- */
@@ -142,7 +141,8 @@ static void add_widths(HPDF_Doc pdf, HPDF_Dict font, const fl_typeface *type) {
 	if (!outer || !inner)
 		return;
 	HPDF_Array_AddNumber(outer, 0);
-	HPDF_Array_Add(outer, inner);
+	if (HPDF_Array_Add(outer, inner) != HPDF_OK)
+		return;
 	for (size_t i = 0; i < type->count; i++)
 		HPDF_Array_AddReal(inner, (HPDF_REAL)fl_face_advance(&type->face, type->glyphs[i]));
 }
@@ -390,13 +390,27 @@ static fl_status take_bytes(HPDF_Doc pdf, unsigned char **bytes, size_t *length,
 	return FL_OK;
 }
 
+/* The arena of the document that this thread is writing: libharu hands its callbacks nothing by which to find it. Set
+ * only inside fl_press_bytes. */
+static _Thread_local fl_arena *document_memory;
+
+static void *get_memory(HPDF_UINT size) {
+	return fl_arena_alloc(document_memory, 1, size);
+}
+
+static void give_back(void *memory) {
+	(void)memory; /* with the arena, at the end */
+}
+
 fl_status fl_press_bytes(fl_press *press, unsigned char **bytes, size_t *length, fl_error *err) {
-	HPDF_Doc pdf = HPDF_New(NULL, NULL);
-	if (!pdf)
-		return fl_fail(err, FL_E_MEMORY, "out of memory while writing the certificate");
-	fl_status status = build(pdf, press, err);
+	fl_arena memory = {0};
+	document_memory = &memory;
+	HPDF_Doc pdf = HPDF_NewEx(NULL, get_memory, give_back, 0, NULL);
+	fl_status status =
+	    pdf ? build(pdf, press, err) : fl_fail(err, FL_E_MEMORY, "out of memory while writing the certificate");
 	if (status == FL_OK)
 		status = take_bytes(pdf, bytes, length, err);
-	HPDF_Free(pdf);
+	fl_arena_free(&memory); /* the document too: nothing in it is held elsewhere */
+	document_memory = NULL;
 	return status;
 }
