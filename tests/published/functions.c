@@ -525,5 +525,5 @@ const published_function *find_function(const char *name) {
 	for (size_t i = 0; i < sizeof functions / sizeof *functions; i++)
 		if (strcmp(functions[i].name, name) == 0)
 			return &functions[i];
-	return NULL;
+	return find_uncertainty_function(name);
 }

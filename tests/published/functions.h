@@ -23,5 +23,7 @@ typedef struct published_function {
 
 /* NULL if there is none of that name. */
 const published_function *find_function(const char *name);
+/* Those of functions_uncertainty.c. */
+const published_function *find_uncertainty_function(const char *name);
 
 #endif
