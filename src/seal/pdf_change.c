@@ -110,6 +110,8 @@ static fl_status check_form(fl_change *change) {
 		return status;
 	const fl_pdf_value *fields = fl_pdf_get(&form.body, "Fields");
 	const fl_pdf_value *fields_before = change->form ? fl_pdf_get(&form_before.body, "Fields") : NULL;
+	if (fields && fields_before && fl_pdf_equal(fields, fields_before))
+		return fl_fail(change->pdf->err, FL_E_TAMPERED, "it brings no signature");
 	if ((change->form && (!fields_before || !equal_but(&form_before.body, &form.body, "Fields"))) ||
 	    (!change->form && form.body.count != 4) || !fields || !one_more(fields_before, fields, &change->widget) ||
 	    !fl_pdf_get(&form.body, "SigFlags"))
