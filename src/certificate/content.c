@@ -104,6 +104,8 @@ static void write_all(fl_writing *w) {
 	fl_write_close(w);
 }
 
+#define MOST_IN_NUMBER 40
+
 /* A certificate without these would not be one. */
 static fl_status check_issue(const fl_issue *issue, const fl_stock *stock, fl_error *err) {
 	fl_place number = {.field = "number"}, issued = {.field = "issued on"};
@@ -111,6 +113,10 @@ static fl_status check_issue(const fl_issue *issue, const fl_stock *stock, fl_er
 		return fl_fail_at(err, FL_E_VALUE, number, "a certificate needs its unique number");
 	if (fl_text_has_control(issue->number))
 		return fl_fail_at(err, FL_E_VALUE, number, "the number holds a control character; write it without");
+	if (!fl_utf8_valid(issue->number, strlen(issue->number)) || fl_utf8_columns(issue->number) > MOST_IN_NUMBER)
+		return fl_fail_at(err, FL_E_VALUE, number,
+		                  "a certificate's number has at most %d characters, so that it fits on every page",
+		                  MOST_IN_NUMBER);
 	if (issue->issued_on == FL_NO_DAY)
 		return fl_fail_at(err, FL_E_VALUE, issued, "a certificate needs its date of issue");
 	if (stock->instrument_count == 0)

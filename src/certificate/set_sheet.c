@@ -298,7 +298,7 @@ static void set_masthead(fl_press *press) {
 		y -= set_lines_at(press, address, sheet->issuer_lines[i], FL_LEFT, y, width);
 	fl_ink_words_right(press, FL_REGULAR, LABEL_SIZE, FL_SOFT, FL_RIGHT, right - 9.4, sheet->number_label);
 	double number = fl_press_width(press, FL_BOLD, 11.5, sheet->number, strlen(sheet->number));
-	double size = fmin(11.5, 11.5 * 0.4 * FL_MEASURE / fmax(number, 1));
+	double size = fmin(11.5, floor(1150 * 0.4 * FL_MEASURE / fmax(number, 1)) / 100); /* as the page will state it */
 	fl_ink_words_right(press, FL_BOLD, size, FL_BLACK, FL_RIGHT, right - 23.5, sheet->number);
 	y = fmin(y, right - 26) - 12;
 	fl_ink_words(press, FL_BOLD, 21, FL_BLACK, FL_LEFT, y - 21, sheet->title);
@@ -311,6 +311,18 @@ static void set_masthead(fl_press *press) {
 	press->y = y - 17;
 }
 
+/* One line of small type, cut short with an ellipsis where it is too long: it repeats what page 1 says in full. */
+static void set_running(fl_press *press, const char *text, double y) {
+	fl_line_of_text *lines;
+	size_t count = fl_press_lines(press, FL_REGULAR, SMALL, text, FL_MEASURE - 10, 0, &lines);
+	if (count == 0)
+		return;
+	fl_ink_text(press, FL_REGULAR, SMALL, FL_SOFT, FL_LEFT, y, lines[0].start, lines[0].length);
+	if (count > 1)
+		fl_ink_words(press, FL_REGULAR, SMALL, FL_SOFT,
+		             FL_LEFT + fl_press_width(press, FL_REGULAR, SMALL, lines[0].start, lines[0].length), y, "…");
+}
+
 /* Mark, running head and foot of the page under way, which is page `page` of `count`. */
 static void set_margins(fl_press *press, size_t page, size_t count) {
 	const fl_sheet *sheet = press->sheet;
@@ -318,7 +330,7 @@ static void set_margins(fl_press *press, size_t page, size_t count) {
 	snprintf(place, sizeof place, "page %zu of %zu", page, count);
 	double head = FL_PAGE_HEIGHT - 38, foot = 34;
 	if (page > 1) {
-		fl_ink_words(press, FL_REGULAR, SMALL, FL_SOFT, FL_LEFT, head, sheet->running);
+		set_running(press, sheet->running, head);
 		fl_ink_line(press, FL_LEFT, head - 5, FL_RIGHT, head - 5, 0.35, FL_RULE);
 	}
 	if (*sheet->mark) {

@@ -8,7 +8,8 @@
 
 #define LEAST_GAP 5.0
 #define WIDEST_GAP 22.0
-#define PAD 2.2 /* above and below the text of a row */
+#define PAD 2.2       /* above and below the text of a head; half of it for a row */
+#define GROUP_GAP 1.6 /* more room above the first row of a group */
 
 typedef struct fl_track {
 	double x, width;    /* where the column stands */
@@ -218,7 +219,7 @@ static double break_row(const fl_table_plan *plan, const fl_row *row, fl_cell_li
 		cells[c].count = fl_press_lines(plan->press, FL_REGULAR, plan->size, row->cells[c], room, 0, &cells[c].lines);
 		most = cells[c].count > most ? cells[c].count : most;
 	}
-	return (double)most * plan->leading + (row->kind == FL_ROW_FIRST ? PAD : PAD / 2);
+	return (double)most * plan->leading + PAD / 2 + (row->kind == FL_ROW_FIRST ? GROUP_GAP : 0);
 }
 
 static void set_cell(const fl_table_plan *plan, size_t c, const fl_row *row, const fl_cell_lines *cell,
@@ -242,7 +243,7 @@ static void set_row(fl_table_plan *plan, const fl_row *row, const fl_cell_lines 
 	fl_press *press = plan->press;
 	if (ruled)
 		fl_ink_line(press, FL_LEFT, press->y, FL_RIGHT, press->y, 0.25, FL_FAINT);
-	double above = row->kind == FL_ROW_FIRST ? PAD / 2 : PAD / 4;
+	double above = PAD / 4 + (row->kind == FL_ROW_FIRST ? GROUP_GAP : 0);
 	double baseline = press->y - above - plan->size * 1.08;
 	for (size_t c = 0; c < plan->block->column_count; c++)
 		set_cell(plan, c, row, &cells[c], baseline);

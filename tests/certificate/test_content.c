@@ -240,6 +240,9 @@ static void test_issue_without_number_is_refused(void **state) {
 	fl_sheet *sheet = NULL;
 	sample_make(&one, &left_alone);
 	sample_assess(&one);
+	one.issue.number = "12345678901234567890123456789012345678901";
+	assert_int_equal(FL_E_VALUE, fl_certificate_content(&one.session, &one.procedure, &one.stock, &one.result,
+	                                                    &one.issue, &sheet, NULL));
 	one.issue.number = "";
 	assert_int_equal(FL_E_VALUE, fl_certificate_content(&one.session, &one.procedure, &one.stock, &one.result,
 	                                                    &one.issue, &sheet, &err));

@@ -184,7 +184,7 @@ static void test_long_names_are_broken_not_lost(void **state) {
 /* ---- what stands on a page: every text of a press's first page, decoded ---- */
 
 typedef struct set_text {
-	double x, y;
+	double x, y, right;
 	char text[128];
 } set_text;
 
@@ -209,8 +209,9 @@ static void load_press(fl_press *press, fl_sheet *sheet, fl_error *err) {
 static size_t read_page(const fl_press *press, const char *page, set_text *out, size_t most) {
 	size_t n = 0;
 	int font = 1;
+	double size = 0;
 	for (const char *line = page; *line && n < most; line = strchr(line, '\n') + 1) {
-		sscanf(line, "/F%d ", &font);
+		sscanf(line, "/F%d %lf Tf", &font, &size);
 		double x, y;
 		if (sscanf(line, "%lf %lf Td", &x, &y) == 2 && strncmp(strchr(line, '\n') - 2, "Td", 2) == 0) {
 			out[n].x = x;
@@ -219,10 +220,13 @@ static size_t read_page(const fl_press *press, const char *page, set_text *out, 
 		if (line[0] != '<')
 			continue;
 		size_t length = 0;
+		out[n].right = out[n].x;
 		for (const char *code = line + 1; *code != '>' && length + 1 < sizeof out[n].text; code += 4) {
 			unsigned number;
 			assert_int_equal(1, sscanf(code, "%4x", &number));
-			unsigned point = press->faces[font - 1].points[number];
+			const fl_typeface *type = &press->faces[font - 1];
+			unsigned point = type->points[number];
+			out[n].right += fl_face_advance(&type->face, type->glyphs[number]) * size / 1000;
 			out[n].text[length++] = point < 0x80 ? (char)point : '~'; /* '~' for anything else: columns only */
 		}
 		out[n++].text[length] = '\0';
@@ -290,6 +294,44 @@ static void test_heads_stand_again_overleaf(void **state) {
 	assert_int_equal(150, rows);
 	fl_arena_free(&press.arena);
 	fl_sheet_free(sheet);
+}
+
+/* Whatever the names, nothing leaves the margins. */
+static void test_all_stays_within_the_margins(void **state) {
+	(void)state;
+	static char name[361];
+	for (int i = 0; i < 360; i += 12)
+		memcpy(name + i, i % 36 == 0 ? "Quillhavener" : "unbrokenword", 12);
+	const sample_wish wish = {
+	    .gain = 0.03, .decision = FL_DECISION_ADJUST, .struck = 9, .remarks = 3, .customer = name, .performer = name};
+	sample_case one;
+	fl_error err = {0};
+	fl_press press;
+	sample_make(&one, &wish);
+	sample_assess(&one);
+	one.issue.issuer = one.issue.issuer_address = name;
+	one.issue.authorised_by = name;
+	one.issue.journal_name = name;
+	one.issue.number = "WWWWWWWWWWWWWWWWWWWWWWWWWWWWWWWWWWWWWWWW";
+	one.session.adjustments[0].item = name;
+	fl_sheet *sheet = sample_sheet(&one);
+	load_press(&press, sheet, &err);
+	press.page_count = 0;
+	fl_set_sheet(&press);
+	assert_int_equal(FL_OK, press.status);
+	for (size_t page = 0; page < press.page_count; page++) {
+		static set_text texts[3000];
+		size_t n = read_page(&press, press.pages[page].data, texts, 3000);
+		for (size_t i = 0; i < n; i++)
+			if (texts[i].x < FL_LEFT - 0.1 || texts[i].right > FL_RIGHT + 0.1 || texts[i].y < 30 ||
+			    texts[i].y > FL_PAGE_HEIGHT - 20)
+				fail_msg("page %zu: \"%s\" stands at %.1f to %.1f, %.1f", page + 1, texts[i].text, texts[i].x,
+				         texts[i].right, texts[i].y);
+		fl_text_free(&press.pages[page]);
+	}
+	fl_arena_free(&press.arena);
+	fl_sheet_free(sheet);
+	sample_free(&one);
 }
 
 static void test_tabular_figures(void **state) {
@@ -391,6 +433,7 @@ int main(void) {
 	    cmocka_unit_test(test_long_names_are_broken_not_lost),
 	    cmocka_unit_test(test_numbers_stand_on_their_decimal_point),
 	    cmocka_unit_test(test_heads_stand_again_overleaf),
+	    cmocka_unit_test(test_all_stays_within_the_margins),
 	    cmocka_unit_test(test_tabular_figures),
 	    cmocka_unit_test(test_every_failing_file_call_is_told),
 	    cmocka_unit_test(test_missing_faces_are_told),
