@@ -15,7 +15,7 @@ endforeach()
 
 set(FOUNDLEFT_FACES ${CMAKE_BINARY_DIR}/share/foundleft/faces)
 set(face_files ${FOUNDLEFT_FACES}/regular.ttf ${FOUNDLEFT_FACES}/bold.ttf ${FOUNDLEFT_FACES}/coverage.txt
-               ${FOUNDLEFT_FACES}/srgb.icc)
+               ${FOUNDLEFT_FACES}/srgb.icc ${FOUNDLEFT_FACES}/NOTICE)
 add_custom_command(
 	OUTPUT ${face_files}
 	COMMAND ${FOUNDLEFT_PYTHON} ${PROJECT_SOURCE_DIR}/cmake/faces.py ${face_sources} ${FOUNDLEFT_FACES}

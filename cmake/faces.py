@@ -53,6 +53,14 @@ def write_coverage(path, covered):
             previous = point
 
 
+NOTICE = """regular.ttf and bold.ttf are parts of Open Sans Regular and Open Sans Semibold, made by Steve Matteson for Ascender
+Corp., Digitized data copyright Google Corporation, under the Apache License, Version 2.0
+(http://www.apache.org/licenses/LICENSE-2.0). Changed: only Latin, Greek, Cyrillic and signs are kept; hinting and layout
+tables are left out.
+srgb.icc comes unchanged from ICC Profiles Free, under the zlib licence.
+"""
+
+
 def main():
     regular, bold, profile, folder = sys.argv[1:5]
     os.makedirs(folder, exist_ok=True)
@@ -62,6 +70,8 @@ def main():
     if missing:
         sys.exit(f"faces.py: {regular} lacks {' '.join(missing)}; install fonts-open-sans")
     write_coverage(os.path.join(folder, "coverage.txt"), covered)
+    with open(os.path.join(folder, "NOTICE"), "w", encoding="ascii") as out:
+        out.write(NOTICE)
     shutil.copyfile(profile, os.path.join(folder, "srgb.icc"))
 
 

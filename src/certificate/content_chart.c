@@ -124,11 +124,11 @@ static void explain(fl_writing *w, fl_chart *chart, const fl_run_result *found, 
 		explain_run(w, chart, found, w->procedure->falling);
 	if (left)
 		explain_run(w, chart, left, w->procedure->falling);
-	fl_chart_legend(w->sheet, chart, (fl_legend){.text = "expanded uncertainty U", .kind = FL_LEGEND_BAR});
+	fl_chart_legend(w->sheet, chart, (fl_legend){.text = "expanded uncertainty", .kind = FL_LEGEND_BAR});
 	if (chart->edge_count > 1) {
 		fl_chart_legend(w->sheet, chart, (fl_legend){.text = "tolerance", .kind = FL_LEGEND_BAND});
 		if (!isnan(chart->edges[0].inner))
-			fl_chart_legend(w->sheet, chart, (fl_legend){.text = "guard band, U wide", .kind = FL_LEGEND_GUARD});
+			fl_chart_legend(w->sheet, chart, (fl_legend){.text = "guard band", .kind = FL_LEGEND_GUARD});
 	}
 	if (any_struck(found) || any_struck(left))
 		fl_chart_legend(w->sheet, chart,

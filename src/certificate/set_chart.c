@@ -149,7 +149,7 @@ static void draw_axes(const fl_frame *frame) {
 		fl_ink_words(press, FL_REGULAR, SIZE, FL_BLACK, x - width / 2, frame->bottom - 11, number);
 	}
 	fl_ink_line(press, frame->left, frame->bottom, frame->right, frame->bottom, 0.4, FL_BLACK);
-	fl_ink_words(press, FL_REGULAR, SIZE, FL_SOFT, FL_LEFT, frame->top + 6, frame->chart->y_label);
+	fl_ink_words(press, FL_REGULAR, SIZE, FL_SOFT, FL_LEFT, frame->top + 9, frame->chart->y_label);
 	fl_ink_words_right(press, FL_REGULAR, SIZE, FL_SOFT, frame->right, frame->bottom - 21, frame->chart->x_label);
 }
 
@@ -267,7 +267,7 @@ void fl_set_chart(fl_press *press, const fl_chart *chart) {
 	                  .chart = chart,
 	                  .left = FL_LEFT + LABELS,
 	                  .right = FL_RIGHT - 4,
-	                  .top = press->y - 16,
+	                  .top = press->y - 19,
 	                  .bottom = press->y - HEIGHT + 28};
 	if (!(chart->x_high > chart->x_low)) {
 		press->status = fl_fail(press->err, FL_E_INTERNAL, "the chart's scale is empty");
