@@ -16,13 +16,14 @@ static fl_status copy_pages(fl_store *store, sqlite3 *to, const fl_store_watch *
 		return fl_fail(err, FL_E_IO, "the copy can't be begun: %s", sqlite3_errmsg(to));
 	int code = SQLITE_OK;
 	bool stopped = false;
-	while ((code == SQLITE_OK || code == SQLITE_BUSY || code == SQLITE_LOCKED) && !stopped) {
-		code = sqlite3_backup_step(backup, PAGES_AT_ONCE);
+	while (code == SQLITE_OK || code == SQLITE_BUSY || code == SQLITE_LOCKED) {
 		uint64_t total = (uint64_t)sqlite3_backup_pagecount(backup);
 		uint64_t left = (uint64_t)sqlite3_backup_remaining(backup);
-		if (code == SQLITE_OK && watch)
-			stopped = !watch->go_on(watch->self, total - left, total);
-		else if (code == SQLITE_BUSY || code == SQLITE_LOCKED)
+		stopped = watch && !watch->go_on(watch->self, total - left, total);
+		if (stopped)
+			break;
+		code = sqlite3_backup_step(backup, PAGES_AT_ONCE);
+		if (code == SQLITE_BUSY || code == SQLITE_LOCKED)
 			sqlite3_sleep(20);
 	}
 	sqlite3_backup_finish(backup);

@@ -18,10 +18,10 @@ fl_status fl_sql_memory(fl_error *err) {
 	return fl_fail(err, FL_E_MEMORY, "out of memory for the record book");
 }
 
-/* A write that failed for want of room may come as an ordinary input/output error (a quota, a limit of file size). */
+/* A write that failed for want of room may come as an ordinary input/output error (a quota, a limit of file size);
+ * then only errno tells, which fl_sql_step cleared before. */
 static bool is_full(sqlite3 *db) {
-	int code = sqlite3_errcode(db) & 0xff;
-	int system = sqlite3_system_errno(db);
+	int system = errno, code = sqlite3_errcode(db) & 0xff;
 	return code == SQLITE_FULL || (code == SQLITE_IOERR && (system == ENOSPC || system == EFBIG || system == EDQUOT));
 }
 
@@ -110,6 +110,7 @@ void fl_sql_bind(sqlite3_stmt *statement, const char *format, ...) {
 }
 
 fl_status fl_sql_step(fl_store *store, sqlite3_stmt *statement, bool *row, fl_error *err) {
+	errno = 0;
 	int code = sqlite3_step(statement);
 	*row = code == SQLITE_ROW;
 	if (*row)
@@ -136,6 +137,7 @@ fl_status fl_sql_run(fl_store *store, sql_name name, fl_error *err, const char *
 }
 
 fl_status fl_sql_text(fl_store *store, const char *text, fl_error *err) {
+	errno = 0;
 	return sqlite3_exec(store->db, text, NULL, NULL, NULL) == SQLITE_OK ? FL_OK : fl_sql_fail(store, err);
 }
 
