@@ -29,7 +29,7 @@ static void test_content_without_memory(void **state) {
 	sample_free(&one);
 }
 
-/* The requests of libharu are many: all of the first thousand, then a stride. */
+/* Those of libharu included: it asks through the same calls. */
 static void test_pdf_without_memory(void **state) {
 	(void)state;
 	const sample_wish wish = {.template_name = "transmitter-alone", .gain = 0.004, .decision = FL_DECISION_LEAVE};
