@@ -137,9 +137,15 @@ double fl_from_inside(double inside, fl_unit unit) {
 	return known(unit) ? (inside - units[unit].offset) / units[unit].factor : inside;
 }
 
+/* Letters, digits and most marks of ASCII are plain already. */
+static bool is_plain(char letter) {
+	return (unsigned char)letter < 0x80 && letter != '^' && letter != '*' && letter != '\t';
+}
+
 /* One character of text in its plain writing; moves *text behind it. */
 static const char *next_plain(const char **text, char single[5]) {
-	for (size_t i = 0; i < sizeof plain_writing / sizeof plain_writing[0]; i++) {
+	size_t count = is_plain(**text) ? 0 : sizeof plain_writing / sizeof plain_writing[0];
+	for (size_t i = 0; i < count; i++) {
 		size_t length = strlen(plain_writing[i].text);
 		if (strncmp(*text, plain_writing[i].text, length) == 0) {
 			*text += length;

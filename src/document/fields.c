@@ -323,15 +323,22 @@ static fl_status check_quantity(const fl_node *scalar, const char *written, fl_q
 	                  unit_words(unit), quantity_words(quantity), units);
 }
 
-static fl_status find_measure(const fl_node *map, const char *key, bool required, fl_quantity quantity,
-                              const fl_node **scalar, double *value, fl_unit *unit, fl_error *err) {
+/* The sentence for a value that is not there: what would be right, with its units. */
+static fl_status refuse_absent(const fl_node *map, const char *key, fl_quantity quantity, fl_error *err) {
+	const fl_node *scalar;
 	char units[LIST_SIZE], needed[LIST_SIZE + NAME_SIZE];
 	fl_document_units(quantity, units, sizeof units);
 	snprintf(needed, sizeof needed, "%s%s%s", quantity_words(quantity), units[0] ? " in " : "", units);
-	fl_status status = find_scalar(map, key, required, needed, scalar, err);
-	if (status != FL_OK || !*scalar)
-		return status;
-	status = measure(*scalar, quantity, value, unit, err);
+	return find_scalar(map, key, true, needed, &scalar, err);
+}
+
+static fl_status find_measure(const fl_node *map, const char *key, bool required, fl_quantity quantity,
+                              const fl_node **scalar, double *value, fl_unit *unit, fl_error *err) {
+	if (find_scalar(map, key, required, "", scalar, NULL) != FL_OK)
+		return refuse_absent(map, key, quantity, err);
+	if (!*scalar)
+		return FL_OK;
+	fl_status status = measure(*scalar, quantity, value, unit, err);
 	return status == FL_OK ? check_quantity(*scalar, (*scalar)->text, quantity, *unit, err) : status;
 }
 
