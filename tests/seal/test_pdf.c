@@ -286,19 +286,20 @@ static size_t last_of(const fl_text *text, const char *word) {
 	return found;
 }
 
-/* Makes the last signature anew over the file as it is: what a signer can do who wants to deceive. */
-static void sign_anew(fl_text *file, const fl_signer *signer) {
+/* Makes the last signature anew over the file as it is, but for `gap` bytes behind the signature: what a signer can do
+ * who wants to deceive. */
+static void sign_anew(fl_text *file, const fl_signer *signer, size_t gap, bool with_time) {
 	size_t open = last_of(file, "/Contents <") + 10, range = last_of(file, "/ByteRange [") + 12, close = open;
 	while (file->data[close] != '>')
 		close++;
 	close++;
 	char numbers[44];
-	int used = snprintf(numbers, sizeof numbers, "0 %zu %zu %zu", open, close, file->length - close);
+	int used = snprintf(numbers, sizeof numbers, "0 %zu %zu %zu", open, close + gap, file->length - close - gap);
 	memset(file->data + range, ' ', 42);
 	memcpy(file->data + range, numbers, (size_t)used);
 	unsigned char digest[FL_SHA256_SIZE];
-	fl_pieces pieces = {file->data, open, file->data + close, file->length - close};
-	fl_cms_signing how = {.at = NOW};
+	fl_pieces pieces = {file->data, open, file->data + close + gap, file->length - close - gap};
+	fl_cms_signing how = {.at = NOW, .with_time = with_time};
 	fl_text cms = {0};
 	assert_true(fl_pieces_digest(&pieces, digest));
 	must(fl_cms_sign(signer, digest, &how, &cms, err));
@@ -327,7 +328,7 @@ static fl_text smuggled(const scene *it, const char *header, const char *object)
 		fl_text_printf(&out, "99 1\n%010zu 00000 n \n", at);
 	fl_text_append(&out, whole.data + trailer, start - trailer);
 	fl_text_printf(&out, "startxref\n%zu\n%%%%EOF\n", moved);
-	sign_anew(&out, it->bea);
+	sign_anew(&out, it->bea, 0, false);
 	return out;
 }
 
@@ -348,6 +349,68 @@ static void content_replaced_by_the_second_signer_is_found(void **state) {
 	assert_false(report.signatures[0].fits);
 	fl_text_free(&harmless);
 	fl_text_free(&forged);
+	fl_arena_free(&arena);
+}
+
+/* Signatures that are valid over what they say they cover, but not of the shape that leaves nothing uncovered. */
+static void valid_signatures_of_another_shape_are_found(void **state) {
+	scene *it = *state;
+	const struct {
+		size_t gap;
+		bool with_time;
+		const char *what, *words;
+	} cases[] = {{0, false, NULL, NULL},
+	             {3, false, "byte range", "leaves bytes out"},
+	             {0, true, "contents", "a time of its own"}};
+	for (size_t i = 0; i < sizeof cases / sizeof *cases; i++) {
+		fl_arena arena = {0};
+		fl_seal_report report;
+		fl_text file = {0};
+		fl_text_append(&file, (const char *)it->twice, it->twice_length);
+		sign_anew(&file, it->bea, cases[i].gap, cases[i].with_time);
+		int verdict = verdict_of((unsigned char *)file.data, file.length, it->trust, NOW, &arena, &report, NULL);
+		assert_int_equal(verdict, cases[i].what ? FL_SEAL_BROKEN : FL_SEAL_GOOD);
+		if (cases[i].what)
+			assert_true(reports(&report, FL_CHECK_BAD, cases[i].what, cases[i].words));
+		fl_text_free(&file);
+		fl_arena_free(&arena);
+	}
+}
+
+/* The second signature made anew by the first signer: valid, but worth nothing. */
+static void one_person_twice_is_found(void **state) {
+	scene *it = *state;
+	fl_arena arena = {0};
+	fl_seal_report report;
+	fl_text file = {0};
+	fl_text_append(&file, (const char *)it->twice, it->twice_length);
+	char *name = memmem(file.data + it->once_length, file.length - it->once_length, "/Name (Bea Holm) ", 17);
+	assert_non_null(name);
+	memcpy(name, "/Name(Ann Marlow)", 17);
+	sign_anew(&file, it->ann, 0, false);
+	assert_int_equal(verdict_of((unsigned char *)file.data, file.length, it->trust, NOW, &arena, &report, NULL),
+	                 FL_SEAL_UNTRUSTED);
+	assert_true(reports(&report, FL_CHECK_BAD, "two people", "same person"));
+	fl_text_free(&file);
+	fl_arena_free(&arena);
+}
+
+static void an_authority_that_had_expired_vouches_for_nobody(void **state) {
+	scene *it = *state;
+	fl_arena arena = {0};
+	fl_seal_report report;
+	authority old = new_authority("Old Root", NULL, NOW - 100 * DAY, 50);
+	fl_signer *eve = new_person(FL_KEY_P256, "Eve Strand", NULL, &old, NOW - 60 * DAY, 300);
+	fl_trust *trust = trust_in(&old);
+	unsigned char *out;
+	size_t length;
+	sign(it, (unsigned char *)it->plain.data, it->plain.length, eve, "performed", 40, ann_text, 1, &out, &length);
+	assert_int_equal(verdict_of(out, length, trust, NOW, &arena, &report, NULL), FL_SEAL_UNTRUSTED);
+	assert_true(reports(&report, FL_CHECK_BAD, "authority", "not valid at the time of signing"));
+	free(out);
+	fl_trust_free(trust);
+	fl_signer_free(eve);
+	free_authority(&old);
 	fl_arena_free(&arena);
 }
 
@@ -434,6 +497,9 @@ int main(void) {
 	    cmocka_unit_test(text_that_cannot_be_shown_is_refused),
 	    cmocka_unit_test(what_was_added_after_signing_is_found),
 	    cmocka_unit_test(content_replaced_by_the_second_signer_is_found),
+	    cmocka_unit_test(valid_signatures_of_another_shape_are_found),
+	    cmocka_unit_test(one_person_twice_is_found),
+	    cmocka_unit_test(an_authority_that_had_expired_vouches_for_nobody),
 	    cmocka_unit_test(every_byte_counts),
 	    cmocka_unit_test(every_cut_is_caught),
 	    cmocka_unit_test(bytes_behind_the_end_are_caught),
