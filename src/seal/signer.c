@@ -139,7 +139,7 @@ static void take_bio(BIO *bio, fl_text *out) {
 }
 
 fl_status fl_signer_request(const fl_signer *signer, const fl_person *person, fl_text *pem, fl_error *err) {
-	X509_NAME *name;
+	X509_NAME *name = NULL;
 	fl_status status = new_name(person, &name, err);
 	if (status != FL_OK)
 		return status;
@@ -179,7 +179,7 @@ static bool fill_certificate(X509 *certificate, EVP_PKEY *key, X509_NAME *name, 
 fl_status fl_signer_self_sign(fl_signer *signer, const fl_person *person, fl_utc from, int days, fl_error *err) {
 	if (days < 1 || days > DAYS_MOST)
 		return fl_fail(err, FL_E_RANGE, "a certificate is made for 1 to %d days, not %d", DAYS_MOST, days);
-	X509_NAME *name;
+	X509_NAME *name = NULL;
 	fl_status status = new_name(person, &name, err);
 	if (status != FL_OK)
 		return status;
