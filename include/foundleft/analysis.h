@@ -13,6 +13,7 @@
 #include "foundleft/numeric.h"
 #include "foundleft/physics.h"
 #include "foundleft/procedure.h"
+#include "foundleft/reference.h"
 #include "foundleft/stock.h"
 
 typedef enum fl_verdict {
@@ -29,20 +30,6 @@ const char *fl_verdict_word(fl_verdict verdict);
  * decimal input that lies exactly on the limit passes. NaN, or no rule, gives FL_VERDICT_NONE.
  * ILAC-G8:09/2019, 4.2.1 to 4.2.3, w = U; by the guarded rule everything beyond T - U is a fail. */
 fl_verdict fl_analysis_decide(fl_rule rule, double error, double expanded, double tolerance);
-
-/* One reading brought to its reference. */
-typedef struct fl_reading_result {
-	const fl_reading *reading; /* borrowed from the session */
-	bool used;                 /* false: struck; its numbers are given all the same */
-	fl_oil_state oil;          /* oil at the corrected temperature; unused for zero and pressure */
-	double applied_pa;         /* corrected injected pressure; NAN for oil */
-	fl_ideal ideal;
-	double output;   /* corrected, in the signal's unit */
-	double output_x; /* fraction of span */
-	double error_span;
-	double error_dial;    /* dial units */
-	double error_reading; /* fraction of the ideal value above the lower range value; NAN where x <= 0.1 */
-} fl_reading_result;
 
 /* One line of an uncertainty budget. */
 typedef struct fl_budget_line {

@@ -98,7 +98,8 @@ static void add_equipment(budget *b, const fl_equipment *item, double per_inside
 }
 
 static double meter_per_inside(const work *w) {
-	return 100.0 / ((w->range->high - w->range->low) * scale_of(w->range->unit));
+	const fl_signal_range *range = w->reference.range;
+	return 100.0 / ((range->high - range->low) * scale_of(range->unit));
 }
 
 /* ---- the oil and its temperature ---- */
@@ -149,8 +150,8 @@ static void add_density(budget *b, const fl_oil *oil, const fl_oil_state *state,
 
 static void add_temperature(budget *b, const fl_oil_state *state, double g) {
 	double per_kelvin = 100.0 * g * (state->beta_per_k - state->drho_dt / state->rho_kg_m3);
-	add_equipment(b, b->w->thermometer, per_kelvin);
-	const fl_equipment *bath = b->w->bath;
+	add_equipment(b, b->w->reference.thermometer, per_kelvin);
+	const fl_equipment *bath = b->w->reference.bath;
 	if (!bath)
 		return;
 	double sensitivity = per_kelvin * scale_of(bath->unit);
@@ -210,15 +211,16 @@ static void add_extra(budget *b, const fl_extra_term *extra, double x) {
 /* Adds the terms of the reference; *reference_U is the reference's own expanded uncertainty, fraction of span. */
 static fl_status add_reference(budget *b, const fl_point_result *point, double *reference_U, fl_error *err) {
 	const work *w = b->w;
+	const fl_reference *by = &w->reference;
+	const fl_equipment *meter = by->meter, *standard = by->standard;
 	const fl_oil *oil = NULL;
-	*reference_U =
-	    w->meter && w->meter->k > 0.0 ? w->meter->U * scale_of(w->meter->unit) * meter_per_inside(w) / 100.0 : 0.0;
+	*reference_U = meter && meter->k > 0.0 ? meter->U * scale_of(meter->unit) * meter_per_inside(w) / 100.0 : 0.0;
 	if (point->point == FL_POINT_ZERO)
 		return FL_OK;
-	if (w->procedure->medium == FL_MEDIUM_PRESSURE) {
-		double per_pa = 100.0 * w->high_m2_s / (w->high_m2_s - w->low_m2_s) / w->result->dp_full_pa;
-		add_equipment(b, w->standard, per_pa);
-		*reference_U = w->standard ? w->standard->U * scale_of(w->standard->unit) * per_pa / 100.0 : 0.0;
+	if (by->medium == FL_MEDIUM_PRESSURE) {
+		double per_pa = 100.0 * by->high_m2_s / (by->high_m2_s - by->low_m2_s) / by->dp_full_pa;
+		add_equipment(b, standard, per_pa);
+		*reference_U = standard ? standard->U * scale_of(standard->unit) * per_pa / 100.0 : 0.0;
 		return FL_OK;
 	}
 	fl_status status = fl_analysis_oil(w, point->point, &oil, err);
@@ -227,7 +229,7 @@ static fl_status add_reference(budget *b, const fl_point_result *point, double *
 		status = fl_physics_oil_at(&oil->table, point->temp_c, &state, err);
 	if (status < 0)
 		return status;
-	double g = point->equivalent_m2_s / (w->high_m2_s - w->low_m2_s);
+	double g = point->equivalent_m2_s / (by->high_m2_s - by->low_m2_s);
 	add_oil(b, oil, &state, g);
 	add_temperature(b, &state, g);
 	add_density(b, oil, &state, g);
@@ -270,7 +272,7 @@ static fl_status take_budget(const work *w, const fl_run_result *run, fl_point_r
 	fl_status status = add_reference(&b, point, &reference_U, err);
 	if (status < 0)
 		return status;
-	add_equipment(&b, w->meter, meter_per_inside(w));
+	add_equipment(&b, w->reference.meter, meter_per_inside(w));
 	add_repeatability(&b, run, point);
 	if (point->both && point->point != FL_POINT_ZERO)
 		add_half_hysteresis(&b, hysteresis_span);

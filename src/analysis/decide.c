@@ -50,7 +50,7 @@ fl_verdict fl_analysis_decide(fl_rule rule, double error, double expanded, doubl
 
 /* Dial units to a fraction of span there; a dial in seconds is not divided evenly. NAN where it has no division. */
 static double dial_units_as_span(const work *w, double units, double x) {
-	const fl_scale *scale = &w->instrument->scale;
+	const fl_scale *scale = &w->reference.instrument->scale;
 	if (scale->dial_unit == FL_DIAL_MM2_S || scale->dial_unit == FL_DIAL_MPA_S)
 		return units / (scale->high - scale->low);
 	const double step = 1e-5; /* of span: far below any tolerance, far above rounding */
@@ -206,8 +206,8 @@ static void decide_run(const work *w, fl_run_result *run) {
 
 /* True if every point lies inside the adjust limit; false where none is stated. */
 static bool inside_adjust_limit(const work *w, const fl_run_result *run) {
-	const fl_band *limit =
-	    w->instrument->adjust_limit.basis == FL_BAND_NONE ? &w->procedure->adjust_limit : &w->instrument->adjust_limit;
+	const fl_band *own = &w->reference.instrument->adjust_limit;
+	const fl_band *limit = own->basis == FL_BAND_NONE ? &w->procedure->adjust_limit : own;
 	bool any = false;
 	for (size_t i = 0; i < run->point_count; i++) {
 		double half_width = band_at(w, limit, run->points[i].x);

@@ -23,7 +23,7 @@ static void warn_about_flow(work *w, const fl_point_result *point, const fl_flow
 	else if (flow->reynolds >= near_reynolds)
 		fl_analysis_say(w->arena, &w->warnings, "%s: Reynolds number %s, near the end of laminar flow (2000)", name,
 		                reynolds);
-	if (flow->entrance_m > entrance_share * w->instrument->capillary.length_m)
+	if (flow->entrance_m > entrance_share * w->reference.instrument->capillary.length_m)
 		fl_analysis_say(w->arena, &w->warnings, "%s: entrance length %s mm, more than a quarter of the capillary", name,
 		                fl_analysis_number(w->arena, round(flow->entrance_m * 1e3), 3));
 	if (flow->heating_k > noticeable_heating_k)
@@ -35,19 +35,19 @@ static fl_status take_flow(work *w, fl_point_result *point, fl_error *err) {
 	if (isnan(point->mu_pa_s))
 		return FL_OK;
 	fl_status status =
-	    fl_physics_capillary(&w->instrument->capillary, point->mu_pa_s, point->rho_kg_m3, &point->flow, err);
+	    fl_physics_capillary(&w->reference.instrument->capillary, point->mu_pa_s, point->rho_kg_m3, &point->flow, err);
 	if (status < 0)
 		return status;
 	point->has_flow = true;
-	if (w->result->dp_full_pa > 0.0)
-		point->kinetic_span = point->flow.dp_kinetic_pa / w->result->dp_full_pa;
+	if (w->reference.dp_full_pa > 0.0)
+		point->kinetic_span = point->flow.dp_kinetic_pa / w->reference.dp_full_pa;
 	return FL_OK;
 }
 
 /* The oils are the same in both directions: only the combined points warn, without naming a direction twice. */
 fl_status fl_analysis_flows(work *w, fl_run_result *run, fl_error *err) {
 	fl_status status = FL_OK;
-	if (!w->instrument->has_geometry || w->procedure->medium == FL_MEDIUM_PRESSURE)
+	if (!w->reference.instrument->has_geometry || w->procedure->medium == FL_MEDIUM_PRESSURE)
 		return FL_OK;
 	for (size_t i = 0; i < run->point_count && status >= 0; i++)
 		status = take_flow(w, &run->points[i], err);

@@ -27,7 +27,7 @@ static double line_position(const fl_run_result *run, const fl_point_result *com
 /* Where the scale begins well above zero viscosity, the output at rest is below the signal's measuring range and says
  * nothing about the instrument. */
 static bool has_place(const work *w, const fl_point_result *point) {
-	return point->point != FL_POINT_ZERO || point->ideal_output >= w->range->measuring_low;
+	return point->point != FL_POINT_ZERO || point->ideal_output >= w->reference.range->measuring_low;
 }
 
 static fl_status collect(const work *w, const fl_run_result *run, bool with_zero, places *out, fl_error *err) {

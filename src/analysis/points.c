@@ -36,7 +36,7 @@ static void divide(fl_point_result *sum, double n) {
 
 static double error_in_dial_units(const work *w, const fl_point_result *point) {
 	double shown = NAN;
-	if (fl_physics_dial_at(&w->instrument->scale, point->x + point->error_span, &shown, NULL) < 0)
+	if (fl_physics_dial_at(&w->reference.instrument->scale, point->x + point->error_span, &shown, NULL) < 0)
 		return NAN;
 	return shown - point->dial;
 }
@@ -62,7 +62,7 @@ static fl_status complete(const work *w, fl_point_result *point, fl_error *err) 
 	} else {
 		point->temp_c = NAN;
 	}
-	if (fl_physics_dial_at(&w->instrument->scale, point->x, &point->dial, NULL) < 0)
+	if (fl_physics_dial_at(&w->reference.instrument->scale, point->x, &point->dial, NULL) < 0)
 		point->dial = NAN;
 	point->error_dial = error_in_dial_units(w, point);
 	point->error_reading = point->x > FL_LOWEST_X_FOR_READING ? point->error_span / point->x : NAN;

@@ -9,11 +9,6 @@
 
 /* ---- the items in use ---- */
 
-static const fl_equipment *equipment_of(const work *w, fl_role role) {
-	const char *id = fl_session_equipment_id(w->session, role);
-	return id ? fl_stock_equipment(w->stock, id) : NULL;
-}
-
 static const fl_instrument *instrument_of(const fl_session *session, const fl_stock *stock) {
 	for (size_t i = 0; i < session->text_count; i++)
 		if (strcmp(session->texts[i].kind, "instrument") == 0 && fl_stock_instrument(stock, session->texts[i].name))
@@ -21,50 +16,18 @@ static const fl_instrument *instrument_of(const fl_session *session, const fl_st
 	return stock->instrument_count ? &stock->instruments[0] : NULL;
 }
 
-static fl_status check_quantity(const fl_equipment *item, fl_quantity quantity, fl_error *err) {
-	if (!item || fl_unit_quantity(item->unit) == quantity)
-		return FL_OK;
-	return fl_fail_at(err, FL_E_VALUE, item->place, "%s is stated in %s, which is no unit for a %s", item->id,
-	                  fl_unit_text(item->unit), fl_stock_role_text(item->role));
-}
-
-/* Thermometers and baths may be stated in °C or, as a difference, in K. */
-static fl_status check_thermal(const fl_equipment *item, fl_error *err) {
-	if (item && fl_unit_quantity(item->unit) == FL_Q_TEMPERATURE_DIFFERENCE)
-		return FL_OK;
-	return check_quantity(item, FL_Q_TEMPERATURE, err);
-}
-
-static fl_status find_equipment(work *w, fl_error *err) {
-	bool current = w->instrument->scale.signal == FL_SIGNAL_4_20_MA;
-	w->thermometer = equipment_of(w, FL_ROLE_THERMOMETER);
-	w->bath = equipment_of(w, FL_ROLE_BATH);
-	w->standard = equipment_of(w, FL_ROLE_PRESSURE_STANDARD);
-	w->meter = equipment_of(w, current ? FL_ROLE_CURRENT_METER : FL_ROLE_PRESSURE_GAUGE);
-	fl_status status = check_thermal(w->thermometer, err);
-	if (status >= 0)
-		status = check_thermal(w->bath, err);
-	if (status >= 0)
-		status = check_quantity(w->standard, FL_Q_PRESSURE, err);
-	if (status >= 0)
-		status = check_quantity(w->meter, current ? FL_Q_CURRENT : FL_Q_PRESSURE, err);
-	return status;
-}
-
 static fl_status find_items(work *w, fl_error *err) {
-	w->instrument = instrument_of(w->session, w->stock);
-	if (!w->instrument)
+	const fl_instrument *instrument = instrument_of(w->session, w->stock);
+	if (!instrument)
 		return fl_fail(err, FL_E_NOT_FOUND, "the session names no instrument");
-	w->range = fl_physics_signal_range(w->instrument->scale.signal);
-	fl_status status = fl_physics_scale_span(&w->instrument->scale, &w->low_m2_s, &w->high_m2_s, err);
-	return status < 0 ? status : find_equipment(w, err);
+	return fl_reference_of(w->session, w->procedure, w->stock, instrument, &w->reference, err);
 }
 
 /* ---- what the decision rests on ---- */
 
 static void take_terms(work *w) {
 	const fl_procedure *procedure = w->procedure;
-	const fl_instrument *instrument = w->instrument;
+	const fl_instrument *instrument = w->reference.instrument;
 	fl_result *result = w->result;
 	result->rule = procedure->rule;
 	result->tolerance_from_instrument = instrument->tolerance.basis != FL_BAND_NONE;
@@ -75,10 +38,7 @@ static void take_terms(work *w) {
 	result->deciding_linearity = procedure->deciding_linearity;
 	result->coverage_probability =
 	    procedure->coverage_probability > 0.0 ? procedure->coverage_probability : FL_COVERAGE_2_SIGMA;
-	result->dp_full_pa = instrument->dp_full_pa;
-	if (isnan(result->dp_full_pa) && instrument->has_geometry &&
-	    fl_stock_dp_full(instrument, &result->dp_full_pa, NULL) < 0)
-		result->dp_full_pa = NAN;
+	result->dp_full_pa = w->reference.dp_full_pa;
 }
 
 /* ---- a run ---- */

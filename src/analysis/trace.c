@@ -45,15 +45,16 @@ static void trace_equipment(work *w) {
 
 static void trace_missing(work *w) {
 	bool oils = w->procedure->medium == FL_MEDIUM_OIL;
-	if (!w->meter)
+	if (!w->reference.meter)
 		fl_analysis_say(w->arena, &w->not_traceable, "no %s is named: the output is taken as read",
-		                w->instrument->scale.signal == FL_SIGNAL_4_20_MA ? "current meter" : "pressure gauge");
-	if (oils && !w->thermometer)
+		                w->reference.instrument->scale.signal == FL_SIGNAL_4_20_MA ? "current meter"
+		                                                                           : "pressure gauge");
+	if (oils && !w->reference.thermometer)
 		fl_analysis_say(w->arena, &w->not_traceable, "no thermometer is named: the temperature is taken as read");
-	if (!oils && !w->standard)
+	if (!oils && !w->reference.standard)
 		fl_analysis_say(w->arena, &w->not_traceable,
 		                "no pressure standard is named: the injected pressure is taken as read");
-	if (oils && !w->bath)
+	if (oils && !w->reference.bath)
 		fl_analysis_say(
 		    w->arena, &w->warnings,
 		    "no bath is named: the uncertainty holds no part for the difference between bath and capillary");

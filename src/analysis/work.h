@@ -7,9 +7,6 @@
 
 #include "foundleft/analysis.h"
 
-/* Up to a tenth of span an error or a tolerance in % of reading says nothing (common practice, no source). */
-#define FL_LOWEST_X_FOR_READING 0.1
-
 /* Sentences without doubles. After memory ran out `failed` stays set, so that a caller checks once. */
 typedef struct sentences {
 	const char **items;
@@ -28,10 +25,7 @@ typedef struct work {
 	const fl_session *session;
 	const fl_procedure *procedure;
 	const fl_stock *stock;
-	const fl_instrument *instrument;
-	const fl_signal_range *range;
-	double low_m2_s, high_m2_s;                                /* the scale as equivalent viscosity */
-	const fl_equipment *thermometer, *bath, *meter, *standard; /* NULL where the session names none */
+	fl_reference reference; /* instrument, scale and equipment in use */
 	fl_result *result;
 	fl_arena *arena; /* the result's */
 	sentences warnings, not_traceable;
