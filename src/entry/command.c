@@ -146,9 +146,9 @@ static fl_run_kind current_run(const fl_session *s) {
 
 static void list_row(const fl_entry *entry, const fl_reading *r, fl_text *say) {
 	char name[160], error[40] = "-";
-	fl_verdict v;
-	if (!r->watched && fl_entry_judge(entry, r, &v, NULL) >= 0)
-		fl_decimal_format_signed(v.error_pct_span, 2, true, error, sizeof error);
+	fl_reading_result result;
+	if (!r->watched && fl_entry_judge(entry, r, &result, NULL) >= 0)
+		fl_decimal_format_signed(100.0 * result.error_span, 2, true, error, sizeof error);
 	fl_text_printf(say, "  [%d]", r->sequence);
 	fl_text_pad_to(say, 9);
 	fl_text_printf(say, "%d %s", r->cycle, fl_pass_word(r->pass));

@@ -9,6 +9,7 @@
 #define FOUNDLEFT_ENTRY_PRIVATE_H
 
 #include "foundleft/entry.h"
+#include "foundleft/reference.h"
 
 enum {
 	FL_LINE_SIZE = 4096,   /* longest line that is looked at, bytes */
@@ -145,21 +146,13 @@ fl_status fl_entry_draft_commit(fl_entry *entry, const char *answer, const char 
 /* What stands beside a committed reading: expected, error, corrections. */
 void fl_entry_tell_reading(const fl_entry *entry, const fl_reading *reading, fl_text *say);
 
-/* A reading against what the instrument should show. In the unit of the signal. */
-typedef struct fl_verdict {
-	double output; /* corrected by the meter's certificate */
-	double expected;
-	double error_pct_span;
-	double temp_c;  /* corrected */
-	bool corrected; /* any correction was not zero */
-} fl_verdict;
-fl_status fl_entry_judge(const fl_entry *entry, const fl_reading *reading, fl_verdict *out, fl_error *err) FL_MUST_USE;
-/* Full-scale differential pressure, NAN if it is not known. */
-double fl_entry_dp_full(const fl_entry *entry);
-
-/* The oil of a point and the item of a role, as the journal carries them; NULL if there is none. */
+/* What the readings are reduced with, as the journal carries it. */
+fl_status fl_entry_reference(const fl_entry *entry, fl_reference *out, fl_error *err) FL_MUST_USE;
+/* A reading against what the instrument should show. */
+fl_status fl_entry_judge(const fl_entry *entry, const fl_reading *reading, fl_reading_result *out,
+                         fl_error *err) FL_MUST_USE;
+/* The oil of a point, as the journal carries it; NULL if there is none. */
 const fl_oil *fl_entry_oil(const fl_entry *entry, int point);
-const fl_equipment *fl_entry_equipment(const fl_entry *entry, fl_role role);
 
 /* ---- settle.c
  * -------------------------------------------------------------------------------------------------------- */

@@ -141,6 +141,14 @@ static void ask_oil(const fl_entry *entry, const fl_step *step, fl_text *out) {
 	fl_text_add(out, "> ");
 }
 
+/* The pressure to inject at a point, NAN if it is not known. */
+static double pressure_at(const fl_entry *entry, int point) {
+	fl_reference reference;
+	if (fl_entry_reference(entry, &reference, NULL) < 0)
+		return NAN;
+	return fl_reference_pressure_at(&reference, entry->setup.procedure->points[point].position_pct_span / 100.0);
+}
+
 /* Heading of a place on the plan: shown once, when it is reached. */
 static void show_place(fl_entry *entry, const fl_step *step, fl_text *out) {
 	long place = (((long)step->run * 1000 + step->cycle) * 2 + (long)step->pass) * 1000 + step->point + 1;
@@ -151,10 +159,9 @@ static void show_place(fl_entry *entry, const fl_step *step, fl_text *out) {
 	entry->shown_place = place;
 	fl_text_printf(out, "\n  Cycle %d of %d, %s: %s", step->cycle, p->cycles, fl_pass_word(step->pass),
 	               fl_entry_point_name(entry, step->point, name, sizeof name));
-	double full = fl_entry_dp_full(entry);
-	if (p->medium == FL_MEDIUM_PRESSURE && !isnan(full))
-		fl_text_printf(out, ": apply %.2f mbar, coming from %s",
-		               full / 100.0 * p->points[step->point].position_pct_span / 100.0,
+	double dp_pa = p->medium == FL_MEDIUM_PRESSURE ? pressure_at(entry, step->point) : NAN;
+	if (!isnan(dp_pa))
+		fl_text_printf(out, ": apply %.2f mbar, coming from %s", dp_pa / 100.0,
 		               step->pass == FL_PASS_RISING ? "below" : "above");
 	else if (step->point == FL_POINT_ZERO)
 		fl_text_add(out, ": pump stopped, legs equalised and full");

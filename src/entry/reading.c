@@ -23,26 +23,8 @@ static bool wants_applied(const fl_entry *entry) {
 	return entry->setup.procedure->medium == FL_MEDIUM_PRESSURE;
 }
 
-const fl_equipment *fl_entry_equipment(const fl_entry *entry, fl_role role) {
-	const char *id = fl_session_equipment_id(entry->session, role);
-	return id ? fl_stock_equipment(&entry->used, id) : NULL;
-}
-
-/* Indication plus correction, for an item whose unit may differ from the reading's. */
-static double corrected(const fl_equipment *item, double value, fl_unit unit) {
-	if (!item || fl_unit_quantity(item->unit) != fl_unit_quantity(unit))
-		return value;
-	if (item->unit == unit)
-		return fl_stock_corrected(item, value);
-	double own = fl_from_inside(fl_to_inside(value, unit), item->unit);
-	return value + fl_from_inside(fl_to_inside(fl_stock_corrected(item, own), item->unit), unit) -
-	       fl_from_inside(fl_to_inside(own, item->unit), unit);
-}
-
-/* A thermometer's corrections are differences: °C whether its certificate is in °C or in K. */
-static double corrected_temp(const fl_entry *entry, double temp_c) {
-	const fl_equipment *item = fl_entry_equipment(entry, FL_ROLE_THERMOMETER);
-	return item && item->unit != FL_U_FAHRENHEIT ? fl_stock_corrected(item, temp_c) : temp_c;
+fl_status fl_entry_reference(const fl_entry *entry, fl_reference *out, fl_error *err) {
+	return fl_reference_of(entry->session, entry->setup.procedure, &entry->used, entry->setup.instrument, out, err);
 }
 
 /* ---- the line taken apart
@@ -106,14 +88,15 @@ fl_status fl_entry_draft_temperature(fl_entry *entry, const char *text, fl_error
 }
 
 static fl_unit applied_unit(const fl_entry *entry) {
-	const fl_equipment *standard = fl_entry_equipment(entry, FL_ROLE_PRESSURE_STANDARD);
-	return standard ? standard->unit : FL_U_MBAR;
+	fl_reference reference;
+	bool known = fl_entry_reference(entry, &reference, NULL) >= 0 && reference.standard;
+	return known ? reference.standard->unit : FL_U_MBAR;
 }
 
 fl_status fl_entry_draft_applied(fl_entry *entry, const char *text, fl_error *err) {
 	fl_draft *d = &entry->draft;
 	fl_unit unit = applied_unit(entry);
-	double full = fl_entry_dp_full(entry);
+	double full = fl_reference_dp_full(entry->setup.instrument);
 	fl_wanted wanted = {"the pressure applied", unit, 0.0, fl_from_inside(isnan(full) ? 1e6 : 2.0 * full, unit)};
 	wanted.low = -0.1 * wanted.high;
 	fl_decimal number;
@@ -194,9 +177,7 @@ static fl_status check_signal(const fl_entry *entry, fl_error *err) {
 	fl_signal signal = entry->setup.instrument->scale.signal;
 	const fl_signal_range *range = signal_of(entry);
 	const char *unit = fl_unit_text(range->unit);
-	double value = d->reading.output;
-	if (d->reading.unit != range->unit)
-		value = fl_from_inside(fl_to_inside(value, d->reading.unit), range->unit);
+	double value = fl_reference_in_unit(d->reading.output, d->reading.unit, range->unit);
 	switch (fl_physics_signal_state(signal, value)) {
 	case FL_SIGNAL_FAILURE:
 		return fl_fail(err, FL_E_RANGE,
@@ -228,10 +209,14 @@ static bool looks_fahrenheit(const fl_entry *entry) {
 fl_status fl_entry_draft_check_temperature(const fl_entry *entry, fl_error *err) {
 	const fl_draft *d = &entry->draft;
 	const fl_oil *oil = fl_entry_oil(entry, d->reading.point);
+	fl_reference reference;
 	if (!d->reading.has_temp || !oil)
 		return FL_OK;
+	fl_status status = fl_entry_reference(entry, &reference, err);
+	if (status < 0)
+		return status;
 	double low = oil->table.points[0].temp_c, high = oil->table.points[oil->table.count - 1].temp_c;
-	double temp_c = corrected_temp(entry, d->reading.temp_c);
+	double temp_c = fl_reference_corrected_temp_c(reference.thermometer, d->reading.temp_c);
 	if (temp_c >= low - certified_beyond_k && temp_c <= high + certified_beyond_k)
 		return FL_OK;
 	char hint[128] = "";
@@ -312,65 +297,10 @@ fl_status fl_entry_draft_check(fl_entry *entry, fl_error *err) {
 /* ---- against what should come
  * ------------------------------------------------------------------------------------------------ */
 
-double fl_entry_dp_full(const fl_entry *entry) {
-	const fl_instrument *instrument = entry->setup.instrument;
-	double dp_pa = NAN;
-	if (!isnan(instrument->dp_full_pa))
-		return instrument->dp_full_pa;
-	if (!instrument->has_geometry || fl_stock_dp_full(instrument, &dp_pa, NULL) < 0)
-		return NAN;
-	return dp_pa;
-}
-
-/* Output at the stopped zero: no flow, no pressure, as for no viscosity at all. */
-static fl_status expect_zero(const fl_entry *entry, double *x, fl_error *err) {
-	double low, high;
-	fl_status status = fl_physics_scale_span(&entry->setup.instrument->scale, &low, &high, err);
-	if (status >= 0)
-		*x = (0.0 - low) / (high - low);
-	return status;
-}
-
-static fl_status expect_oil(const fl_entry *entry, const fl_reading *r, double *x, fl_verdict *out, fl_error *err) {
-	const fl_oil *oil = fl_entry_oil(entry, r->point);
-	fl_oil_state state;
-	fl_ideal ideal;
-	if (!oil || !r->has_temp)
-		return fl_fail(err, FL_E_STATE, "the oil or its temperature is not known");
-	out->temp_c = corrected_temp(entry, r->temp_c);
-	fl_status status = fl_physics_oil_at(&oil->table, out->temp_c, &state, err);
-	if (status >= 0)
-		status = fl_physics_ideal(&entry->setup.instrument->scale, state.mu_pa_s, &ideal, err);
-	if (status >= 0)
-		*x = ideal.x;
-	return status;
-}
-
-static fl_status expect_applied(const fl_entry *entry, const fl_reading *r, double *x, fl_error *err) {
-	double full = fl_entry_dp_full(entry);
-	if (!r->has_applied || isnan(full))
-		return fl_fail(err, FL_E_STATE, "the pressure at full scale is not known");
-	const fl_equipment *standard = fl_entry_equipment(entry, FL_ROLE_PRESSURE_STANDARD);
-	*x = corrected(standard, r->applied_pa, FL_U_PA) / full;
-	return FL_OK;
-}
-
-fl_status fl_entry_judge(const fl_entry *entry, const fl_reading *r, fl_verdict *out, fl_error *err) {
-	const fl_signal_range *range = signal_of(entry);
-	fl_role meter = fl_entry_meter_role(entry->session);
-	double x = 0.0;
-	*out = (fl_verdict){.temp_c = NAN};
-	fl_status status = wants_applied(entry)        ? expect_applied(entry, r, &x, err)
-	                   : r->point == FL_POINT_ZERO ? expect_zero(entry, &x, err)
-	                                               : expect_oil(entry, r, &x, out, err);
-	if (status < 0)
-		return status;
-	double value = corrected(fl_entry_equipment(entry, meter), r->output, r->unit);
-	out->corrected = value != r->output || (r->has_temp && out->temp_c != r->temp_c);
-	out->output = r->unit == range->unit ? value : fl_from_inside(fl_to_inside(value, r->unit), range->unit);
-	out->expected = range->low + x * (range->high - range->low);
-	out->error_pct_span = 100.0 * (out->output - out->expected) / (range->high - range->low);
-	return FL_OK;
+fl_status fl_entry_judge(const fl_entry *entry, const fl_reading *r, fl_reading_result *out, fl_error *err) {
+	fl_reference reference;
+	fl_status status = fl_entry_reference(entry, &reference, err);
+	return status < 0 ? status : fl_reference_reading(&reference, fl_entry_oil(entry, r->point), r, out, err);
 }
 
 /* ---- what is doubted
@@ -406,11 +336,13 @@ static bool doubt_bath(fl_entry *e, char *ask, size_t size) {
 
 static bool doubt_applied(fl_entry *e, char *ask, size_t size) {
 	const fl_reading *r = &e->draft.reading;
-	double full = fl_entry_dp_full(e);
-	if (!r->has_applied || isnan(full) || r->point == FL_POINT_ZERO)
+	fl_reference reference;
+	if (!r->has_applied || r->point == FL_POINT_ZERO || fl_entry_reference(e, &reference, NULL) < 0)
 		return false;
 	const fl_plan_point *point = &e->setup.procedure->points[r->point];
-	double pct = 100.0 * r->applied_pa / full;
+	double pct = 100.0 * fl_reference_x_of_pressure(&reference, r->applied_pa);
+	if (isnan(pct))
+		return false;
 	if (pct >= point->oil_low_pct_span - 1e-6 && pct <= point->oil_high_pct_span + 1e-6)
 		return false;
 	snprintf(ask, size, "%s %s is %.1f %% of span and the plan says %g %%: is the pressure right", r->applied_typed,
@@ -419,8 +351,8 @@ static bool doubt_applied(fl_entry *e, char *ask, size_t size) {
 }
 
 static bool doubt_far(fl_entry *e, char *ask, size_t size) {
-	fl_verdict verdict;
-	if (fl_entry_judge(e, &e->draft.reading, &verdict, NULL) < 0 || fabs(verdict.error_pct_span) <= far_pct_span)
+	fl_reading_result result;
+	if (fl_entry_judge(e, &e->draft.reading, &result, NULL) < 0 || 100.0 * fabs(result.error_span) <= far_pct_span)
 		return false;
 	snprintf(ask, size, "%s %s lies far from what belongs here: are oil, unit and digits right", e->draft.typed,
 	         fl_unit_text(e->draft.reading.unit));
@@ -549,36 +481,45 @@ static int places_of(fl_unit unit) {
 /* More than this at the stopped zero is more often a shut equalising valve or an empty leg than the zero screw. */
 static const double zero_hint_pct_span = 1.0;
 
-static void tell_corrections(const fl_entry *entry, const fl_reading *r, const fl_verdict *v, fl_text *say) {
+/* Nothing is told where the certificates correct nothing. */
+static void tell_corrections(const fl_entry *entry, const fl_reading_result *result, fl_text *say) {
 	char value[40];
 	const fl_signal_range *range = signal_of(entry);
+	const fl_reading *r = result->reading;
+	bool of_oil = result->oil.mu_pa_s > 0.0; /* neither zero nor pressure */
+	if (result->output == fl_reference_in_unit(r->output, r->unit, range->unit) &&
+	    (!of_oil || result->oil.temp_c == r->temp_c))
+		return;
 	fl_text_printf(say, "       corrected by the certificates: %s %s",
-	               fl_decimal_format(v->output, places_of(range->unit) + 1, value, sizeof value),
+	               fl_decimal_format(result->output, places_of(range->unit) + 1, value, sizeof value),
 	               fl_unit_text(range->unit));
-	if (r->has_temp)
-		fl_text_printf(say, " at %.3f °C", v->temp_c);
+	if (of_oil)
+		fl_text_printf(say, " at %.3f °C", result->oil.temp_c);
 	fl_text_add(say, "\n");
 }
 
-void fl_entry_tell_reading(const fl_entry *entry, const fl_reading *r, fl_text *say) {
+static void tell_error(const fl_reading_result *result, const fl_signal_range *range, fl_text *say) {
 	char expected[40], error[40];
-	const fl_signal_range *range = signal_of(entry);
-	fl_verdict v;
+	fl_text_printf(say, ": expected %s %s, error %s %% of span\n",
+	               fl_decimal_format(result->ideal.output, places_of(range->unit), expected, sizeof expected),
+	               fl_unit_text(range->unit),
+	               fl_decimal_format_signed(100.0 * result->error_span, 2, true, error, sizeof error));
+}
+
+void fl_entry_tell_reading(const fl_entry *entry, const fl_reading *r, fl_text *say) {
+	fl_reading_result result;
 	fl_text_printf(say, "  [%d] %s %s", r->sequence, r->typed, fl_unit_text(r->unit));
 	if (r->has_temp)
 		fl_text_printf(say, " at %s%s", r->temp_typed, strstr(r->temp_typed, "°F") ? "" : " °C");
 	if (r->has_applied)
 		fl_text_printf(say, " at %s %s", r->applied_typed, fl_unit_text(r->applied_unit));
-	if (fl_entry_judge(entry, r, &v, NULL) < 0) {
+	if (fl_entry_judge(entry, r, &result, NULL) < 0) {
 		fl_text_add(say, "\n");
 		return;
 	}
-	fl_text_printf(say, ": expected %s %s, error %s %% of span\n",
-	               fl_decimal_format(v.expected, places_of(range->unit), expected, sizeof expected),
-	               fl_unit_text(range->unit), fl_decimal_format_signed(v.error_pct_span, 2, true, error, sizeof error));
-	if (v.corrected)
-		tell_corrections(entry, r, &v, say);
-	if (r->point == FL_POINT_ZERO && fabs(v.error_pct_span) > zero_hint_pct_span + 1e-9)
+	tell_error(&result, signal_of(entry), say);
+	tell_corrections(entry, &result, say);
+	if (r->point == FL_POINT_ZERO && 100.0 * fabs(result.error_span) > zero_hint_pct_span + 1e-9)
 		fl_text_printf(say,
 		               "       More than %g %% off: look at the equalising valve and at both legs, full and free of\n"
 		               "       air, before anybody thinks of the zero screw.\n",

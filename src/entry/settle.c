@@ -32,12 +32,8 @@ typedef struct series {
 	double expected_last; /* to turn an error back into an output */
 } series;
 
-static double in_signal_unit(const fl_entry *entry, double value, fl_unit unit) {
-	fl_unit wanted = fl_physics_signal_range(entry->setup.instrument->scale.signal)->unit;
-	return unit == wanted ? value : fl_from_inside(fl_to_inside(value, unit), wanted);
-}
-
 static void add_value(const fl_entry *entry, const fl_reading *r, series *out) {
+	fl_unit unit = fl_physics_signal_range(entry->setup.instrument->scale.signal)->unit;
 	if (out->count == MOST) {
 		for (int i = 1; i < MOST; i++) {
 			out->t_s[i - 1] = out->t_s[i];
@@ -47,7 +43,7 @@ static void add_value(const fl_entry *entry, const fl_reading *r, series *out) {
 		out->count--;
 	}
 	int i = out->count++;
-	out->v[i] = in_signal_unit(entry, r->output, r->unit);
+	out->v[i] = fl_reference_in_unit(r->output, r->unit, unit);
 	out->temp_c[i] = r->has_temp ? r->temp_c : NAN;
 	out->t_s[i] = r->taken == INT64_MIN ? NAN : (double)r->taken;
 	out->has_times = out->has_times && isfinite(out->t_s[i]) && (i == 0 || out->t_s[i] > out->t_s[i - 1]);
@@ -90,14 +86,14 @@ static void remove_temperature(const fl_entry *entry, const fl_step *step, serie
 	double expected[MOST];
 	for (int i = from; i < all->count; i++) {
 		fl_reading r = {.point = step->point, .has_temp = true, .temp_c = all->temp_c[i]};
-		fl_verdict verdict;
+		fl_reading_result result;
 		if (step->point == FL_POINT_ZERO || isnan(all->temp_c[i]))
 			return;
 		r.unit = fl_physics_signal_range(entry->setup.instrument->scale.signal)->unit;
 		r.output = all->v[i];
-		if (fl_entry_judge(entry, &r, &verdict, NULL) < 0)
+		if (fl_entry_judge(entry, &r, &result, NULL) < 0)
 			return;
-		expected[i] = verdict.expected;
+		expected[i] = result.ideal.output;
 	}
 	for (int i = from; i < all->count; i++)
 		all->v[i] -= expected[i];

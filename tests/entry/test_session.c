@@ -217,6 +217,47 @@ static void a_transmitter_alone_takes_pressures(void **state) {
 	talk_end(&t);
 }
 
+/* A scale from 10 to 50 mm²/s that takes 300 mbar at 50 mm²/s, invented. Pressure is proportional to viscosity: 60 mbar
+ * at the lower range value, 180 mbar (30 mm²/s) at half of span, 240 mbar the span. The standard's corrections there,
+ * +0.008 and +0.0125 mbar, are 0.0005 and 0.0008 mA. */
+static const char raised_instrument[] =
+    "instruments:\n"
+    "  - {tag: VT-8, serial: FL-0998, dial: 10 to 50 mm²/s, dial density: 900 kg/m³, signal: 4-20 mA, "
+    "full-scale pressure: 300 mbar, tolerance: 2.0 % of span}\n";
+
+static void prompt_says(talk *t, const char *part) {
+	fl_text prompt = {0};
+	fl_entry_prompt(t->entry, &prompt);
+	if (!strstr(prompt.data, part))
+		print_error("\"%s\" lacks \"%s\"\n", prompt.data, part);
+	assert_non_null(strstr(prompt.data, part));
+	fl_text_free(&prompt);
+}
+
+static void a_scale_above_zero_takes_pressure_at_its_lower_end(void **state) {
+	talk t;
+	talk_load(&t, transmitter, "VT-1");
+	if (fl_stock_parse(&t.stock, raised_instrument, "raised.yaml", &t.err) < 0)
+		fail_msg("%d: %s %s", t.err.line, t.err.field, t.err.message);
+	t.instrument = fl_stock_instrument(&t.stock, "VT-8");
+	scratch_path(*state, "session.flj", t.path);
+	assert_int_equal(fl_entry_begin(&t.journal, fl_io_system(), t.path, FL_SOURCE_KEYBOARD, false, fl_day_of(t.now),
+	                                t.now, &t.procedure, t.instrument, "0.1.0", &t.err),
+	                 FL_OK);
+	talk_attach(&t);
+	talk_take_all(
+	    &t, (const char *const[]){"Tallmere Yard", "Quillhaven", "", "Arvid Holm", "", "", "", "PTW-7", "yes"}, 9);
+	prompt_says(&t, "apply 60.00 mbar");
+	talk_take(&t, "4.16 mA 60 mbar");
+	talk_says(&t, "expected 4.001 mA, error +1.00 % of span");
+	prompt_says(&t, "apply 180.00 mbar");
+	talk_asked(&t, "12.00 150 mbar", "150 mbar is 37.5 % of span and the plan says 50 %");
+	talk_take(&t, "no");
+	talk_take(&t, "12.16 180 mbar");
+	talk_says(&t, "expected 12.001 mA, error +0.99 % of span");
+	talk_end(&t);
+}
+
 int main(void) {
 	const struct CMUnitTest tests[] = {
 	    IN_SCRATCH(a_whole_session_from_question_to_question),
@@ -227,6 +268,7 @@ int main(void) {
 	    IN_SCRATCH(repair_ends_without_as_left),
 	    IN_SCRATCH(stop_keeps_everything),
 	    IN_SCRATCH(a_transmitter_alone_takes_pressures),
+	    IN_SCRATCH(a_scale_above_zero_takes_pressure_at_its_lower_end),
 	};
 	return cmocka_run_group_tests(tests, NULL, NULL);
 }
