@@ -6,7 +6,9 @@
  * apart, and the blocks of a run within each lane 2^128. So no two lanes, blocks or threads can meet, and a block's
  * draws depend on the seed and its number alone.
  */
-#include "lanes.h"
+#include "kernels.h"
+
+#include <math.h>
 
 /* splitmix64: turns a seed, however plain, into well-mixed words. */
 static uint64_t splitmix64(uint64_t *seed) {
@@ -22,15 +24,28 @@ static const uint64_t jump_128[4] = {0x180ec6d33cfd0abau, 0xd5a61266f0c9392cu, 0
 static const uint64_t jump_192[4] = {0x76e15d3efefdcbbfu, 0xc5004e441c522fb3u, 0x77710069854ee241u,
                                      0x39109bb02acbe635u};
 
-static void jump(fl_generator *generator, const uint64_t polynomial[4]) {
-	lane_state state = lanes_load(generator), sum = {0};
-	for (int bit = 0; bit < 256; bit++) {
-		lane_bits taken = -((lane_bits){0} + (polynomial[bit / 64] >> (bit % 64) & 1));
-		for (int w = 0; w < 4; w++)
-			sum.s[w] ^= state.s[w] & taken;
-		lanes_next(&state);
+static void step(fl_generator *g) {
+	for (int lane = 0; lane < FL_LANES; lane++) {
+		uint64_t t = g->s[1][lane] << 17;
+		g->s[2][lane] ^= g->s[0][lane];
+		g->s[3][lane] ^= g->s[1][lane];
+		g->s[1][lane] ^= g->s[2][lane];
+		g->s[0][lane] ^= g->s[3][lane];
+		g->s[2][lane] ^= t;
+		g->s[3][lane] = (g->s[3][lane] << 45) | (g->s[3][lane] >> 19);
 	}
-	lanes_store(&sum, generator);
+}
+
+static void jump(fl_generator *generator, const uint64_t polynomial[4]) {
+	fl_generator state = *generator, sum = {0};
+	for (int bit = 0; bit < 256; bit++) {
+		uint64_t taken = -(polynomial[bit / 64] >> (bit % 64) & 1);
+		for (int w = 0; w < 4; w++)
+			for (int lane = 0; lane < FL_LANES; lane++)
+				sum.s[w][lane] ^= state.s[w][lane] & taken;
+		step(&state);
+	}
+	*generator = sum;
 }
 
 void fl_numeric_generator_jump(fl_generator *generator) {
@@ -51,13 +66,8 @@ void fl_numeric_generator_seed(fl_generator *generator, uint64_t seed) {
 	}
 }
 
-LANE_CLONES void fl_numeric_generator_bits(fl_generator *generator, uint64_t *out, size_t n) {
-	lane_state state = lanes_load(generator);
-	for (size_t i = 0; i + FL_LANES <= n; i += FL_LANES) {
-		lane_bits bits = lanes_next(&state);
-		__builtin_memcpy(out + i, &bits, sizeof bits);
-	}
-	lanes_store(&state, generator);
+void fl_numeric_generator_bits(fl_generator *generator, uint64_t *out, size_t n) {
+	fl_numeric_kernels()->bits(generator, out, n);
 }
 
 double fl_numeric_input_u(const fl_input *input) {
@@ -78,38 +88,6 @@ double fl_numeric_input_u(const fl_input *input) {
 	}
 }
 
-/* Normal deviates come in pairs: both are used. */
-LANE_CLONES static void draw_normals(fl_generator *generator, double centre, double width, double *out, size_t n) {
-	lane_state state = lanes_load(generator);
-	size_t i = 0;
-	lanes a, b;
-	for (; i + 2 * FL_LANES <= n; i += 2 * FL_LANES) {
-		lanes_normal(&state, &a, &b);
-		a = centre + width * a;
-		b = centre + width * b;
-		__builtin_memcpy(out + i, &a, sizeof a);
-		__builtin_memcpy(out + i + FL_LANES, &b, sizeof b);
-	}
-	if (i + FL_LANES <= n) {
-		lanes_normal(&state, &a, &b);
-		a = centre + width * a;
-		__builtin_memcpy(out + i, &a, sizeof a);
-	}
-	lanes_store(&state, generator);
-}
-
-LANE_CLONES static void draw_shaped(fl_generator *generator, const fl_input *input, double *out, size_t n) {
-	lane_state state = lanes_load(generator);
-	for (size_t i = 0; i + FL_LANES <= n; i += FL_LANES) {
-		lanes v = lanes_draw(&state, input);
-		__builtin_memcpy(out + i, &v, sizeof v);
-	}
-	lanes_store(&state, generator);
-}
-
 void fl_numeric_draw(fl_generator *generator, const fl_input *input, double *out, size_t n) {
-	if (input->shape == FL_SHAPE_NORMAL)
-		draw_normals(generator, input->centre, input->width, out, n);
-	else
-		draw_shaped(generator, input, out, n);
+	fl_numeric_kernels()->draw(generator, input, out, n);
 }

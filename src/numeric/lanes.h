@@ -1,11 +1,11 @@
-/* numeric/lanes.h - random deviates in eight lanes at once, by the compiler's portable vectors.
+/* numeric/lanes.h - random deviates in several lanes at once, by the compiler's portable vectors.
  *
  * SPDX-License-Identifier: GPL-3.0-or-later
  *
  * Each lane is a generator xoshiro256++ of its own (Blackman and Vigna, Scrambled linear pseudorandom number
- * generators, ACM TOMS 47, 2021). The compiler turns a vector of eight into whatever the processor has; every
- * operation is exact or rounded as IEEE 754 says and products are not fused with sums, so the same seed gives the same
- * bits on any processor.
+ * generators, ACM TOMS 47, 2021). LANE_WIDTH lanes stand in one vector; all FL_LANES are gone through in groups of
+ * that many, as wide as suits the processor. Every operation is exact or rounded as IEEE 754 says and products are not
+ * fused with sums, so the same seed gives the same bits on any processor and at any width.
  */
 #ifndef FOUNDLEFT_NUMERIC_LANES_H
 #define FOUNDLEFT_NUMERIC_LANES_H
@@ -15,34 +15,31 @@
 #include <math.h>
 #include <stdint.h>
 
-#define LANE_INLINE static inline __attribute__((always_inline))
-
-/* One function compiled for several kinds of processor, chosen when the program starts. Sanitizers start too late for
- * that choice, so they get the plain one. */
-#if defined(__x86_64__) && defined(__gnu_linux__) && defined(__GNUC__) && !defined(__clang__) && \
-    !defined(__SANITIZE_ADDRESS__) && !defined(__SANITIZE_THREAD__) && !defined(FL_ONE_PROCESSOR)
-#define LANE_CLONES __attribute__((target_clones("arch=x86-64-v4", "arch=x86-64-v3", "default")))
-#else
-#define LANE_CLONES
+#ifndef LANE_WIDTH
+#error "LANE_WIDTH says how many lanes stand in a vector"
 #endif
 
-typedef double lanes __attribute__((vector_size(FL_LANES * sizeof(double))));
-typedef uint64_t lane_bits __attribute__((vector_size(FL_LANES * sizeof(uint64_t))));
-typedef int64_t lane_signed __attribute__((vector_size(FL_LANES * sizeof(int64_t))));
+#define LANE_INLINE static inline __attribute__((always_inline))
 
-/* The state of all lanes, word by word. */
+typedef double lanes __attribute__((vector_size(LANE_WIDTH * sizeof(double))));
+typedef uint64_t lane_bits __attribute__((vector_size(LANE_WIDTH * sizeof(uint64_t))));
+
+/* The state of a group of lanes, word by word. */
 typedef struct lane_state {
 	lane_bits s[4];
 } lane_state;
 
-LANE_INLINE lane_state lanes_load(const fl_generator *g) {
+/* The lanes from `first` on. */
+LANE_INLINE lane_state lanes_load(const fl_generator *g, int first) {
 	lane_state state;
-	__builtin_memcpy(&state, g->s, sizeof state);
+	for (int w = 0; w < 4; w++)
+		__builtin_memcpy(&state.s[w], &g->s[w][first], sizeof state.s[w]);
 	return state;
 }
 
-LANE_INLINE void lanes_store(const lane_state *state, fl_generator *g) {
-	__builtin_memcpy(g->s, state, sizeof *state);
+LANE_INLINE void lanes_store(const lane_state *state, fl_generator *g, int first) {
+	for (int w = 0; w < 4; w++)
+		__builtin_memcpy(&g->s[w][first], &state->s[w], sizeof state->s[w]);
 }
 
 /* xoshiro256++: 64 fresh bits for each lane. */
@@ -69,7 +66,7 @@ LANE_INLINE lanes lanes_centred(lane_state *state) {
 }
 
 LANE_INLINE lanes lanes_sqrt(lanes v) {
-	for (int i = 0; i < FL_LANES; i++)
+	for (int i = 0; i < LANE_WIDTH; i++)
 		v[i] = sqrt(v[i]);
 	return v;
 }
@@ -170,7 +167,7 @@ LANE_INLINE lanes lanes_standard(lane_state *state, fl_shape shape, double param
 LANE_INLINE lanes lanes_student(lane_state *state, double dof) {
 	lanes u = 2.0 - lanes_one_to_two(lanes_next(state)) - 0x1p-53, x, y;
 	lanes exponent = lanes_log(u) * (-2.0 / dof);
-	for (int i = 0; i < FL_LANES; i++)
+	for (int i = 0; i < LANE_WIDTH; i++)
 		exponent[i] = expm1(exponent[i]);
 	lanes_direction(state, &x, &y);
 	return lanes_sqrt(dof * exponent) * x;

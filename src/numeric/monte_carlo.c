@@ -9,9 +9,9 @@
  *   4. counts in bins are whole numbers, which add up the same in any order.
  * The first block is done alone: it shows where the bins must lie.
  */
-#include "lanes.h"
 #include "trials.h"
 
+#include <math.h>
 #include <pthread.h>
 #include <stdlib.h>
 

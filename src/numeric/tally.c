@@ -2,10 +2,11 @@
  *
  * SPDX-License-Identifier: GPL-3.0-or-later
  */
-#include "lanes.h"
+#include "kernels.h"
 #include "trials.h"
 
 #include <gsl/gsl_statistics_double.h>
+#include <math.h>
 
 tally_frame fl_numeric_tally_frame(double *sample, size_t n) {
 	double min, max;
@@ -18,45 +19,12 @@ tally_frame fl_numeric_tally_frame(double *sample, size_t n) {
 	return frame;
 }
 
-LANE_CLONES void fl_numeric_tally(tally_frame frame, const double *y, size_t n, uint32_t *counts) {
-	int32_t bin[TRIAL_CHUNK];
-	const double per = 1.0 / frame.scale, half = TALLY_BINS / 2;
-	for (size_t begin = 0; begin < n; begin += TRIAL_CHUNK) {
-		size_t many = n - begin < TRIAL_CHUNK ? n - begin : TRIAL_CHUNK;
-		for (size_t i = 0; i < many; i++) {
-			double z = (y[begin + i] - frame.centre) * per;
-			/* |z| may be infinite after the scaling of a far outlier: held to the outermost bins. */
-			z = z > 1e9 ? 1e9 : z < -1e9 ? -1e9 : z;
-			double place = half + half * (z / (1.0 + fabs(z)));
-			bin[i] = (int32_t)(place < TALLY_BINS - 1 ? place : TALLY_BINS - 1);
-		}
-		for (size_t i = 0; i < many; i++)
-			counts[bin[i]]++;
-	}
+void fl_numeric_tally(tally_frame frame, const double *y, size_t n, uint32_t *counts) {
+	fl_numeric_kernels()->tally(frame, y, n, counts);
 }
 
-LANE_CLONES bool fl_numeric_trial_sums(const double *y, size_t n, double shift, trial_sums *sums) {
-	lanes d = {0}, d2 = {0}, least = INFINITY - d, most = -INFINITY - d, wrong = {0};
-	for (size_t i = 0; i + FL_LANES <= n; i += FL_LANES) {
-		lanes v;
-		__builtin_memcpy(&v, y + i, sizeof v);
-		wrong += v - v; /* 0, or NaN from then on */
-		most = lanes_max(v, most);
-		least = -lanes_max(-v, -least);
-		v -= shift;
-		d += v;
-		d2 += v * v;
-	}
-	*sums = (trial_sums){.min = INFINITY, .max = -INFINITY};
-	double all = 0.0;
-	for (int lane = 0; lane < FL_LANES; lane++) {
-		sums->d += d[lane];
-		sums->d2 += d2[lane];
-		sums->min = fmin(sums->min, least[lane]);
-		sums->max = fmax(sums->max, most[lane]);
-		all += wrong[lane];
-	}
-	return all == 0.0 && isfinite(sums->d2);
+bool fl_numeric_trial_sums(const double *y, size_t n, double shift, trial_sums *sums) {
+	return fl_numeric_kernels()->sums(y, n, shift, sums);
 }
 
 /* The lower edge of a bin, within what was met. */

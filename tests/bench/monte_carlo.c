@@ -7,8 +7,9 @@
  * them), each the best of REPEATS, then the results, so that monte_carlo.py can show that both found the same. The run
  * is written here and in monte_carlo.py alike.
  */
-#include "lanes.h"
+#include "foundleft/numeric.h"
 
+#include <math.h>
 #include <stdio.h>
 #include <stdlib.h>
 #include <sys/resource.h>
@@ -55,23 +56,25 @@ static double now(void) {
 	return (double)t.tv_sec + 1e-9 * (double)t.tv_nsec;
 }
 
-/* The numbers of all trials: normal ones first, then those of the other effects, as in a trial. */
-LANE_CLONES static double draw_only(uint64_t trials) {
-	enum { NORMALS = 2 * PLACES * CYCLES * READINGS + 4 };
-	static lanes deviates[NORMALS];
+/* The numbers of all trials by the same generator, CHUNK trials at a time, and nothing done with them. */
+static double draw_only(uint64_t trials) {
+	enum { CHUNK = 128, NORMALS = 2 * PLACES * CYCLES * READINGS };
+	static double normals[NORMALS * 8], other[CHUNK];
+	const fl_input standard = {FL_SHAPE_NORMAL, 0.0, 1.0, 0.0};
 	fl_generator generator;
 	fl_numeric_generator_seed(&generator, 1);
-	lane_state state = lanes_load(&generator);
-	lanes sum = {0};
-	for (uint64_t t = 0; t < trials; t += FL_LANES) {
-		for (int i = 0; i < NORMALS; i += 2)
-			lanes_normal(&state, &deviates[i], &deviates[i + 1]);
-		for (int k = 0; k < EFFECTS; k++)
-			if (effects[k].input.shape != FL_SHAPE_NORMAL)
-				sum += lanes_draw(&state, &effects[k].input);
-		__asm__ volatile("" : : "r"(deviates) : "memory"); /* they stand in memory, as those of a trial do */
+	double sum = 0.0;
+	for (uint64_t t = 0; t < trials; t += CHUNK) {
+		for (int part = 0; part < CHUNK / 8; part++) {
+			fl_numeric_draw(&generator, &standard, normals, NORMALS * 8);
+			sum += normals[part];
+		}
+		for (int k = 0; k < EFFECTS; k++) {
+			fl_numeric_draw(&generator, &effects[k].input, other, CHUNK);
+			sum += other[k];
+		}
 	}
-	return sum[0] + deviates[0][0];
+	return sum;
 }
 
 int main(int argc, char **argv) {

@@ -7,6 +7,7 @@
 #include "check.h"
 
 #include "foundleft/numeric.h"
+#include "kernels.h"
 
 #include <gsl/gsl_cdf.h>
 #include <gsl/gsl_sort_double.h>
@@ -368,6 +369,50 @@ static void streams_do_not_overlap(void **state) {
 	free(bits);
 }
 
+/* ---- one record, whatever the processor ---- */
+
+static void same_as_plain(const trial_kernels *kernels) {
+	enum { SOME = 1024 };
+	static double want[SOME], got[SOME];
+	static uint64_t want_bits[SOME], got_bits[SOME];
+	static uint32_t want_counts[TALLY_BINS], got_counts[TALLY_BINS];
+	fl_generator g, h;
+	fl_numeric_generator_seed(&g, 9);
+	h = g;
+	fl_numeric_kernels_plain.bits(&g, want_bits, SOME);
+	kernels->bits(&h, got_bits, SOME);
+	assert_memory_equal(want_bits, got_bits, sizeof want_bits);
+	for (int shape = FL_SHAPE_NORMAL; shape <= FL_SHAPE_STUDENT; shape++) {
+		const fl_input input = {(fl_shape)shape, 0.3, 1.7, shape == FL_SHAPE_STUDENT ? 3.5 : 0.4};
+		trial_sums want_sums, got_sums;
+		fl_numeric_kernels_plain.draw(&g, &input, want, SOME - FL_LANES); /* an odd count of pairs */
+		kernels->draw(&h, &input, got, SOME - FL_LANES);
+		assert_memory_equal(want, got, sizeof want);
+		assert_memory_equal(&g, &h, sizeof g);
+		assert_true(fl_numeric_kernels_plain.sums(want, SOME, 0.1, &want_sums));
+		assert_true(kernels->sums(got, SOME, 0.1, &got_sums));
+		assert_memory_equal(&want_sums, &got_sums, sizeof want_sums);
+		fl_numeric_kernels_plain.tally((tally_frame){0.3, 2.0}, want, SOME, want_counts);
+		kernels->tally((tally_frame){0.3, 2.0}, got, SOME, got_counts);
+		assert_memory_equal(want_counts, got_counts, sizeof want_counts);
+	}
+	got[SOME - 3] = NAN;
+	trial_sums sums;
+	assert_false(kernels->sums(got, SOME, 0.1, &sums));
+	got[SOME - 3] = want[SOME - 3];
+}
+
+static void processors_agree(void **state) {
+	(void)state;
+	same_as_plain(fl_numeric_kernels());
+#ifdef KERNELS_BY_PROCESSOR
+	if (__builtin_cpu_supports("x86-64-v3"))
+		same_as_plain(&fl_numeric_kernels_middle);
+	if (__builtin_cpu_supports("x86-64-v4"))
+		same_as_plain(&fl_numeric_kernels_wide);
+#endif
+}
+
 int main(void) {
 	const struct CMUnitTest tests[] = {
 	    cmocka_unit_test(published_sequence),
@@ -381,6 +426,7 @@ int main(void) {
 	    cmocka_unit_test(lanes_are_independent),
 	    cmocka_unit_test(blocks_and_seeds_are_independent),
 	    cmocka_unit_test(streams_do_not_overlap),
+	    cmocka_unit_test(processors_agree),
 	};
 	return cmocka_run_group_tests_name("numeric generator", tests, NULL, NULL);
 }
