@@ -159,14 +159,20 @@ double fl_drift_half_width(const fl_drift_line *line, double x) {
 }
 
 double fl_drift_touch(const fl_drift_line *line, double start, double limit, double most) {
-	enum { STEPS = 16384 };
-	double t = fl_numeric_student(PROBABILITY, line->dof);
-	for (int i = 0; i <= STEPS; i++) {
+	enum { STEPS = 4096, HALVINGS = 40 };
+	double t = fl_numeric_student(PROBABILITY, line->dof), below = 0.0, touches = INFINITY;
+	for (int i = 0; i <= STEPS && isinf(touches); i++) {
 		double x = most * i / STEPS;
 		if (fabs(start + line->slope * x) + half_width(line, t, x) >= limit)
-			return x;
+			touches = x;
+		else
+			below = x;
 	}
-	return INFINITY;
+	for (int i = 0; i < HALVINGS && touches > 0.0 && !isinf(touches); i++) {
+		double x = 0.5 * (below + touches);
+		*(fabs(start + line->slope * x) + half_width(line, t, x) >= limit ? &touches : &below) = x;
+	}
+	return touches;
 }
 
 double fl_drift_limit(const fl_saw *saw) {
