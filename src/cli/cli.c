@@ -3,7 +3,6 @@
 #include "cli.h"
 
 #include <getopt.h>
-#include <locale.h>
 #include <string.h>
 #include <sys/ioctl.h>
 #include <time.h>
@@ -237,7 +236,6 @@ static int run_command(fl_cli *cli, const fl_command *command, int argc, char **
 }
 
 int fl_cli_main(int argc, char **argv) {
-	setlocale(LC_CTYPE, "");
 	fl_cli cli = {.io = fl_io_system(), .out = stdout, .err = stderr};
 	cli.terminal = isatty(STDIN_FILENO) && isatty(STDOUT_FILENO);
 	const char *word = argc > 1 ? argv[1] : "help";

@@ -3,6 +3,7 @@
 #include "talk.h"
 
 #include <histedit.h>
+#include <locale.h>
 #include <stdlib.h>
 #include <string.h>
 
@@ -25,6 +26,7 @@ static char *edit_prompt(EditLine *edit) {
 
 static void start_editing(fl_talk *talk) {
 	HistEvent event;
+	setlocale(LC_CTYPE, ""); /* else libedit drops what is not ASCII; nothing else here looks at the locale */
 	talk->edit = el_init("foundleft", stdin, talk->cli->out, talk->cli->err);
 	if (talk->edit == NULL)
 		return; /* plain lines still work */

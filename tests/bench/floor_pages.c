@@ -4,11 +4,13 @@
  *
  *	floor_pages FACES-FOLDER OUT.pdf
  *
- * What is the same: every text, rule, path and grey of the certificate, at the same place and in the same order (taken
- * from the certificate itself by main_job_record.py and compiled in as a table, so that nothing is parsed here); A4;
- *the same two faces from the same files, embedded; compressed streams. What it does not do: read a journal, check a
- *digest, compute, report, decide wording, break lines, PDF/A (colour profile, metadata, CIDSet), sync the file. It uses
- *libharu as its manual shows: UTF-8 encoding, LoadTTFontFromFile, ShowText.
+ * What is the same:
+ *   - every text, rule, path and grey of the certificate, at the same place and in the same order: main_job_record.py
+ *     takes them from the certificate itself, as a table that is compiled in, so that nothing is parsed here
+ *   - A4, compressed streams, the same two faces from the same files, embedded
+ * What it leaves out: reading a journal, checking digests, computing, reporting, wording, breaking lines, PDF/A (colour
+ * profile, metadata, CIDSet), syncing the file.
+ * It uses libharu as its manual shows: UTF-8 encoding, LoadTTFontFromFile, ShowText.
  */
 #include <hpdf.h>
 #include <stdio.h>
