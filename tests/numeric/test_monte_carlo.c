@@ -10,6 +10,7 @@
 #include <math.h>
 #include <stdlib.h>
 #include <string.h>
+#include <sys/resource.h>
 
 static void add_up(const void *context, const double *draws, size_t trials, double *outputs) {
 	size_t inputs = *(const size_t *)context;
@@ -195,6 +196,29 @@ static void constant_stays_constant(void **state) {
 	check_near("low", 20.5, out.low, 0.0);
 	check_near("shortest high", 20.5, out.shortest_high, 0.0);
 	assert_true(trials.stable && trials.done < 500000 && out.delta == 0.0);
+}
+
+/* A hundred times the trials, and no more memory: 10^7 results alone would be 80 MB. A sanitizer keeps what was freed.
+ */
+static void memory_does_not_grow_with_trials(void **state) {
+	(void)state;
+	const fl_input input = {FL_SHAPE_NORMAL, 0.0, 1.0, 0.0};
+	const size_t count = 1;
+	fl_model model = {.inputs = &input, .input_count = 1, .output_count = 1, .evaluate = add_up, .context = &count};
+	struct rusage before, after;
+	fl_propagated out;
+	fl_trials trials;
+	for (int digits = 0; digits <= 2; digits += 2) {
+		fl_plan few = plan_of(100000), many = plan_of(10000000);
+		few.digits = many.digits = digits;
+		assert_true(fl_numeric_monte_carlo(&model, &few, &out, &trials, NULL) >= 0);
+		getrusage(RUSAGE_SELF, &before);
+		assert_true(fl_numeric_monte_carlo(&model, &many, &out, &trials, NULL) >= 0);
+		getrusage(RUSAGE_SELF, &after);
+#ifndef __SANITIZE_ADDRESS__
+		check_near("more memory, kB", 0.0, (double)(after.ru_maxrss - before.ru_maxrss), 1000.0);
+#endif
+	}
 }
 
 /* ---- stopping ---- */
@@ -442,6 +466,7 @@ int main(void) {
 	    cmocka_unit_test(selection_agrees_with_sorting),
 	    cmocka_unit_test(correlations_are_kept),
 	    cmocka_unit_test(constant_stays_constant),
+	    cmocka_unit_test(memory_does_not_grow_with_trials),
 	    cmocka_unit_test(stops_when_digits_are_stable),
 	    cmocka_unit_test(tells_how_far_it_is),
 	    cmocka_unit_test(numerical_tolerance),

@@ -74,6 +74,26 @@ LINE_FIELD(correlated_u_slope, fit_correlated, sqrt(line.var_slope))
 LINE_FIELD(correlated_cov, fit_correlated, line.cov)
 LINE_FIELD(correlated_sum_sq, fit_correlated, line.sum_sq)
 
+/* Columns x, y; numbers: origin of x, and the standard uncertainty of an error that all y share, beside the scatter
+ * that the points show themselves. */
+static bool fit_shared(const given *g, fl_line *line) {
+	static double covariance[MAX_ROWS * MAX_ROWS];
+	double x[MAX_ROWS] = {0};
+	size_t n = g->rows;
+	for (size_t i = 0; i < n; i++)
+		x[i] = g->columns[0][i] - g->numbers[0];
+	if (fl_numeric_line(x, g->columns[1], n, line, NULL) != FL_OK)
+		return false;
+	for (size_t i = 0; i < n; i++)
+		for (size_t k = 0; k < n; k++)
+			covariance[i * n + k] = g->numbers[1] * g->numbers[1] + (i == k ? line->s * line->s : 0.0);
+	return fl_numeric_line_correlated(x, g->columns[1], covariance, n, line, NULL) == FL_OK;
+}
+
+LINE_FIELD(shared_intercept, fit_shared, line.intercept)
+LINE_FIELD(shared_u_intercept, fit_shared, sqrt(line.var_intercept))
+LINE_FIELD(shared_u_slope, fit_shared, sqrt(line.var_slope))
+
 /* ---- polynomials: columns x, y; first number the degree ---- */
 
 typedef struct curve {
@@ -382,6 +402,9 @@ static const published_function functions[] = {
     {"correlated.u_slope", correlated_u_slope, 1, 1, 3, 3},
     {"correlated.cov", correlated_cov, 1, 1, 3, 3},
     {"correlated.sum_sq", correlated_sum_sq, 1, 1, 3, 3},
+    {"shared.intercept", shared_intercept, 2, 2, 2, 2},
+    {"shared.u_intercept", shared_u_intercept, 2, 2, 2, 2},
+    {"shared.u_slope", shared_u_slope, 2, 2, 2, 2},
     {"lack.f", lack_f, 1, 1, 2, 2},
     {"lack.dof", lack_dof, 1, 1, 2, 2},
     {"lack.dof_pure", lack_dof_pure, 1, 1, 2, 2},
