@@ -217,7 +217,8 @@ typedef struct fl_generator {
 void fl_numeric_generator_seed(fl_generator *generator, uint64_t seed);
 /* Every lane 2^128 steps on: a stretch that nothing else draws from. */
 void fl_numeric_generator_jump(fl_generator *generator);
-/* The next 64 bits of every lane, again and again: out[i] is of lane i % FL_LANES. n a multiple of FL_LANES. */
+/* The next 64 bits of every lane, again and again: out[i] is of lane i % FL_LANES. n a multiple of FL_LANES;
+ * what is over is left alone. */
 void fl_numeric_generator_bits(fl_generator *generator, uint64_t *out, size_t n);
 
 typedef enum fl_shape {
@@ -237,7 +238,7 @@ typedef struct fl_input {
 
 /* Its standard deviation; INFINITY for Student's t with at most 2 degrees of freedom. */
 double fl_numeric_input_u(const fl_input *input);
-/* Draws from it: out[n], n a multiple of FL_LANES. */
+/* Draws from it: out[n], n a multiple of FL_LANES; what is over is left alone. */
 void fl_numeric_draw(fl_generator *generator, const fl_input *input, double *out, size_t n);
 
 /* ==== Monte Carlo propagation, JCGM 101:2008 ================================================================ */

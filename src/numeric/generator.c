@@ -67,7 +67,7 @@ void fl_numeric_generator_seed(fl_generator *generator, uint64_t seed) {
 }
 
 void fl_numeric_generator_bits(fl_generator *generator, uint64_t *out, size_t n) {
-	fl_numeric_kernels()->bits(generator, out, n);
+	fl_numeric_kernels()->bits(generator, out, n - n % FL_LANES);
 }
 
 double fl_numeric_input_u(const fl_input *input) {
@@ -89,5 +89,5 @@ double fl_numeric_input_u(const fl_input *input) {
 }
 
 void fl_numeric_draw(fl_generator *generator, const fl_input *input, double *out, size_t n) {
-	fl_numeric_kernels()->draw(generator, input, out, n);
+	fl_numeric_kernels()->draw(generator, input, out, n - n % FL_LANES);
 }

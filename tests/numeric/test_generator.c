@@ -369,6 +369,17 @@ static void streams_do_not_overlap(void **state) {
 	free(bits);
 }
 
+/* Room that does not hold full lanes is not written beyond. */
+static void odd_room_is_respected(void **state) {
+	(void)state;
+	fl_generator g;
+	fl_numeric_generator_seed(&g, 1);
+	double v[2 * FL_LANES] = {0};
+	fl_numeric_draw(&g, &(fl_input){FL_SHAPE_NORMAL, 0.0, 1.0, 0.0}, v, FL_LANES + 5);
+	for (int i = 0; i < 2 * FL_LANES; i++)
+		assert_true((v[i] != 0.0) == (i < FL_LANES));
+}
+
 /* ---- one record, whatever the processor ---- */
 
 static void same_as_plain(const trial_kernels *kernels) {
@@ -426,6 +437,7 @@ int main(void) {
 	    cmocka_unit_test(lanes_are_independent),
 	    cmocka_unit_test(blocks_and_seeds_are_independent),
 	    cmocka_unit_test(streams_do_not_overlap),
+	    cmocka_unit_test(odd_room_is_respected),
 	    cmocka_unit_test(processors_agree),
 	};
 	return cmocka_run_group_tests_name("numeric generator", tests, NULL, NULL);
