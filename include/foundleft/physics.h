@@ -159,7 +159,5 @@ fl_status fl_physics_capillary(const fl_capillary *capillary, double mu_pa_s, do
 double fl_physics_poiseuille_mu(double bore_m, double dp_per_m_pa, double flow_m3_s);
 /* Bore loss fraction that explains a gain g (fraction): 1 - (1 + g)^(-1/4). */
 double fl_physics_bore_loss(double gain);
-/* Differential pressure that belongs to output fraction x when full scale is dp_full_pa. Linear. */
-double fl_physics_dp_at(double x, double dp_full_pa);
 
 #endif

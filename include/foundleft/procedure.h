@@ -107,8 +107,9 @@ typedef struct fl_procedure {
 	double bath_c;           /* temperature of the oils; NAN for pressure */
 	double bath_tolerance_k; /* a bath temperature further off is asked about */
 	fl_settle settle;
-	fl_band tolerance;                /* used where the instrument states none */
-	fl_band adjust_limit;             /* inside: leave alone */
+	fl_band tolerance;      /* used where the instrument states none */
+	bool sets_limits_aside; /* the instrument's own tolerance and limits are for the whole sensor, not for this */
+	fl_band adjust_limit;   /* inside: leave alone */
 	double hysteresis_limit_pct_span; /* NAN if none */
 	double linearity_limit_pct_span;  /* NAN if none */
 	fl_linearity deciding_linearity;

@@ -207,7 +207,8 @@ static void decide_run(const work *w, fl_run_result *run) {
 /* True if every point lies inside the adjust limit; false where none is stated. */
 static bool inside_adjust_limit(const work *w, const fl_run_result *run) {
 	const fl_band *own = &w->reference.instrument->adjust_limit;
-	const fl_band *limit = own->basis == FL_BAND_NONE ? &w->procedure->adjust_limit : own;
+	bool aside = w->procedure->sets_limits_aside || own->basis == FL_BAND_NONE;
+	const fl_band *limit = aside ? &w->procedure->adjust_limit : own;
 	bool any = false;
 	for (size_t i = 0; i < run->point_count; i++) {
 		double half_width = band_at(w, limit, run->points[i].x);

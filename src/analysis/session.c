@@ -30,9 +30,10 @@ static void take_terms(work *w) {
 	const fl_instrument *instrument = w->reference.instrument;
 	fl_result *result = w->result;
 	result->rule = procedure->rule;
-	result->tolerance_from_instrument = instrument->tolerance.basis != FL_BAND_NONE;
+	bool own = !procedure->sets_limits_aside;
+	result->tolerance_from_instrument = own && instrument->tolerance.basis != FL_BAND_NONE;
 	result->tolerance = result->tolerance_from_instrument ? instrument->tolerance : procedure->tolerance;
-	double hysteresis = instrument->hysteresis_limit_pct_span;
+	double hysteresis = own ? instrument->hysteresis_limit_pct_span : NAN;
 	result->hysteresis_limit_span = (isnan(hysteresis) ? procedure->hysteresis_limit_pct_span : hysteresis) / 100.0;
 	result->linearity_limit_span = procedure->linearity_limit_pct_span / 100.0;
 	result->deciding_linearity = procedure->deciding_linearity;

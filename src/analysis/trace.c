@@ -17,29 +17,68 @@ static bool lot_was_read(const work *w, size_t point) {
 	return false;
 }
 
+/* Why work went on with the item all the same, as a part of a sentence; "" where nobody said. */
+static const char *excuse(const work *w, const char *item) {
+	for (size_t i = 0; i < w->session->indicative_count; i++) {
+		const fl_indicative *entry = &w->session->indicative[i];
+		if (!entry->item || strcmp(entry->item, item) != 0)
+			continue;
+		const char *words =
+		    fl_arena_printf(w->arena, "; work went on all the same (%s; %s)",
+		                    entry->reason ? entry->reason : "no reason given", entry->by ? entry->by : "nobody named");
+		return words ? words : "";
+	}
+	return "";
+}
+
 static void trace_oils(work *w) {
+	char text[FL_DAY_SIZE];
 	for (size_t i = 0; i < w->session->point_count; i++) {
 		const fl_oil *oil = NULL;
-		fl_error found = {0};
-		if (!lot_was_read(w, i) || fl_analysis_oil(w, (int)i, &oil, NULL) < 0 || !oil)
+		if (!lot_was_read(w, i) || fl_analysis_oil(w, (int)i, &oil, NULL) < 0 || !oil ||
+		    fl_stock_oil_in_date(oil, w->session->day, NULL) >= 0)
 			continue;
-		if (fl_stock_oil_in_date(oil, w->session->day, &found) < 0)
-			fl_analysis_say(w->arena, &w->not_traceable, "%s", found.message);
+		bool early = w->session->day < oil->certified_on;
+		fl_analysis_say(w->arena, &w->not_traceable, "%s, lot %s, %s %s%s", oil->name, oil->lot,
+		                early ? "was certified only on" : "expired on",
+		                fl_day_format(early ? oil->certified_on : oil->use_before, text), excuse(w, oil->lot));
 	}
 }
 
 static void trace_equipment(work *w) {
+	char text[FL_DAY_SIZE];
 	for (size_t i = 0; i < w->session->equipment_count; i++) {
 		const fl_session_equipment *used = &w->session->equipment[i];
 		if (used->undone)
 			continue;
+		const char *role = fl_stock_role_text(used->role);
 		const fl_equipment *item = fl_stock_equipment(w->stock, used->id);
-		fl_error found = {0};
-		if (!item)
-			fl_analysis_say(w->arena, &w->not_traceable, "%s %s: no certificate is known for it",
-			                fl_stock_role_text(used->role), used->id);
-		else if (fl_stock_equipment_in_date(item, w->session->day, &found) < 0)
-			fl_analysis_say(w->arena, &w->not_traceable, "%s", found.message);
+		if (!item) {
+			fl_analysis_say(w->arena, &w->not_traceable, "%s %s: no certificate is known for it", role, used->id);
+			continue;
+		}
+		if (fl_stock_equipment_in_date(item, w->session->day, NULL) >= 0)
+			continue;
+		bool early = w->session->day < item->calibrated_on;
+		fl_analysis_say(w->arena, &w->not_traceable, "%s %s %s %s%s", role, item->id,
+		                early ? "was calibrated only on" : "was due on",
+		                fl_day_format(early ? item->calibrated_on : item->due_on, text), excuse(w, item->id));
+	}
+}
+
+/* An item said to be out of date that the stock shows in date, or that was not read in the end. */
+static bool is_said_already(const work *w, const char *item) {
+	for (size_t i = 0; i < w->not_traceable.count; i++)
+		if (item && strstr(w->not_traceable.items[i], item))
+			return true;
+	return false;
+}
+
+static void trace_indicative(work *w) {
+	for (size_t i = 0; i < w->session->indicative_count; i++) {
+		const char *item = w->session->indicative[i].item;
+		if (!is_said_already(w, item))
+			fl_analysis_say(w->arena, &w->not_traceable, "%s%s", item ? item : "an item", excuse(w, item ? item : ""));
 	}
 }
 
@@ -61,13 +100,8 @@ static void trace_missing(work *w) {
 }
 
 void fl_analysis_trace(work *w) {
-	for (size_t i = 0; i < w->session->indicative_count; i++) {
-		const fl_indicative *entry = &w->session->indicative[i];
-		fl_analysis_say(w->arena, &w->not_traceable, "%s: work went on all the same (%s; %s)",
-		                entry->item ? entry->item : "an item", entry->reason ? entry->reason : "no reason given",
-		                entry->by ? entry->by : "nobody named");
-	}
 	trace_oils(w);
 	trace_equipment(w);
+	trace_indicative(w);
 	trace_missing(w);
 }

@@ -18,7 +18,10 @@ static fl_status refuse_yes_no(fl_error *err) {
 
 static fl_status answer_item(fl_entry *entry, const fl_step *step, const char *line, fl_error *err) {
 	const fl_entry_item *item = fl_entry_item_find(step->id);
+	fl_day received;
 	fl_status status = fl_entry_check_text(line, FL_NAME_POINTS, item->required, "an answer", err);
+	if (status >= 0 && *line && strcmp(item->id, "received-on") == 0)
+		status = fl_day_parse(line, &received, err);
 	return status < 0 ? status : fl_entry_set(entry, item->id, line, err);
 }
 

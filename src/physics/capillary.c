@@ -64,7 +64,3 @@ double fl_physics_poiseuille_mu(double bore_m, double dp_per_m_pa, double flow_m
 double fl_physics_bore_loss(double gain) {
 	return 1.0 - pow(1.0 + gain, -0.25);
 }
-
-double fl_physics_dp_at(double x, double dp_full_pa) {
-	return x * dp_full_pa;
-}

@@ -31,6 +31,7 @@ static const char *const fields[] = {
     "bath tolerance",
     "settled",
     "tolerance",
+    "instrument limits",
     "adjust limit",
     "hysteresis limit",
     "linearity limit",
@@ -294,6 +295,10 @@ static fl_status check_limits(const fl_node *root, const fl_procedure *p, fl_err
 static fl_status read_decision(const fl_node *root, fl_procedure *p, fl_error *err) {
 	int rule = 0, linearity = 0;
 	TRY(fl_procedure_band(root, "tolerance", false, FL_U_NONE, &p->tolerance, err));
+	static const char *const limits[] = {"apply", "set aside", NULL};
+	int whose = 0;
+	TRY(fl_node_choice(root, "instrument limits", false, limits, &whose, err));
+	p->sets_limits_aside = whose == 1;
 	TRY(fl_procedure_band(root, "adjust limit", false, FL_U_NONE, &p->adjust_limit, err));
 	p->hysteresis_limit_pct_span = p->linearity_limit_pct_span = NAN;
 	TRY(read_span_limit(root, "hysteresis limit", &p->hysteresis_limit_pct_span, err));

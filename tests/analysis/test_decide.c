@@ -170,6 +170,22 @@ static void no_rule_no_word(void **state) {
 	bench_end(&b);
 }
 
+/* A procedure for a part of the sensor sets the sensor's own limits aside: 0.3 % of span passes 2 %, not 0.2 %. */
+static void limits_of_a_part(void **state) {
+	(void)state;
+	static bench b;
+	fill(&b, 0.048);
+	b.instrument.tolerance = (fl_band){FL_BAND_PERCENT_SPAN, 2.0};
+	b.procedure.tolerance = (fl_band){FL_BAND_PERCENT_SPAN, 0.2};
+	check_verdict(FL_VERDICT_PASS, bench_assess(&b)->verdict);
+	assert_true(b.result.tolerance_from_instrument);
+	bench_end(&b);
+	b.procedure.sets_limits_aside = true;
+	check_verdict(FL_VERDICT_FAIL, bench_assess(&b)->verdict);
+	assert_false(b.result.tolerance_from_instrument);
+	bench_end(&b);
+}
+
 /* 4 % of reading at 50 % of span is 2 % of span; at the lower end it says nothing. 0.73 mm2/s of 50 are 1.46 %. */
 static void tolerance_in_other_units(void **state) {
 	(void)state;
@@ -239,6 +255,7 @@ int main(void) {
 	    cmocka_unit_test(worst_point_decides_and_is_named),
 	    cmocka_unit_test(low_ratio_withholds_the_verdict),
 	    cmocka_unit_test(no_rule_no_word),
+	    cmocka_unit_test(limits_of_a_part),
 	    cmocka_unit_test(tolerance_in_other_units),
 	    cmocka_unit_test(limits_of_hysteresis_and_linearity),
 	    cmocka_unit_test(adjust_limit),

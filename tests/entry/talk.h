@@ -66,6 +66,8 @@
  * within 0.1 % of span of what LK-10 2511B and LK-50 2511E give at 40 °C on VT-1, from the demo's as-found readings. */
 static const char *const lines_before[] = {"Quillhaven, Tallmere Yard",
                                            "Quillhaven, engine department",
+                                           "2026-04-13",
+                                           "",
                                            "",
                                            "Arvid Holm",
                                            "",

@@ -13,13 +13,21 @@
 static const struct {
 	const char *word;
 	int lines;
-} states[] = {{"place", 0},        {"customer", 1},    {"performer", 3},     {"others", 4},
-              {"thermometer", 5},  {"bath", 6},        {"meter", 7},         {"tachometer", 8},
-              {"oil-1", 9},        {"oil-2", 10},      {"permit", 11},       {"isolated", 12},
-              {"fuel-cooled", 13}, {"frequency", 14},  {"motor-speed", 15},  {"as-found", 16},
-              {"zero", 17},        {"thin-oil", 19},   {"thick-oil", 21},    {"close-run", 30},
-              {"decision", 31},    {"adjustment", 33}, {"value-before", 34}, {"second-adjustment", 36},
-              {"as-left", 37},     {"restore", 50},    {"remark", 52},       {"end", 54}};
+} states[] = {{"place", 0},         {"customer", 1},
+              {"received", 2},      {"condition", 3},
+              {"performer", 5},     {"others", 6},
+              {"thermometer", 7},   {"bath", 8},
+              {"meter", 9},         {"tachometer", 10},
+              {"oil-1", 11},        {"oil-2", 12},
+              {"permit", 13},       {"isolated", 14},
+              {"fuel-cooled", 15},  {"frequency", 16},
+              {"motor-speed", 17},  {"as-found", 18},
+              {"zero", 19},         {"thin-oil", 21},
+              {"thick-oil", 23},    {"close-run", 32},
+              {"decision", 33},     {"adjustment", 35},
+              {"value-before", 36}, {"second-adjustment", 38},
+              {"as-left", 39},      {"restore", 52},
+              {"remark", 54},       {"end", 56}};
 
 static const char *script(int i) {
 	static const struct {

@@ -77,7 +77,7 @@ static void decimal_comma_unit_and_line_pressure(void **state) {
 static void an_ambiguous_number_is_asked_never_guessed(void **state) {
 	talk t;
 	talk_begin(&t, *state, SMALL_PROCEDURE);
-	talk_take_all(&t, lines_before, 15);
+	talk_take_all(&t, lines_before, 17);
 	talk_asked(&t, "1,710", "can mean 1.71 or 1710"); /* both possible as r/min */
 	talk_take(&t, "1710");
 	check_near("motor", 1710.0, fl_session_setting(&t.journal.session, "motor-speed")->value, 0.0);
@@ -160,9 +160,9 @@ static void a_correction_of_the_certificate_is_applied(void **state) {
 	talk_begin(&t, *state, SMALL_PROCEDURE);
 	if (fl_stock_parse(&t.stock, corrected_equipment, "corrected.yaml", &t.err) < 0)
 		fail_msg("%d: %s %s", t.err.line, t.err.field, t.err.message);
-	talk_take_all(&t, lines_before, 5);
+	talk_take_all(&t, lines_before, 7);
 	talk_take_all(&t, (const char *const[]){"TH-8", "", "MA-8"}, 3);
-	talk_take_all(&t, lines_before + 8, COUNT(lines_before) - 8);
+	talk_take_all(&t, lines_before + 10, COUNT(lines_before) - 10);
 	talk_take(&t, "4.025");
 	talk_says(&t, "error +0.22 % of span"); /* 4.035 mA against 4.000 mA */
 	talk_take(&t, "4.020");
@@ -336,7 +336,7 @@ static void identical_values_raise_a_question(void **state) {
 static void a_gate_that_is_no_stops_the_work(void **state) {
 	talk t;
 	talk_begin(&t, *state, SMALL_PROCEDURE);
-	talk_take_all(&t, lines_before, 12);
+	talk_take_all(&t, lines_before, 14);
 	talk_take(&t, "no");
 	talk_says(&t, "stops here");
 	assert_string_equal(talk_step(&t).id, "isolated");
@@ -349,7 +349,7 @@ static void a_gate_that_is_no_stops_the_work(void **state) {
 static void what_is_implausible_is_asked_and_what_is_impossible_refused(void **state) {
 	talk t;
 	talk_begin(&t, *state, SMALL_PROCEDURE);
-	talk_take_all(&t, lines_before, 13);
+	talk_take_all(&t, lines_before, 15);
 	talk_refuse(&t, "75", "not possible");
 	talk_refuse(&t, "150 °F", "not possible");
 	talk_asked(&t, "55", "unusual here (usual: 5 to 50 °C)");
@@ -365,7 +365,7 @@ static void what_is_implausible_is_asked_and_what_is_impossible_refused(void **s
 static void a_wrong_supply_stops_before_anybody_adjusts(void **state) {
 	talk t;
 	talk_begin(&t, *state, SMALL_PROCEDURE);
-	talk_take_all(&t, lines_before, 14);
+	talk_take_all(&t, lines_before, 16);
 	talk_refuse(&t, "50 Hz", "-16.7 % from the 60 Hz");
 	talk_refuse(&t, "60.7", "from the 60 Hz");
 	talk_take(&t, "60.5");
@@ -381,7 +381,7 @@ static void a_wrong_supply_stops_before_anybody_adjusts(void **state) {
 static void overdue_equipment_goes_on_only_as_indicative(void **state) {
 	talk t;
 	talk_begin(&t, *state, SMALL_PROCEDURE);
-	talk_take_all(&t, lines_before, 8);
+	talk_take_all(&t, lines_before, 10);
 	talk_asked(&t, "TC-1", "Not for certified work");
 	talk_take(&t, "");
 	assert_int_equal(talk_step(&t).role, FL_ROLE_TACHOMETER);
@@ -402,7 +402,7 @@ static void overdue_equipment_goes_on_only_as_indicative(void **state) {
 static void an_expired_lot_goes_on_only_as_indicative(void **state) {
 	talk t;
 	talk_begin(&t, *state, SMALL_PROCEDURE);
-	talk_take_all(&t, lines_before, 9);
+	talk_take_all(&t, lines_before, 11);
 	talk_asked(&t, "2411B", "has expired");
 	talk_take_all(&t, (const char *const[]){"the new lots are not on board", "Arvid Holm"}, 2);
 	assert_string_equal(t.journal.session.points[0].lot, "2411B");

@@ -203,7 +203,8 @@ static void a_transmitter_alone_takes_pressures(void **state) {
 	talk t;
 	talk_begin(&t, *state, transmitter);
 	talk_take_all(
-	    &t, (const char *const[]){"Tallmere Yard", "Quillhaven", "", "Arvid Holm", "", "", "", "PTW-7", "yes"}, 9);
+	    &t, (const char *const[]){"Tallmere Yard", "Quillhaven", "", "", "", "Arvid Holm", "", "", "", "PTW-7", "yes"},
+	    11);
 	assert_int_equal(t.journal.session.point_count, 3);
 	talk_take(&t, "4.003 mA 0.00 mbar");
 	talk_asked(&t, "12.02 mA", "Pressure applied");
@@ -246,7 +247,8 @@ static void a_scale_above_zero_takes_pressure_at_its_lower_end(void **state) {
 	                 FL_OK);
 	talk_attach(&t);
 	talk_take_all(
-	    &t, (const char *const[]){"Tallmere Yard", "Quillhaven", "", "Arvid Holm", "", "", "", "PTW-7", "yes"}, 9);
+	    &t, (const char *const[]){"Tallmere Yard", "Quillhaven", "", "", "", "Arvid Holm", "", "", "", "PTW-7", "yes"},
+	    11);
 	prompt_says(&t, "apply 60.00 mbar");
 	talk_take(&t, "4.16 mA 60 mbar");
 	talk_says(&t, "expected 4.001 mA, error +1.00 % of span");
