@@ -16,7 +16,7 @@
 
 typedef struct fl_store fl_store;
 
-/* ---- long work ------------------------------------------------------------------------------------------------- */
+/* ---- long work -------------------------------------------------------------------------------------------------- */
 
 /* Asked now and then during long work. `done` of `total` in the unit of the work (entries, pages, bytes); `total` 0
  * where it is not known. Returning false stops the work without harm: the function returns FL_E_STATE with "stopped".
@@ -26,7 +26,7 @@ typedef struct fl_store_watch {
 	void *self;
 } fl_store_watch;
 
-/* ---- the book ---------------------------------------------------------------------------------------------------- */
+/* ---- the book --------------------------------------------------------------------------------------------------- */
 
 #define FL_NUMBER_SIZE 40
 #define FL_SALT_SIZE 16
@@ -69,8 +69,7 @@ fl_status fl_store_origins(fl_store *store, fl_arena *arena, fl_origin **out, si
  * elsewhere (on paper), it betrays even a book that was rewritten from end to end. */
 fl_status fl_store_content(fl_store *store, char hex[FL_DIGEST_HEX_SIZE], fl_error *err) FL_MUST_USE;
 
-/* ---- what is kept of a session
- * --------------------------------------------------------------------------------------- */
+/* ---- what is kept of a session ---------------------------------------------------------------------------------- */
 
 /* What was done to the instrument, as flags. */
 enum {
@@ -185,8 +184,7 @@ fl_status fl_store_add_paper(fl_store *store, fl_paper *paper, const void *bytes
 fl_status fl_store_papers(fl_store *store, const char *record_digest, fl_arena *arena, fl_paper **out, size_t *count,
                           fl_error *err) FL_MUST_USE;
 
-/* ---- looking up
- * ------------------------------------------------------------------------------------------------------ */
+/* ---- looking up ------------------------------------------------------------------------------------------------- */
 
 typedef struct fl_record_list {
 	fl_arena arena;
@@ -236,8 +234,7 @@ typedef fl_status fl_record_visit(void *self, const fl_record *record, const cha
 fl_status fl_store_each(fl_store *store, bool with_journal, fl_record_visit *visit, void *self,
                         const fl_store_watch *watch, fl_error *err) FL_MUST_USE;
 
-/* ---- verifying
- * ----------------------------------------------------------------------------------------------------------- */
+/* ---- verifying -------------------------------------------------------------------------------------------------- */
 
 typedef struct fl_verified {
 	int64_t origins, entries, records, papers;
@@ -251,8 +248,7 @@ typedef struct fl_verified {
 fl_status fl_store_verify(fl_store *store, bool deep, const fl_store_watch *watch, fl_verified *out,
                           fl_error *err) FL_MUST_USE;
 
-/* ---- copies
- * ------------------------------------------------------------------------------------------------------------------ */
+/* ---- copies ----------------------------------------------------------------------------------------------------- */
 
 /* Copies the book to one new file while it is in use. The copy appears under its name only when it is complete. */
 fl_status fl_store_backup(fl_store *store, const fl_io *io, const char *path, const fl_store_watch *watch,

@@ -15,14 +15,13 @@
 
 #define FL_DAYS_PER_YEAR 365.25
 
-/* ---- dates ------------------------------------------------------------------------------------------------------- */
+/* ---- dates ------------------------------------------------------------------------------------------------------ */
 
 /* The same day of the month so many months later; the month's last day where it has no such day (31 January and one
  * month: 28 or 29 February). Due dates count from the day of the calibration, not of the certificate. */
 fl_day fl_trend_due(fl_day calibrated_on, int months);
 
-/* ---- one quantity over the years
- * -------------------------------------------------------------------------------------- */
+/* ---- one quantity over the years -------------------------------------------------------------------------------- */
 
 /* What is followed: the zero and the span of the line through the points, or the error at one point. */
 typedef enum fl_follow { FL_FOLLOW_ZERO, FL_FOLLOW_SPAN, FL_FOLLOW_POINT } fl_follow;
@@ -62,8 +61,7 @@ fl_status fl_trend_follow(const fl_record *records, size_t count, fl_quantity_fo
                           fl_error *err) FL_MUST_USE;
 void fl_saw_free(fl_saw *saw);
 
-/* ---- the line through it
- * ------------------------------------------------------------------------------------------------- */
+/* ---- the line through it ---------------------------------------------------------------------------------------- */
 
 /* A straight line through points of known relative weight, and what it says about a further one. */
 typedef struct fl_drift_line {
@@ -114,8 +112,7 @@ fl_status fl_trend_expect(const fl_saw *saw, const fl_drift *drift, fl_day day, 
                           fl_error *err) FL_MUST_USE;
 fl_status fl_trend_forecast(fl_saw *saw, const fl_drift *drift, fl_forecast *out, fl_error *err) FL_MUST_USE;
 
-/* ---- intervals
- * --------------------------------------------------------------------------------------------------------------- */
+/* ---- intervals -------------------------------------------------------------------------------------------------- */
 
 /* What a bench has agreed: common practice, no source; the standard leaves the figures to the laboratory. */
 typedef struct fl_interval_policy {
@@ -171,8 +168,7 @@ fl_status fl_trend_reliability(const fl_trial *trials, size_t n, const fl_interv
 fl_status fl_trend_trials(const fl_record *records, size_t count, fl_arena *arena, fl_trial **trials, size_t *n,
                           size_t *capacity, fl_error *err) FL_MUST_USE;
 
-/* ---- look-back
- * ------------------------------------------------------------------------------------------------------------------ */
+/* ---- look-back -------------------------------------------------------------------------------------------------- */
 
 /* One day of the time in question: what the controller held, and what the engine got. */
 typedef struct fl_lookback_day {

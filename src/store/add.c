@@ -14,8 +14,7 @@ static fl_status refuse(fl_error *err, const char *number, const char *what) {
 	return fl_fail_at(err, FL_E_STATE, (fl_place){.field = number}, "%s", what);
 }
 
-/* ---- what a record must be ------------------------------------------------------------------------------------------
- */
+/* ---- what a record must be -------------------------------------------------------------------------------------- */
 
 static fl_status check_record(const fl_record *r, fl_error *err) {
 	if (!r->tag || !*r->tag || !r->number || !*r->number)
@@ -65,8 +64,7 @@ static fl_status check_replaced(fl_store *store, const fl_record *r, fl_error *e
 	return status;
 }
 
-/* ---- an entry of the own chain
- * ----------------------------------------------------------------------------------------- */
+/* ---- an entry of the own chain ---------------------------------------------------------------------------------- */
 
 static fl_status write_facts(const fl_entry *entry, fl_text *facts, fl_error *err) {
 	return entry->head.kind == ENTRY_SESSION ? fl_facts_write_record(&entry->head, &entry->record, facts, err)

@@ -83,8 +83,7 @@ fl_status fl_store_backup(fl_store *store, const fl_io *io, const char *path, co
 	return status;
 }
 
-/* ---- restoring
- * -------------------------------------------------------------------------------------------------------- */
+/* ---- restoring -------------------------------------------------------------------------------------------------- */
 
 static fl_status check_prefix(fl_store *store, const fl_founding *founding, fl_error *err) {
 	fl_arena arena = {0};

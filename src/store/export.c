@@ -35,8 +35,7 @@ static fl_status flush(exporter *e, fl_error *err) {
 	return status;
 }
 
-/* ---- CSV
- * ------------------------------------------------------------------------------------------------------------------ */
+/* ---- CSV -------------------------------------------------------------------------------------------------------- */
 
 /* Would a spreadsheet take the text for a formula? */
 static bool is_formula(const char *text) {
@@ -161,8 +160,7 @@ fl_status fl_store_export_csv(fl_store *store, const fl_sink *sink, const fl_sto
 	return status;
 }
 
-/* ---- JSON (RFC 8259)
- * -------------------------------------------------------------------------------------------------------- */
+/* ---- JSON (RFC 8259) -------------------------------------------------------------------------------------------- */
 
 static void json_string(fl_text *out, const char *text) {
 	fl_text_add(out, "\"");

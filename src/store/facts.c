@@ -38,8 +38,7 @@ static const struct {
              {FL_WORK_BEFORE, "before"}};
 enum { WORKS = 4 };
 
-/* ---- writing --------------------------------------------------------------------------------------------------------
- */
+/* ---- writing ---------------------------------------------------------------------------------------------------- */
 
 static void begin(fl_text *out, const char *word) {
 	fl_text_add(out, word);
@@ -222,8 +221,7 @@ fl_status fl_facts_write_paper(const fl_entry_head *head, const fl_paper *paper,
 	return finish(out, err);
 }
 
-/* ---- reading
- * --------------------------------------------------------------------------------------------------------- */
+/* ---- reading ---------------------------------------------------------------------------------------------------- */
 
 static int word_index(fl_lines *lines, int value, const char *const *words, int count) {
 	const char *word = fl_lines_text(lines, value);
@@ -447,8 +445,7 @@ fl_status fl_facts_check_canonical(const char *facts, size_t length, const fl_en
 	return status;
 }
 
-/* ---- the founding
- * ------------------------------------------------------------------------------------------------------- */
+/* ---- the founding ----------------------------------------------------------------------------------------------- */
 
 fl_status fl_founding_check(const char *name, const char *prefix, fl_error *err) {
 	static const char letters[] = "ABCDEFGHIJKLMNOPQRSTUVWXYZ", more[] = "ABCDEFGHIJKLMNOPQRSTUVWXYZ0123456789";

@@ -50,8 +50,7 @@ static fl_status refuse(intake *in, fl_status status, const char *what) {
 	                  "the bundle is refused, nothing was taken in: part %" PRId64 ": %s", in->seal.parts, what);
 }
 
-/* ---- reading
- * --------------------------------------------------------------------------------------------------------------- */
+/* ---- reading ---------------------------------------------------------------------------------------------------- */
 
 static fl_status fill(intake *in) {
 	reader *r = &in->file;
@@ -105,9 +104,7 @@ static bool at_end(intake *in) {
 	return r->at == r->filled && fl_io_system()->read(NULL, r->fd, &more, 1) == 0;
 }
 
-/* ---- chains
- * -------------------------------------------------------------------------------------------------------------------
- */
+/* ---- chains ----------------------------------------------------------------------------------------------------- */
 
 static fl_status know_origin(intake *in, const fl_founding_text *founding, bool *known) {
 	sqlite3_stmt *statement = NULL;
@@ -173,9 +170,7 @@ static fl_status take_origin(intake *in, const char *bytes, size_t length, const
 	return status;
 }
 
-/* ---- entries
- * --------------------------------------------------------------------------------------------------------------------
- */
+/* ---- entries ---------------------------------------------------------------------------------------------------- */
 
 static fl_status check_amended(intake *in, const fl_record *r) {
 	fl_record_list found = {0};
@@ -300,9 +295,7 @@ static fl_status take_bytes(intake *in, const char *bytes, size_t length) {
 	return status;
 }
 
-/* ---- parts
- * -------------------------------------------------------------------------------------------------------------------------
- */
+/* ---- parts ------------------------------------------------------------------------------------------------------ */
 
 /* "part \t kind \t length \t digest" */
 static bool split_part(const char *line, char kind[8], size_t *length, char digest[FL_DIGEST_HEX_SIZE]) {

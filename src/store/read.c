@@ -84,8 +84,7 @@ fl_status fl_store_fed_by(fl_store *store, const char *kind, const char *name, f
 	return take_records(store, statement, out, err);
 }
 
-/* ---- papers and bytes
- * --------------------------------------------------------------------------------------------------- */
+/* ---- papers and bytes ------------------------------------------------------------------------------------------- */
 
 static fl_status take_paper(sqlite3_stmt *statement, fl_arena *arena, fl_paper **list, size_t *count, size_t *capacity,
                             fl_error *err) {
@@ -170,8 +169,7 @@ fl_status fl_store_bytes(fl_store *store, const char *digest, fl_arena *arena, c
 	return status;
 }
 
-/* ---- instruments and due dates
- * ------------------------------------------------------------------------------------------- */
+/* ---- instruments and due dates ---------------------------------------------------------------------------------- */
 
 fl_status fl_store_instruments(fl_store *store, const char *tag, fl_arena *arena, fl_known_instrument **out,
                                size_t *count, fl_error *err) {
@@ -236,8 +234,7 @@ fl_status fl_store_due(fl_store *store, fl_arena *arena, fl_due **out, size_t *c
 	return status;
 }
 
-/* ---- every record
- * ----------------------------------------------------------------------------------------------------------- */
+/* ---- every record ----------------------------------------------------------------------------------------------- */
 
 /* One entry of a chain, as SQL_CHAIN lists it, given to the visitor in memory of its own. */
 static fl_status visit_row(fl_store *store, sqlite3_stmt *statement, bool with_journal, fl_record_visit *visit,

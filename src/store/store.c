@@ -101,8 +101,7 @@ static fl_status pragma(fl_store *store, const char *text, int64_t *out, fl_erro
 	return status;
 }
 
-/* ---- founding ------------------------------------------------------------------------------------------------------
- */
+/* ---- founding --------------------------------------------------------------------------------------------------- */
 
 static fl_founding_text as_text(const fl_founding *founding) {
 	static const char digits[] = "0123456789abcdef";
@@ -159,8 +158,7 @@ fl_status fl_store_found(const char *path, const fl_founding *founding, fl_store
 	return FL_OK;
 }
 
-/* ---- opening
- * ----------------------------------------------------------------------------------------------------------- */
+/* ---- opening ---------------------------------------------------------------------------------------------------- */
 
 static fl_status check_format(fl_store *store, int64_t *format, fl_error *err) {
 	int64_t application = 0;
@@ -246,8 +244,7 @@ fl_status fl_store_open(const char *path, fl_store_mode mode, int patience_ms, f
 	return FL_OK;
 }
 
-/* ---- chains
- * ---------------------------------------------------------------------------------------------------------------- */
+/* ---- chains ----------------------------------------------------------------------------------------------------- */
 
 static fl_status origin_of_row(fl_store *store, sqlite3_stmt *statement, fl_arena *arena, fl_origin *out,
                                fl_error *err) {

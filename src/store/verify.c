@@ -72,8 +72,7 @@ typedef struct verification {
 	int64_t sequence;
 } verification;
 
-/* ---- finding lines
- * ----------------------------------------------------------------------------------------------------- */
+/* ---- finding lines ---------------------------------------------------------------------------------------------- */
 
 static uint64_t hash_bytes(uint64_t hash, const char *bytes, size_t length) {
 	for (size_t i = 0; i < length; i++)
@@ -192,8 +191,7 @@ static int64_t whole_of(piece value) {
 	return strtoll(digits, NULL, 10);
 }
 
-/* ---- misfits
- * ------------------------------------------------------------------------------------------------------------ */
+/* ---- misfits ---------------------------------------------------------------------------------------------------- */
 
 static fl_status misfit(verification *v, int64_t sequence, const char *what) {
 	char name[160];
@@ -208,8 +206,7 @@ static fl_status misfit_of_number(verification *v, int64_t sequence, piece numbe
 	return misfit(v, sequence, text);
 }
 
-/* ---- one entry
- * ------------------------------------------------------------------------------------------------------------- */
+/* ---- one entry -------------------------------------------------------------------------------------------------- */
 
 static fl_status check_digest(verification *v, const void *bytes, size_t length, piece digest, bool *same) {
 	char found[FL_DIGEST_HEX_SIZE];
@@ -351,9 +348,7 @@ static fl_status check_entry(verification *v, sqlite3_stmt *row) {
 	return status;
 }
 
-/* ---- chains
- * -------------------------------------------------------------------------------------------------------------------
- */
+/* ---- chains ----------------------------------------------------------------------------------------------------- */
 
 static fl_status check_founding(verification *v, const char *founding, size_t length) {
 	bool same = false;
@@ -418,9 +413,7 @@ static fl_status check_chains(verification *v) {
 	return status;
 }
 
-/* ---- numbers
- * --------------------------------------------------------------------------------------------------------------------
- */
+/* ---- numbers ---------------------------------------------------------------------------------------------------- */
 
 static fl_status check_number(verification *v, sqlite3_stmt *row, int64_t expected, char previous[FL_DIGEST_HEX_SIZE]) {
 	const fl_place place = {.file = v->store->path, .field = fl_sql_column(row, 4)};
@@ -461,8 +454,7 @@ static fl_status check_numbers(verification *v) {
 	return status;
 }
 
-/* ---- tables for looking up
- * ------------------------------------------------------------------------------------------------------ */
+/* ---- tables for looking up -------------------------------------------------------------------------------------- */
 
 static fl_status misfit_of_table(verification *v, const char *what) {
 	return fl_fail_at(v->err, FL_E_TAMPERED, (fl_place){.file = v->store->path}, "%s", what);

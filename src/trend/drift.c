@@ -15,8 +15,7 @@
 
 #include <math.h>
 
-/* ---- the points ---------------------------------------------------------------------------------------------------
- */
+/* ---- the points ------------------------------------------------------------------------------------------------- */
 
 /* The tooth whose as-left begins the last stretch. */
 static size_t first_of_stretch(const fl_saw *saw) {
@@ -63,8 +62,7 @@ fl_status fl_drift_stretch(fl_saw *saw, bool hours, fl_stretch *out, fl_error *e
 	return FL_OK;
 }
 
-/* ---- slope and curvature
- * ----------------------------------------------------------------------------------------------- */
+/* ---- slope and curvature ---------------------------------------------------------------------------------------- */
 
 /* The slope that comes out when nobody thinks of the adjustments. */
 static double naive_slope(const fl_saw *saw, const fl_stretch *stretch) {
@@ -147,8 +145,7 @@ fl_status fl_trend_drift(fl_saw *saw, fl_drift *out, fl_error *err) {
 	return status;
 }
 
-/* ---- forecast
- * ------------------------------------------------------------------------------------------------------------ */
+/* ---- forecast --------------------------------------------------------------------------------------------------- */
 
 static double half_width(const fl_drift_line *line, double t, double x) {
 	return t * line->s * sqrt(2.0 + x * x / line->sxx);

@@ -42,8 +42,7 @@ static int hold(double months, const fl_interval_policy *policy, const char **no
 	return (int)floor(months + 1e-9);
 }
 
-/* ---- staircase
- * ------------------------------------------------------------------------------------------------------- */
+/* ---- staircase -------------------------------------------------------------------------------------------------- */
 
 /* The as-found point that comes nearest to its tolerance, or goes furthest beyond. */
 static const fl_kept_point *worst_of(const fl_kept_run *run) {
@@ -88,8 +87,7 @@ fl_status fl_trend_staircase(const fl_record *records, size_t count, const fl_in
 	    fl_word_percent(worst->error_span, 2).text, fl_word_number(100.0 * part, 0).text, had, step, out->months, note);
 }
 
-/* ---- control chart
- * --------------------------------------------------------------------------------------------------- */
+/* ---- control chart ---------------------------------------------------------------------------------------------- */
 
 /* Whole months behind `from` that end before `day`. */
 static int months_until(fl_day from, fl_day day, int most) {
@@ -118,8 +116,7 @@ fl_status fl_trend_chart(fl_saw *saw, const fl_drift *drift, const fl_interval_p
 	return fl_say(&saw->arena, &out->reason, err, "%s: %d months%s", forecast.sentence, out->months, note);
 }
 
-/* ---- time in use
- * ------------------------------------------------------------------------------------------------------- */
+/* ---- time in use ------------------------------------------------------------------------------------------------ */
 
 /* Hours a year between the last two sessions. */
 static double pace_of(const fl_saw *saw) {

@@ -15,8 +15,7 @@
 
 #include <math.h>
 
-/* ---- the error along the scale -------------------------------------------------------------------------------------
- */
+/* ---- the error along the scale ---------------------------------------------------------------------------------- */
 
 /* Error at x: straight between the points, held beyond the outer ones. NAN without points. */
 static double error_at(const fl_kept_run *run, double x) {
@@ -47,8 +46,7 @@ static double true_place(const fl_kept_run *from, const fl_kept_run *to, double 
 	return x;
 }
 
-/* ---- the dates
- * ------------------------------------------------------------------------------------------------------- */
+/* ---- the dates -------------------------------------------------------------------------------------------------- */
 
 static const fl_kept_point *same_point(const fl_kept_run *run, int point) {
 	for (size_t i = 0; run->state != FL_KEPT_NONE && i < run->point_count; i++)
@@ -101,8 +99,7 @@ static bool first_to_leave(const fl_record *before, const fl_record *record, cro
 	return known;
 }
 
-/* ---- what the engine got
- * -------------------------------------------------------------------------------------------------- */
+/* ---- what the engine got ---------------------------------------------------------------------------------------- */
 
 static void fill_days(const fl_record *before, const fl_record *record, fl_lookback *l) {
 	double span = record->scale_high - record->scale_low, length = (double)(l->to - l->from);

@@ -51,8 +51,7 @@ static uint64_t next_random(uint64_t *state) {
 	return *state >> 33;
 }
 
-/* ---- one generated session ------------------------------------------------------------------------------------------
- */
+/* ---- one generated session -------------------------------------------------------------------------------------- */
 
 static void journal_line(fl_text *out, fl_hasher *hasher, int n, uint64_t *random, char head[FL_DIGEST_HEX_SIZE]) {
 	size_t start = out->length;
@@ -138,8 +137,7 @@ static void make_session(session *s, int instrument, int64_t i, const char *numb
 	                .item_count = ITEMS};
 }
 
-/* ---- building
- * ------------------------------------------------------------------------------------------------------------ */
+/* ---- building --------------------------------------------------------------------------------------------------- */
 
 /* Every so many records one of a probe, until each probe has its ten. */
 static int instrument_of(int64_t i, int64_t records) {
@@ -179,8 +177,7 @@ static double build(const char *path, int64_t records, const char *body, size_t 
 	return now() - start;
 }
 
-/* ---- measuring
- * ------------------------------------------------------------------------------------------------------------- */
+/* ---- measuring -------------------------------------------------------------------------------------------------- */
 
 static fl_store *open_book(const char *path) {
 	fl_store *store = NULL;

@@ -177,8 +177,7 @@ static void test_damaged(void **state) {
 	fl_store_close(office);
 }
 
-/* ---- forgeries: bundles whose seal was made anew by somebody who knows the form
- * --------------------------------------- */
+/* ---- forgeries: bundles whose seal was made anew by somebody who knows the form --------------------------------- */
 
 typedef struct forged {
 	fl_text text;

@@ -128,8 +128,7 @@ static void test_older_format(void **state) {
 	assert_non_null(strstr(err.message, "update the program"));
 }
 
-/* ---- export
- * ------------------------------------------------------------------------------------------------------------- */
+/* ---- export ----------------------------------------------------------------------------------------------------- */
 
 static fl_status take(void *self, const char *bytes, size_t length, fl_error *err) {
 	(void)err;
