@@ -2,10 +2,11 @@
  *
  * SPDX-License-Identifier: GPL-3.0-or-later
  *
- * What holds is said at the head of store.c. Each chain is read in its order with what stands for looking up beside
- * each entry. The facts are not parsed here: their digest vouches for them, and scan() finds the few lines that the
- * tables repeat. Which lots and equipment fed which session is compared by a sum over both sides, in which the order
- * does not matter; only when the sums differ is each session looked at on its own, to name the one that does not fit.
+ * What holds is said at the head of store.c. The entries are read in the order in which they came into the book, which
+ * within each chain is that of the chain, with what stands for looking up beside each. The facts are not parsed here:
+ * their digest vouches for them, and scan() finds the few lines that the tables repeat. Which lots and equipment fed
+ * which session is compared by a sum over both sides, in which the order does not matter; only when the sums differ is
+ * each session looked at on its own, to name the one that does not fit.
  */
 #include "lines.h"
 #include "link.h"
@@ -18,12 +19,12 @@
 #include <stdlib.h>
 #include <string.h>
 
-#define CHAIN_TEXT                                                                                                    \
-	"SELECT e.id, e.sequence, e.digest, e.facts, b.size, b.packed, s.origin, s.number, s.day, s.closed, s.due, "      \
-	"s.digest, s.replaces, i.site, i.tag, i.serial, p.record, n.id FROM entry e LEFT JOIN bytes b ON b.entry = e.id " \
-	"LEFT JOIN session s ON s.entry = e.id LEFT JOIN instrument i ON i.id = s.instrument "                            \
-	"LEFT JOIN paper p ON p.entry = e.id LEFT JOIN number n ON n.origin = ?1 AND n.text = s.number "                  \
-	"WHERE e.origin = ?1 ORDER BY e.sequence"
+#define ENTRIES_TEXT                                                                                             \
+	"SELECT e.id, e.sequence, e.digest, e.facts, b.size, b.packed, s.origin, s.number, s.day, s.closed, s.due, " \
+	"s.digest, s.replaces, i.site, i.tag, i.serial, p.record, n.id, e.origin FROM entry e "                      \
+	"LEFT JOIN bytes b ON b.entry = e.id LEFT JOIN session s ON s.entry = e.id "                                 \
+	"LEFT JOIN instrument i ON i.id = s.instrument LEFT JOIN paper p ON p.entry = e.id "                         \
+	"LEFT JOIN number n ON n.origin = e.origin AND n.text = s.number ORDER BY e.id"
 enum {
 	C_ID,
 	C_SEQUENCE,
@@ -42,7 +43,8 @@ enum {
 	C_TAG,
 	C_SERIAL,
 	C_RECORD,
-	C_NUMBER_ROW
+	C_NUMBER_ROW,
+	C_CHAIN
 };
 
 typedef struct piece {
@@ -56,6 +58,13 @@ typedef struct scanned {
 	uint64_t used; /* sum over kind and name of what fed the session */
 } scanned;
 
+/* How far a chain has been followed. */
+typedef struct chain {
+	int64_t row, sequence;
+	bool own;
+	char origin[FL_DIGEST_HEX_SIZE], previous[FL_DIGEST_HEX_SIZE];
+} chain;
+
 typedef struct verification {
 	fl_store *store;
 	fl_error *err;
@@ -65,11 +74,10 @@ typedef struct verification {
 	fl_verified counts;
 	uint64_t used_facts; /* sum over all sessions and what fed them, by the facts */
 	int64_t with_bytes;
-	/* of the chain at hand */
-	int64_t origin_row;
-	bool own;
-	char origin[FL_DIGEST_HEX_SIZE], previous[FL_DIGEST_HEX_SIZE];
-	int64_t sequence;
+	fl_arena arena;
+	chain *chains; /* by row */
+	size_t chain_count, chain_capacity;
+	chain *at; /* of the entry at hand */
 } verification;
 
 /* ---- finding lines ---------------------------------------------------------------------------------------------- */
@@ -178,9 +186,43 @@ static bool says(piece value, const char *text) {
 	return same;
 }
 
+static void two_digits(char *out, int value) {
+	out[0] = (char)('0' + value / 10);
+	out[1] = (char)('0' + value % 10);
+}
+
+/* "2026-04-14" without the detour over printf: this runs three times an entry. */
+static void write_day(fl_day day, char out[10]) {
+	int year = 0, month = 0, day_of_month = 0;
+	fl_day_to_civil(day, &year, &month, &day_of_month);
+	two_digits(out, year / 100 % 100);
+	two_digits(out + 2, year % 100);
+	out[4] = out[7] = '-';
+	two_digits(out + 5, month);
+	two_digits(out + 8, day_of_month);
+}
+
 static bool says_day(piece value, fl_day day) {
-	char text[FL_DAY_SIZE];
-	return piece_is(value, fl_day_format(day, text));
+	char text[10];
+	if (day == FL_NO_DAY)
+		return piece_is(value, "-");
+	write_day(day, text);
+	return value.at && value.length == sizeof text && memcmp(value.at, text, sizeof text) == 0;
+}
+
+/* "2026-04-14T08:00:12Z" */
+static bool says_utc(piece value, fl_utc utc) {
+	char text[20];
+	fl_day day = fl_day_of(utc);
+	int second = (int)(utc - (fl_utc)day * 86400);
+	write_day(day, text);
+	text[10] = 'T';
+	two_digits(text + 11, second / 3600);
+	text[13] = text[16] = ':';
+	two_digits(text + 14, second / 60 % 60);
+	two_digits(text + 17, second % 60);
+	text[19] = 'Z';
+	return value.at && value.length == sizeof text && memcmp(value.at, text, sizeof text) == 0;
 }
 
 static int64_t whole_of(piece value) {
@@ -196,7 +238,7 @@ static int64_t whole_of(piece value) {
 static fl_status misfit(verification *v, int64_t sequence, const char *what) {
 	char name[160];
 	return fl_fail_at(v->err, FL_E_TAMPERED, (fl_place){.file = v->store->path}, "%s: %s",
-	                  fl_link_name(v->store, v->origin, sequence, name), what);
+	                  fl_link_name(v->store, v->at ? v->at->origin : "", sequence, name), what);
 }
 
 static fl_status misfit_of_number(verification *v, int64_t sequence, piece number, const char *what) {
@@ -217,12 +259,13 @@ static fl_status check_digest(verification *v, const void *bytes, size_t length,
 }
 
 static fl_status check_place(verification *v, sqlite3_stmt *row, const scanned *s) {
+	const chain *c = v->at;
 	int64_t sequence = sqlite3_column_int64(row, C_SEQUENCE);
-	if (sequence != v->sequence + 1)
-		return misfit(v, v->sequence + 1, "it is missing");
-	if (!piece_is(s->origin, v->origin) || whole_of(s->sequence) != sequence)
+	if (sequence != c->sequence + 1)
+		return misfit(v, c->sequence + 1, "it is missing, or does not stand where it came into the book");
+	if (!piece_is(s->origin, c->origin) || whole_of(s->sequence) != sequence)
 		return misfit_of_number(v, sequence, s->number, "it stands in another place than where it was kept");
-	if (!piece_is(s->previous, v->previous))
+	if (!piece_is(s->previous, c->previous))
 		return misfit_of_number(v, sequence, s->number,
 		                        "the entry before is not the one that it was chained to: one of the two was exchanged");
 	return FL_OK;
@@ -260,7 +303,7 @@ static fl_status check_carried(verification *v, sqlite3_stmt *row, const scanned
 	int64_t sequence = sqlite3_column_int64(row, C_SEQUENCE);
 	if (sqlite3_column_type(row, C_PACKED) == SQLITE_NULL) {
 		v->counts.without_bytes++;
-		return v->own ? misfit_of_number(v, sequence, s->number, "its journal or paper is missing") : FL_OK;
+		return v->at->own ? misfit_of_number(v, sequence, s->number, "its journal or paper is missing") : FL_OK;
 	}
 	v->with_bytes++;
 	size_t length = (size_t)sqlite3_column_bytes(row, C_PACKED);
@@ -277,14 +320,13 @@ static fl_status check_carried(verification *v, sqlite3_stmt *row, const scanned
 
 /* Does the row for looking up say what the facts say? The word of what does not; NULL if all fits. */
 static const char *wrong_column(verification *v, sqlite3_stmt *row, const scanned *s) {
-	char closed[FL_UTC_SIZE];
-	if (sqlite3_column_int64(row, C_ORIGIN) != v->origin_row)
+	if (sqlite3_column_int64(row, C_ORIGIN) != v->at->row)
 		return "chain";
 	if (!says(s->number, fl_sql_column(row, C_NUMBER)))
 		return "number";
 	if (!says_day(s->day, fl_sql_day(row, C_DAY)))
 		return "day";
-	if (!piece_is(s->closed, fl_utc_format(sqlite3_column_int64(row, C_CLOSED), closed)))
+	if (!says_utc(s->closed, sqlite3_column_int64(row, C_CLOSED)))
 		return "time of closing";
 	if (!says_day(value_of(s->due, 0), fl_sql_day(row, C_DUE)))
 		return "due date";
@@ -310,7 +352,7 @@ static fl_status check_session(verification *v, sqlite3_stmt *row, const scanned
 		snprintf(text, sizeof text, "its %s was changed in the table for looking up", wrong);
 		return misfit_of_number(v, sequence, s->number, text);
 	}
-	if (v->own && sqlite3_column_type(row, C_NUMBER_ROW) == SQLITE_NULL)
+	if (v->at->own && sqlite3_column_type(row, C_NUMBER_ROW) == SQLITE_NULL)
 		return misfit_of_number(v, sequence, s->number, "its number is missing among those given out");
 	v->used_facts += s->used;
 	v->counts.records++;
@@ -328,9 +370,32 @@ static fl_status check_paper(verification *v, sqlite3_stmt *row, const scanned *
 	return FL_OK;
 }
 
+static int by_row(const void *a, const void *b) {
+	int64_t x = ((const chain *)a)->row, y = ((const chain *)b)->row;
+	return x < y ? -1 : x > y;
+}
+
+static chain *chain_of(verification *v, int64_t row) {
+	const chain key = {.row = row};
+	if (v->at && v->at->row == row)
+		return v->at;
+	return v->chain_count ? bsearch(&key, v->chains, v->chain_count, sizeof key, by_row) : NULL;
+}
+
+static fl_status ask_watch(verification *v) {
+	if (!v->watch || v->counts.entries % 64 || v->watch->go_on(v->watch->self, (uint64_t)v->counts.entries, v->total))
+		return FL_OK;
+	return fl_fail(v->err, FL_E_STATE, "stopped on request after %" PRId64 " entries; all of them fit",
+	               v->counts.entries);
+}
+
 static fl_status check_entry(verification *v, sqlite3_stmt *row) {
 	scanned s;
-	scan(fl_sql_column(row, C_FACTS), (size_t)sqlite3_column_bytes(row, C_FACTS), sqlite3_column_int64(row, C_ID), &s);
+	int64_t entry_row = sqlite3_column_int64(row, C_ID);
+	v->at = chain_of(v, sqlite3_column_int64(row, C_CHAIN));
+	scan(fl_sql_column(row, C_FACTS), (size_t)sqlite3_column_bytes(row, C_FACTS), entry_row, &s);
+	if (!v->at)
+		return misfit_of_number(v, sqlite3_column_int64(row, C_SEQUENCE), s.number, "it belongs to none of the chains");
 	fl_status status = check_facts(v, row, &s);
 	if (status >= 0)
 		status = check_place(v, row, &s);
@@ -338,78 +403,79 @@ static fl_status check_entry(verification *v, sqlite3_stmt *row) {
 		status = check_carried(v, row, &s);
 	if (status >= 0)
 		status = piece_is(s.kind, "session") ? check_session(v, row, &s) : check_paper(v, row, &s);
-	v->sequence++;
-	snprintf(v->previous, sizeof v->previous, "%s", fl_sql_column(row, C_DIGEST));
+	if (status < 0)
+		return status;
+	v->at->sequence++;
+	memcpy(v->at->previous, fl_sql_column(row, C_DIGEST), sizeof v->at->previous);
 	v->counts.entries++;
-	if (status >= 0 && v->watch && v->counts.entries % 64 == 0 &&
-	    !v->watch->go_on(v->watch->self, (uint64_t)v->counts.entries, v->total))
-		status = fl_fail(v->err, FL_E_STATE, "stopped on request after %" PRId64 " entries; all of them fit",
-		                 v->counts.entries);
-	return status;
+	return ask_watch(v);
 }
 
 /* ---- chains ----------------------------------------------------------------------------------------------------- */
 
 static fl_status check_founding(verification *v, const char *founding, size_t length) {
 	bool same = false;
-	fl_status status = check_digest(v, founding, length, (piece){v->origin, strlen(v->origin)}, &same);
+	fl_status status = check_digest(v, founding, length, (piece){v->at->origin, strlen(v->at->origin)}, &same);
 	return status >= 0 && !same ? misfit(v, 0, "the founding of the chain was changed") : status;
 }
 
-static fl_status check_chain(verification *v, sqlite3_stmt *chain, sqlite3_stmt *origins) {
-	v->origin_row = sqlite3_column_int64(origins, 0);
-	v->own = sqlite3_column_int(origins, 3) != 0;
-	v->sequence = 0;
-	snprintf(v->origin, sizeof v->origin, "%s", fl_sql_column(origins, 1));
-	memcpy(v->previous, v->origin, sizeof v->previous);
-	fl_status status = check_founding(v, fl_sql_column(origins, 2), (size_t)sqlite3_column_bytes(origins, 2));
-	sqlite3_reset(chain);
-	fl_sql_bind(chain, "i", v->origin_row);
-	for (bool row = true; status >= 0;) {
-		status = fl_sql_step(v->store, chain, &row, v->err);
-		if (status < 0 || !row)
-			break;
-		status = check_entry(v, chain);
-	}
-	sqlite3_reset(chain);
-	v->counts.origins++;
-	return status;
-}
-
-/* Each chain of the book's own but the first goes on from another of its own. */
-static fl_status check_own(verification *v, sqlite3_stmt *origins, int64_t *first) {
+/* Each chain of the book's own but the first goes on from another. */
+static fl_status check_own(verification *v, const char *text, size_t length, int64_t *first) {
 	fl_arena arena = {0};
 	fl_founding_text founding;
-	fl_status status = FL_OK;
-	if (sqlite3_column_int(origins, 3) == 0)
+	if (!v->at->own)
 		return FL_OK;
-	status = fl_founding_read(fl_sql_column(origins, 2), (size_t)sqlite3_column_bytes(origins, 2), &arena, &founding,
-	                          v->err);
-	if (status >= 0 && !*founding.continues && ++*first > 1) {
-		snprintf(v->origin, sizeof v->origin, "%s", fl_sql_column(origins, 1));
+	fl_status status = fl_founding_read(text, length, &arena, &founding, v->err);
+	if (status >= 0 && !*founding.continues && ++*first > 1)
 		status = misfit(v, 0, "a chain that was taken in was made the book's own");
-	}
 	fl_arena_free(&arena);
 	return status;
 }
 
-static fl_status check_chains(verification *v) {
-	sqlite3_stmt *chain = NULL, *origins = NULL;
+static fl_status take_chain(verification *v, sqlite3_stmt *origins, int64_t *first) {
+	chain *grown = fl_arena_grow(&v->arena, v->chains, v->chain_count, &v->chain_capacity, sizeof *grown);
+	const char *founding = fl_sql_column(origins, 2);
+	size_t length = (size_t)sqlite3_column_bytes(origins, 2);
+	if (!grown)
+		return fl_sql_memory(v->err);
+	v->chains = grown;
+	v->at = &grown[v->chain_count++];
+	*v->at = (chain){.row = sqlite3_column_int64(origins, 0), .own = sqlite3_column_int(origins, 3) != 0};
+	snprintf(v->at->origin, sizeof v->at->origin, "%s", fl_sql_column(origins, 1));
+	memcpy(v->at->previous, v->at->origin, sizeof v->at->previous);
+	v->counts.origins++;
+	fl_status status = check_founding(v, founding, length);
+	return status < 0 ? status : check_own(v, founding, length, first);
+}
+
+static fl_status take_chains(verification *v) {
+	sqlite3_stmt *origins = NULL;
 	int64_t first = 0;
-	if (sqlite3_prepare_v2(v->store->db, CHAIN_TEXT, -1, &chain, NULL) != SQLITE_OK)
-		return fl_sql_fail(v->store, v->err);
 	fl_status status = fl_sql(v->store, SQL_ORIGINS, &origins, v->err);
 	for (bool row = true; status >= 0;) {
 		status = fl_sql_step(v->store, origins, &row, v->err);
 		if (status < 0 || !row)
 			break;
-		status = check_chain(v, chain, origins);
-		if (status >= 0)
-			status = check_own(v, origins, &first);
+		status = take_chain(v, origins, &first);
 	}
-	if (origins)
-		sqlite3_reset(origins);
-	sqlite3_finalize(chain);
+	if (v->chain_count)
+		qsort(v->chains, v->chain_count, sizeof *v->chains, by_row);
+	v->at = NULL;
+	return status;
+}
+
+static fl_status check_chains(verification *v) {
+	sqlite3_stmt *entries = NULL;
+	fl_status status = take_chains(v);
+	if (status >= 0 && sqlite3_prepare_v2(v->store->db, ENTRIES_TEXT, -1, &entries, NULL) != SQLITE_OK)
+		status = fl_sql_fail(v->store, v->err);
+	for (bool row = true; status >= 0;) {
+		status = fl_sql_step(v->store, entries, &row, v->err);
+		if (status < 0 || !row)
+			break;
+		status = check_entry(v, entries);
+	}
+	sqlite3_finalize(entries);
 	return status;
 }
 
@@ -540,9 +606,9 @@ static fl_status sum_used(fl_store *store, const uint64_t *hashes, int64_t count
 static fl_status name_used(verification *v) {
 	sqlite3_stmt *entries = NULL;
 	static const char *const text =
-	    "SELECT e.id, e.sequence, e.facts, o.digest, (SELECT group_concat(i.kind || char(9) "
+	    "SELECT e.id, e.sequence, e.facts, e.origin, (SELECT group_concat(i.kind || char(9) "
 	    "|| i.name, char(10)) FROM used u JOIN item i ON i.id = u.item WHERE u.entry = e.id) "
-	    "FROM entry e JOIN origin o ON o.id = e.origin ORDER BY e.id";
+	    "FROM entry e ORDER BY e.id";
 	if (sqlite3_prepare_v2(v->store->db, text, -1, &entries, NULL) != SQLITE_OK)
 		return fl_sql_fail(v->store, v->err);
 	fl_status status = FL_OK;
@@ -560,7 +626,7 @@ static fl_status name_used(verification *v) {
 			    mix(hash_item(at, kind, at + kind + 1, length - kind - 1) ^ (entry_row * UINT64_C(0x9e3779b97f4a7c15)));
 			at += length + (at[length] == '\n');
 		}
-		snprintf(v->origin, sizeof v->origin, "%s", fl_sql_column(entries, 3));
+		v->at = chain_of(v, sqlite3_column_int64(entries, 3));
 		if (sum != s.used)
 			status = misfit_of_number(v, sqlite3_column_int64(entries, 1), s.number,
 			                          "what fed it was changed in the table for looking up");
@@ -617,6 +683,7 @@ fl_status fl_store_verify(fl_store *store, bool deep, const fl_store_watch *watc
 	if (status >= 0)
 		status = verify_within(&v);
 	fl_sql_rollback(store);
+	fl_arena_free(&v.arena);
 	*out = v.counts;
 	return status;
 }
