@@ -202,9 +202,10 @@ typedef struct fl_cause_group {
 	size_t member_count, possible_count;
 	double effect_span; /* where it is largest */
 	double u_effect_span;
-	int largest_row;                 /* there */
-	double z;                        /* square root of the rise of chi-squared without the group */
-	bool material;                   /* larger than U there and than a quarter of the tolerance */
+	int largest_row; /* there */
+	double z;        /* square root of the rise of chi-squared without the group */
+	bool several;    /* no member alone does nearly as well as all together (chi-squared 9 more at best) */
+	bool material;   /* larger than U there and than a quarter of the tolerance */
 	fl_split splits[FL_SPLIT_COUNT]; /* cheapest first; only those not made yet that do split it */
 	size_t split_count;
 } fl_cause_group;

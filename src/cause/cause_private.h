@@ -52,7 +52,6 @@ typedef struct fl_cause_model {
 	double rho_dial;                   /* density between equivalent and dynamic viscosity */
 	double rho_full;                   /* density at full scale, for its kinetic term */
 	double dp_full_pa;                 /* of the sound instrument, by its geometry; 1 without geometry */
-	double leak_m3;                    /* k in Q = Q0 - k dP / mu */
 	const fl_setting_of_row *thickest; /* the row that COUPLING and LIMIT are measured at; NULL if none */
 } fl_cause_model;
 
@@ -98,8 +97,9 @@ typedef struct fl_fit {
 	bool at_bound[FL_FAULT_COUNT]; /* by column */
 	double *A;                     /* [n * p] whitened columns by one prior standard deviation */
 	double *S;                     /* [n * p] the same, not whitened */
-	double *covariance;            /* [p * p], of the amounts in prior standard deviations */
-	double *fitted;                /* [n] */
+	double *covariance; /* [p * p], of the amounts in prior standard deviations; 0 for those held at a bound */
+	double *unbounded;  /* [p * p], the same as if no bound held */
+	double *fitted;     /* [n] */
 	double chi_data, chi_total, dof;
 } fl_fit;
 

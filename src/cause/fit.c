@@ -22,8 +22,9 @@ static fl_status allocate(const fl_search *s, fl_fit *fit, fl_error *err) {
 	fit->A = fl_arena_alloc(s->arena, n * FL_FAULT_COUNT + 1, sizeof(double));
 	fit->S = fl_arena_alloc(s->arena, n * FL_FAULT_COUNT + 1, sizeof(double));
 	fit->covariance = fl_arena_alloc(s->arena, (size_t)FL_FAULT_COUNT * FL_FAULT_COUNT, sizeof(double));
+	fit->unbounded = fl_arena_alloc(s->arena, (size_t)FL_FAULT_COUNT * FL_FAULT_COUNT, sizeof(double));
 	fit->fitted = fl_arena_alloc(s->arena, n + 1, sizeof(double));
-	if (!fit->A || !fit->S || !fit->covariance || !fit->fitted)
+	if (!fit->A || !fit->S || !fit->covariance || !fit->unbounded || !fit->fitted)
 		return fl_fail(err, FL_E_MEMORY, "out of memory for a fit of %zu rows", n);
 	return FL_OK;
 }
@@ -213,6 +214,9 @@ static bool take_covariance(const quadratic *q, fl_fit *fit) {
 			H[i * m + j] = q->H[free_of[i] * p + free_of[j]];
 	if (!fl_cause_invert(H, m, inverse))
 		return false;
+	memcpy(H, q->H, p * p * sizeof(double));
+	if (!fl_cause_invert(H, p, fit->unbounded))
+		return false;
 	memset(fit->covariance, 0, p * p * sizeof(double));
 	fit->dof = (double)fit->n;
 	for (size_t i = 0; i < m; i++) {
@@ -242,7 +246,7 @@ static void take_chi(const fl_search *s, const double *L, fl_fit *fit) {
 static fl_status iterate(const fl_search *s, const double *L, fl_fit *fit, fl_error *err) {
 	quadratic q;
 	double moved = INFINITY;
-	for (int turn = 0; turn < TURNS && moved > 1e-6; turn++) {
+	for (int turn = 0; turn < TURNS && moved > 1e-5; turn++) {
 		TRY(linearise(s, L, fit, err));
 		set_up(s, L, fit, &q);
 		if (!solve_bounded(&q))

@@ -12,7 +12,7 @@
 
 static const double same_direction = 0.98, same_effect = 0.95;
 static const double possible_penalty = 9.0; /* three standard deviations */
-static const double least_p = 0.01;
+static const double least_p = 0.01, needed_z = 1.0;
 
 /* ---- which faults to try ---- */
 
@@ -83,11 +83,11 @@ static void effect_vector(const fl_fit *fit, const int *group, int g, size_t row
 		v[j] = group[j] == g ? fit->S[row * fit->p + j] : 0.0;
 }
 
-static double quadratic_form(const fl_fit *fit, const double *a, const double *b) {
+static double quadratic_form(const double *C, size_t p, const double *a, const double *b) {
 	double sum = 0.0;
-	for (size_t i = 0; i < fit->p; i++)
-		for (size_t j = 0; j < fit->p; j++)
-			sum += a[i] * fit->covariance[i * fit->p + j] * b[j];
+	for (size_t i = 0; i < p; i++)
+		for (size_t j = 0; j < p; j++)
+			sum += a[i] * C[i * p + j] * b[j];
 	return sum;
 }
 
@@ -111,8 +111,9 @@ static double effect_correlation(const fl_search *s, const fl_fit *fit, const in
 	double va[FL_FAULT_COUNT], vb[FL_FAULT_COUNT];
 	effect_vector(fit, group, a, strongest_row(s, fit, group, a), va);
 	effect_vector(fit, group, b, strongest_row(s, fit, group, b), vb);
-	double uu = quadratic_form(fit, va, va) * quadratic_form(fit, vb, vb);
-	return uu > 0.0 ? quadratic_form(fit, va, vb) / sqrt(uu) : 0.0;
+	const double *C = fit->unbounded; /* a bound that holds now hides what could stand in for what */
+	double uu = quadratic_form(C, fit->p, va, va) * quadratic_form(C, fit->p, vb, vb);
+	return uu > 0.0 ? quadratic_form(C, fit->p, va, vb) / sqrt(uu) : 0.0;
 }
 
 static bool merge_correlated(const fl_search *s, const fl_fit *fit, int *group) {
@@ -154,14 +155,20 @@ double fl_cause_alone(const fl_search *s, const fl_row_data *row, fl_fault fault
 		at.amount[fault] = s->start.amount[fault] + amount;
 		fl_status status = fl_cause_predict(&s->model, &row->at, &at, &now, NULL);
 		at.amount[fault] += size;
-		if (status < 0 || fl_cause_predict(&s->model, &row->at, &at, &near, NULL) < 0 || near == now)
+		if (status < 0 || fl_cause_predict(&s->model, &row->at, &at, &near, NULL) < 0)
 			return NAN;
+		if (near == now) { /* not yet where the fault begins to be seen */
+			amount += 0.02 * kind->prior;
+			continue;
+		}
 		double change = (base + effect_span - now) * size / (near - now);
 		amount += change;
 		if (fabs(change) < 1e-9 * kind->prior)
 			break;
 	}
-	return isfinite(amount) && amount >= kind->least - 1e-9 ? amount : NAN;
+	at.amount[fault] = s->start.amount[fault] + amount;
+	bool reached = fl_cause_predict(&s->model, &row->at, &at, &now, NULL) >= 0 && fabs(base + effect_span - now) < 1e-6;
+	return isfinite(amount) && reached && amount >= kind->least - 1e-9 ? amount : NAN;
 }
 
 /* Effect of the group's faults together, the physics run with and without them. */
@@ -182,7 +189,7 @@ static fl_status take_effect(const fl_search *s, const fl_fit *fit, const int *g
 		}
 	}
 	effect_vector(fit, group, g, (size_t)out->largest_row, v);
-	out->u_effect_span = sqrt(quadratic_form(fit, v, v));
+	out->u_effect_span = sqrt(quadratic_form(fit->covariance, fit->p, v, v));
 	return FL_OK;
 }
 
@@ -228,10 +235,11 @@ static fl_status judge_members(const fl_search *s, const bool use[FL_FAULT_COUNT
 		if (!isnan(m->alone))
 			best = fmin(best, m->penalty);
 	}
+	g->several = isfinite(best) && best - chi_all > possible_penalty;
 	for (size_t i = 0; i < g->member_count; i++) {
 		fl_cause_member *m = &g->members[i];
 		m->penalty = isnan(m->alone) || !isfinite(best) ? INFINITY : m->penalty - best;
-		m->possible = !isnan(m->alone) && m->penalty <= possible_penalty;
+		m->possible = m->penalty <= possible_penalty || (g->several && isfinite(m->penalty));
 		g->possible_count += m->possible;
 	}
 	TRY(chi_with(s, use, g, g->member_count, &without, err));
@@ -299,6 +307,8 @@ static void give_rows(fl_search *s, const fl_fit *fit) {
 }
 
 static void give_estimates(fl_search *s, const fl_fit *fit, const int *group) {
+	for (fl_fault fault = 0; fault < FL_FAULT_COUNT; fault++)
+		s->out->estimates[fault] = (fl_cause_estimate){.fault = fault, .amount = NAN, .u = NAN, .group = -1};
 	for (size_t j = 0; j < fit->p; j++) {
 		fl_cause_estimate *e = &s->out->estimates[fit->columns[j]];
 		e->fitted = true;
@@ -348,6 +358,7 @@ static double condition_of(const fl_fit *fit) {
 static fl_status give_groups(fl_search *s, const bool use[FL_FAULT_COUNT], const fl_fit *fit, const int *group,
                              int count, fl_error *err) {
 	fl_cause *out = s->out;
+	out->group_count = 0;
 	out->groups = fl_arena_alloc(s->arena, (size_t)count + 1, sizeof *out->groups);
 	if (!out->groups)
 		return fl_fail(err, FL_E_MEMORY, "out of memory for %d groups", count);
@@ -364,10 +375,23 @@ static fl_status give_groups(fl_search *s, const bool use[FL_FAULT_COUNT], const
 	return FL_OK;
 }
 
-fl_status fl_cause_attribute(fl_search *s, fl_error *err) {
-	bool use[FL_FAULT_COUNT];
+/* A group that takes a share of the errors without being needed for it: the others do as well without. */
+static bool leave_out_idle(const fl_cause *out, bool use[FL_FAULT_COUNT]) {
+	bool any = false;
+	for (size_t g = 0; g < out->group_count; g++) {
+		const fl_cause_group *group = &out->groups[g];
+		if (!group->material || group->z >= needed_z)
+			continue;
+		any = true;
+		for (size_t i = 0; i < group->member_count; i++)
+			use[group->members[i].fault] = false;
+	}
+	return any;
+}
+
+static fl_status attribute_to(fl_search *s, const bool use[FL_FAULT_COUNT], fl_error *err) {
 	fl_fit *fit = &s->fit;
-	choose_faults(s, use);
+	fl_cause *out = s->out;
 	TRY(fl_cause_fit(s, use, fit, err));
 	group_by_direction(fit, s->group);
 	while (merge_correlated(s, fit, s->group))
@@ -375,11 +399,19 @@ fl_status fl_cause_attribute(fl_search *s, fl_error *err) {
 	int count = number_groups(fit, s->group);
 	give_rows(s, fit);
 	give_estimates(s, fit, s->group);
-	fl_cause *out = s->out;
 	out->chi_squared = fit->chi_data;
 	out->dof = fit->dof;
 	out->p = fl_numeric_chi_squared_tail(fit->chi_data, fit->dof);
 	out->explained = !(out->p < least_p);
 	out->condition = condition_of(fit);
 	return give_groups(s, use, fit, s->group, count, err);
+}
+
+fl_status fl_cause_attribute(fl_search *s, fl_error *err) {
+	bool use[FL_FAULT_COUNT];
+	choose_faults(s, use);
+	TRY(attribute_to(s, use, err));
+	for (int turn = 0; turn < 3 && leave_out_idle(s->out, use); turn++)
+		TRY(attribute_to(s, use, err));
+	return FL_OK;
 }

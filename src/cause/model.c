@@ -18,9 +18,13 @@ static const double fuel_density_kg_m3 = 900.0;
 static const double leg_density_kg_m3 = 850.0;
 static const double ten_bar_pa = 1e6;
 
+static double pow4(double v) {
+	return v * v * v * v;
+}
+
 /* Tube resistance 128 l / (pi d^4): dP = mu Q times this. */
 static double resistance(double length_m, double bore_m) {
-	return 128.0 * length_m / (pi * pow(bore_m, 4.0));
+	return 128.0 * length_m / (pi * pow4(bore_m));
 }
 
 /* ---- what the pump delivers, and the pressure it costs ---- */
@@ -29,40 +33,44 @@ typedef struct oil_now {
 	double mu_pa_s, rho_kg_m3;
 } oil_now;
 
-static fl_status pressure_at(const fl_capillary *capillary, const fl_faults *faults, oil_now oil, double *dp_pa,
-                             fl_error *err) {
+/* The part of dP that goes with the flow, and the part that goes with its square. */
+typedef struct drop {
+	double viscous_pa, kinetic_pa;
+} drop;
+
+static fl_status drop_at(const fl_capillary *capillary, double particle_m, oil_now oil, drop *out, fl_error *err) {
 	fl_flow flow;
 	TRY(fl_physics_capillary(capillary, oil.mu_pa_s, oil.rho_kg_m3, &flow, err));
-	double narrowing = pow(particle_bore_ratio, -4.0), length_m = faults->amount[FL_FAULT_PARTICLE];
-	double gain_pa = oil.mu_pa_s * flow.flow_m3_s * resistance(length_m, capillary->bore_m) * (narrowing - 1.0);
-	double v_m_s = flow.velocity_m_s;
-	/* The loss at its ends is there as soon as there is a particle; its length is measured in mm of half bore. */
-	double ends_pa = 0.5 * particle_loss * oil.rho_kg_m3 * v_m_s * v_m_s * narrowing * (length_m / 1e-3);
-	*dp_pa = flow.dp_total_pa + gain_pa + ends_pa;
+	double bore_m = capillary->bore_m, narrowing = 1.0 / pow4(particle_bore_ratio), v_m_s = flow.velocity_m_s;
+	double gain_pa = oil.mu_pa_s * flow.flow_m3_s * resistance(particle_m, bore_m) * (narrowing - 1.0);
+	/* The loss at its ends is taken in proportion to its length, so that one number says how much there is of it. */
+	double ends_pa = 0.5 * particle_loss * oil.rho_kg_m3 * v_m_s * v_m_s * narrowing * (particle_m / 1e-3);
+	*out = (drop){flow.dp_poiseuille_pa + flow.dp_end_pa + gain_pa, flow.dp_kinetic_pa + ends_pa};
 	return FL_OK;
 }
 
-/* Q = Q0 - k dP(Q) / mu, found by going round: each turn leaves the share that slips of the one before. */
+/* k in Q = Q0 - k dP / mu: a sound pump loses slip_fraction to the plain tube. */
+static double leak_of(const fl_cause_model *m, const fl_faults *faults) {
+	const fl_capillary *c = &m->instrument->capillary;
+	return (c->slip_fraction + faults->amount[FL_FAULT_SLIP]) / resistance(c->length_m, c->bore_m);
+}
+
+/* Q = Q0 - k dP(Q) / mu: with q = Q / Q0 a quadratic, r b q^2 + (1 + r a) q - 1 = 0, r = k / (mu Q0), a and b the
+ * viscous and kinetic drop at Q0. */
 static fl_status pressure_with_slip(const fl_cause_model *m, const fl_faults *faults, oil_now oil, double *dp_pa,
                                     fl_error *err) {
 	const double *a = faults->amount;
 	fl_capillary c = m->instrument->capillary;
-	double sound_leak = m->instrument->capillary.slip_fraction;
-	double leak_m3 = sound_leak > 0.0 ? m->leak_m3 * (sound_leak + a[FL_FAULT_SLIP]) / sound_leak
-	                                  : a[FL_FAULT_SLIP] / resistance(c.length_m, c.bore_m);
+	drop full;
+	c.slip_fraction = 0.0;
 	c.bore_m *= 1.0 - a[FL_FAULT_DEPOSIT];
 	c.pump_speed_rev_s *= (1.0 + a[FL_FAULT_SPEED]) * (1.0 - a[FL_FAULT_AIR]);
 	c.kinetic_coefficient *= fmax(0.0, 1.0 + a[FL_FAULT_KINETIC]);
-	double delivered = c.displacement_m3_rev * c.pump_speed_rev_s;
-	double slip = 0.0;
-	for (int turn = 0; turn < 60; turn++) {
-		c.slip_fraction = slip;
-		TRY(pressure_at(&c, faults, oil, dp_pa, err));
-		double next = fmin(0.95, leak_m3 * *dp_pa / oil.mu_pa_s / delivered);
-		if (fabs(next - slip) < 1e-14)
-			break;
-		slip = next;
-	}
+	TRY(drop_at(&c, a[FL_FAULT_PARTICLE], oil, &full, err));
+	double r = leak_of(m, faults) / (oil.mu_pa_s * c.displacement_m3_rev * c.pump_speed_rev_s);
+	double half = 1.0 + r * full.viscous_pa;
+	double q = 2.0 / (half + sqrt(half * half + 4.0 * r * full.kinetic_pa));
+	*dp_pa = full.viscous_pa * q + full.kinetic_pa * q * q;
 	return FL_OK;
 }
 
@@ -214,9 +222,6 @@ fl_status fl_cause_model_begin(const fl_instrument *instrument, fl_cause_model *
 	if (!(m.rho_dial > 0.0))
 		return fl_fail(err, FL_E_VALUE, "the dial density of %s is not known: no signature can be computed",
 		               instrument->tag);
-	const fl_capillary *c = &instrument->capillary;
-	if (instrument->has_geometry) /* a sound pump loses slip_fraction to the plain tube */
-		m.leak_m3 = c->slip_fraction / resistance(c->length_m, c->bore_m);
 	fl_faults none = {{0}};
 	oil_now full = {m.high_m2_s * m.rho_dial, m.rho_full};
 	double share;

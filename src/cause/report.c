@@ -23,6 +23,11 @@ static bool is_named(const fl_cause_group *g) {
 	return g->material && g->z >= named_from_z && g->possible_count > 0;
 }
 
+/* It would do much, but the others could do as well without it. */
+static bool is_open(const fl_cause_group *g) {
+	return g->material && !is_named(g) && g->possible_count > 0;
+}
+
 /* ---- members ---- */
 
 static const char *member_text(fl_search *s, const fl_cause_member *m) {
@@ -148,11 +153,17 @@ static const char *splits_text(fl_search *s, const fl_cause_group *g) {
 	return fl_cause_text(s, "%s.", text);
 }
 
+static const char *group_words(const fl_cause_group *g) {
+	if (!is_named(g))
+		return "The readings leave open whether any of these is there at all; other faults could take their place";
+	if (g->several)
+		return "The readings cannot tell these apart, and none alone is enough";
+	return "The readings cannot tell these apart; any of them alone, or several together, would do it";
+}
+
 static void say_group(fl_search *s, const fl_cause_group *g) {
-	fl_finding *f =
-	    fl_cause_say(s, FL_FINDING_GROUP, group_id(s, "cause-group", g),
-	                 "The readings cannot tell these apart; any of them alone, or several together, would do it: %s.",
-	                 members_text(s, g));
+	fl_finding *f = fl_cause_say(s, FL_FINDING_GROUP, group_id(s, is_named(g) ? "cause-group" : "cause-group-open", g),
+	                             "%s: %s.", group_words(g), members_text(s, g));
 	fl_cause_advise(s, f, splits_text(s, g), "Together they make %s of span at %s, standard uncertainty %s.%s",
 	                fl_cause_percent(s, g->effect_span, 2), s->rows[g->largest_row].name,
 	                fl_cause_amount(s, g->u_effect_span, FL_U_PERCENT, 2), excluded_text(s, g));
@@ -160,7 +171,7 @@ static void say_group(fl_search *s, const fl_cause_group *g) {
 	if (!f)
 		return;
 	f->z = g->z;
-	f->strength = fl_cause_strength(g->z);
+	f->strength = is_named(g) ? fl_cause_strength(g->z) : FL_STRENGTH_NONE;
 }
 
 /* ---- nothing explains it, or nothing asks ---- */
@@ -212,10 +223,10 @@ static void say_causes(fl_search *s) {
 		return;
 	}
 	for (size_t g = 0; g < out->group_count; g++) {
-		if (!is_named(&out->groups[g]))
+		if (!is_named(&out->groups[g]) && !is_open(&out->groups[g]))
 			continue;
 		named++;
-		if (out->groups[g].possible_count == 1)
+		if (is_named(&out->groups[g]) && out->groups[g].possible_count == 1 && !out->groups[g].several)
 			say_cause(s, &out->groups[g]);
 		else
 			say_group(s, &out->groups[g]);
