@@ -411,7 +411,7 @@ fl_status fl_cause_attribute(fl_search *s, fl_error *err) {
 	bool use[FL_FAULT_COUNT];
 	choose_faults(s, use);
 	TRY(attribute_to(s, use, err));
-	for (int turn = 0; turn < 3 && leave_out_idle(s->out, use); turn++)
+	for (int turn = 0; turn < 3 && s->out->explained && leave_out_idle(s->out, use); turn++)
 		TRY(attribute_to(s, use, err));
 	return FL_OK;
 }

@@ -157,16 +157,28 @@ static fl_status flowing_output(const fl_cause_model *m, const fl_setting_of_row
 	return FL_OK;
 }
 
-/* Where output or torque end: below what the thickest oil would give by the loss there, once it has settled and is
- * clean. */
-static fl_status hold_below(const fl_cause_model *m, const fl_faults *faults, double loss, double *y, fl_error *err) {
-	double top;
+static fl_faults settled_and_clean(const fl_faults *faults) {
 	fl_faults settled = *faults;
 	settled.amount[FL_FAULT_LAG] = settled.amount[FL_FAULT_CARRY_OVER] = 0.0;
+	return settled;
+}
+
+/* Where torque or output end: the thickest oil loses `loss`, a thinner one what it has above that. What lag and remains
+ * of the oil before do to a reading stays on top: a coupling that slips does not hold the pressure dead. */
+static fl_status take_loss(const fl_cause_model *m, const fl_setting_of_row *row, const fl_faults *faults, double loss,
+                           double *y, fl_error *err) {
+	double top, own = *y;
+	fl_faults settled = settled_and_clean(faults);
 	if (loss == 0.0 || !m->thickest)
 		return FL_OK;
+	if (row->oil == m->thickest->oil) {
+		*y -= loss;
+		return FL_OK;
+	}
 	TRY(flowing_output(m, m->thickest, &settled, &top, err));
-	*y = fmin(*y, top - loss);
+	if (row->oil)
+		TRY(flowing_output(m, row, &settled, &own, err));
+	*y -= fmax(0.0, own - (top - loss));
 	return FL_OK;
 }
 
@@ -198,12 +210,12 @@ fl_status fl_cause_predict(const fl_cause_model *m, const fl_setting_of_row *row
 		return FL_OK;
 	case FL_ROW_OIL: /* torque and output ends look alike here: their losses add */
 		TRY(flowing_output(m, row, faults, &y, err));
-		TRY(hold_below(m, faults, a[FL_FAULT_COUPLING] + a[FL_FAULT_LIMIT], &y, err));
+		TRY(take_loss(m, row, faults, a[FL_FAULT_COUPLING] + a[FL_FAULT_LIMIT], &y, err));
 		break;
 	case FL_ROW_STOPPED:
 	case FL_ROW_INJECTED:
 		y = transmit(m, row, faults, row->x, row->kind == FL_ROW_INJECTED ? row->x : 0.0);
-		TRY(hold_below(m, faults, a[FL_FAULT_LIMIT], &y, err));
+		TRY(take_loss(m, row, faults, a[FL_FAULT_LIMIT], &y, err));
 		break;
 	}
 	*value = y - row->x;
