@@ -319,40 +319,39 @@ static void give_estimates(fl_search *s, const fl_fit *fit, const int *group) {
 	}
 }
 
-/* Square root of the ratio of the extreme eigenvalues of A'A + 1, by power iteration on it and on its inverse. */
+/* The largest eigenvalue of a positive definite matrix, by power iteration. */
+static double largest_eigenvalue(const double *M, size_t p) {
+	double v[FL_FAULT_COUNT], next[FL_FAULT_COUNT], norm = 1.0;
+	for (size_t j = 0; j < p; j++)
+		v[j] = 1.0 + 0.01 * (double)j;
+	for (int turn = 0; turn < 200; turn++) {
+		norm = 0.0;
+		for (size_t j = 0; j < p; j++) {
+			next[j] = 0.0;
+			for (size_t k = 0; k < p; k++)
+				next[j] += M[j * p + k] * v[k];
+			norm += next[j] * next[j];
+		}
+		norm = sqrt(norm);
+		for (size_t j = 0; j < p; j++)
+			v[j] = next[j] / norm;
+	}
+	return norm;
+}
+
+/* Square root of the ratio of the extreme eigenvalues of A'A + 1; its inverse is at hand. */
 static double condition_of(const fl_fit *fit) {
 	size_t p = fit->p;
-	double H[FL_FAULT_COUNT * FL_FAULT_COUNT], inverse[FL_FAULT_COUNT * FL_FAULT_COUNT], ratio = 1.0;
-	double copy[FL_FAULT_COUNT * FL_FAULT_COUNT];
+	double H[FL_FAULT_COUNT * FL_FAULT_COUNT] = {0};
+	if (p == 0)
+		return NAN;
 	for (size_t j = 0; j < p; j++)
 		for (size_t k = 0; k < p; k++) {
 			H[j * p + k] = j == k ? 1.0 : 0.0;
 			for (size_t i = 0; i < fit->n; i++)
 				H[j * p + k] += fit->A[i * p + j] * fit->A[i * p + k];
 		}
-	memcpy(copy, H, sizeof copy);
-	if (p == 0 || !fl_cause_invert(copy, p, inverse))
-		return NAN;
-	for (int which = 0; which < 2; which++) {
-		const double *M = which ? inverse : H;
-		double v[FL_FAULT_COUNT], next[FL_FAULT_COUNT], norm = 1.0;
-		for (size_t j = 0; j < p; j++)
-			v[j] = 1.0 + 0.01 * (double)j;
-		for (int turn = 0; turn < 200; turn++) {
-			norm = 0.0;
-			for (size_t j = 0; j < p; j++) {
-				next[j] = 0.0;
-				for (size_t k = 0; k < p; k++)
-					next[j] += M[j * p + k] * v[k];
-				norm += next[j] * next[j];
-			}
-			norm = sqrt(norm);
-			for (size_t j = 0; j < p; j++)
-				v[j] = next[j] / norm;
-		}
-		ratio *= norm;
-	}
-	return sqrt(ratio);
+	return sqrt(largest_eigenvalue(H, p) * largest_eigenvalue(fit->unbounded, p));
 }
 
 static fl_status give_groups(fl_search *s, const bool use[FL_FAULT_COUNT], const fl_fit *fit, const int *group,

@@ -37,12 +37,13 @@ static double variance_after(const question *q, const double *v, const double *s
 	return form(q, v, v) - vs * vs / (u * u + form(q, s, s));
 }
 
-/* Index of the group that matters: material and strongest. */
+/* Index of the group that matters: material, and the least certain. */
 static int group_of_interest(const fl_cause *out) {
 	int best = -1;
 	for (size_t g = 0; g < out->group_count; g++) {
 		const fl_cause_group *group = &out->groups[g];
-		if (group->material && group->possible_count && (best < 0 || group->z > out->groups[best].z))
+		if (group->material && group->possible_count &&
+		    (best < 0 || group->u_effect_span > out->groups[best].u_effect_span))
 			best = (int)g;
 	}
 	return best;

@@ -308,14 +308,13 @@ static void say_trim(fl_search *s) {
 	        ? fl_cause_text(s, "Lower range value at %.2f mbar, upper range value at %.2f mbar.",
 	                        fl_from_inside(t->dp_low_pa, FL_U_MBAR), fl_from_inside(t->dp_high_pa, FL_U_MBAR))
 	        : "";
-	bool leave = s->run->inside_adjust_limit;
-	fl_cause_advise(s, f,
-	                !t->brings_in  ? "Repair, do not adjust."
-	                : s->out->stop ? "Not before the findings above are cleared up."
-	                : leave        ? "Inside the adjust limit: leave it alone."
-	                               : pressures,
-	                "%s%sNo zero and span whatever would leave less than %s of span.", t->brings_in ? pressures : "",
-	                t->brings_in && pressures[0] ? " " : "", fl_cause_amount(s, t->ideal_after_span, FL_U_PERCENT, 2));
+	const char *advice = !t->brings_in                 ? "Repair, do not adjust."
+	                     : s->out->stop                ? "Not before the findings above are cleared up."
+	                     : s->run->inside_adjust_limit ? "Inside the adjust limit: leave it alone."
+	                                                   : "Adjust, then read all points again as as-left.";
+	fl_cause_advise(s, f, advice, "%s%sNo zero and span whatever would leave less than %s of span.",
+	                t->brings_in ? pressures : "", t->brings_in && pressures[0] ? " " : "",
+	                fl_cause_amount(s, t->ideal_after_span, FL_U_PERCENT, 2));
 	fl_cause_number_of(s, f, "zero to take out", t->zero_span, NAN, FL_U_PERCENT_SPAN);
 	fl_cause_number_of(s, f, "gain to take out", t->gain, NAN, FL_U_PERCENT);
 	fl_cause_number_of(s, f, "lower range value", t->dp_low_pa, NAN, FL_U_MBAR);
@@ -326,9 +325,14 @@ static void say_trim(fl_search *s) {
 
 /* ---- next point ---- */
 
+/* A point that takes less than a tenth off the uncertainty is not worth an oil. */
+static const double worth_an_oil = 0.9;
+
 static void say_next(fl_search *s) {
 	const fl_next_point *n = &s->out->next;
 	if (!n->available || s->out->withheld || !s->out->explained)
+		return;
+	if (!n->splits && n->u_after > worth_an_oil * n->u_before)
 		return;
 	fl_finding *f = fl_cause_say(s, FL_FINDING_NEXT_POINT, "next-point",
 	                             "%s at %g °C (%.0f %% of span) would tell most: it takes the standard "
