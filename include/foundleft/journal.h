@@ -46,7 +46,10 @@
 	X(FL_V_REMARK, "remark", "a remark: typed")                                                          \
 	X(FL_V_TORN, "torn", "an unfinished line was found behind the last good one and cut off: body")      \
 	X(FL_V_RESUME, "resume", "the session was taken up again: program, source")                          \
-	X(FL_V_CLOSE, "close", "the session is closed: by")
+	X(FL_V_CLOSE, "close", "the session is closed: by")                                                  \
+	X(FL_V_ISSUE, "issue",                                                                               \
+	  "a certificate is issued: id (its number), day, program, item (the journal's name); name and "     \
+	  "body (issuer and address), about and reason (number it amends, and why), by (who authorises it)")
 
 typedef enum fl_verb {
 #define FL_VERB_ENUM(name, word, meaning) name,
@@ -213,6 +216,19 @@ typedef struct fl_remark {
 	const char *typed;
 } fl_remark;
 
+/* A certificate as issued: all that the session itself does not say. NULL where absent. */
+typedef struct fl_session_issue {
+	int sequence;
+	fl_utc at;
+	const char *number;
+	fl_day day;
+	const char *program;      /* version that made it */
+	const char *journal_name; /* as it stands on the certificate */
+	const char *issuer, *address;
+	const char *amends, *reason; /* number of the certificate that this one replaces, and why */
+	const char *authorised_by;
+} fl_session_issue;
+
 /* What was read, in the order of the journal. No behaviour; built only by fl_session_apply. */
 typedef struct fl_session {
 	fl_arena arena;
@@ -246,14 +262,16 @@ typedef struct fl_session {
 	int questions; /* times the program asked back and was confirmed */
 	bool closed;
 	const char *closed_by;
+	fl_session_issue *issues; /* certificates, in the order of their issue */
+	size_t issue_count, issue_capacity;
 	int last_sequence;
 	fl_utc last_at;
 } fl_session;
 
 /* Takes one event into the session. FL_E_STATE where the order of work forbids it (a reading in a closed run, an
  * adjustment before the as-found run is closed or declared missing, an as-found reading after an adjustment, an
- * as-left run before the decision, anything but a remark after close), FL_E_VALUE where a field makes no sense.
- * On failure the session is unchanged. */
+ * as-left run before the decision, anything but a remark or a certificate after close), FL_E_VALUE where a field makes
+ * no sense. On failure the session is unchanged. */
 fl_status fl_session_apply(fl_session *session, const fl_event *event, fl_error *err) FL_MUST_USE;
 void fl_session_free(fl_session *session);
 /* The setting that counts, NULL if none. */
@@ -262,6 +280,10 @@ const fl_gate_answer *fl_session_gate(const fl_session *session, const char *id)
 const char *fl_session_equipment_id(const fl_session *session, fl_role role); /* NULL if none */
 /* The body of the text of `kind` and `name` (NULL: the first of that kind); NULL if none. */
 const char *fl_session_text_body(const fl_session *session, const char *kind, const char *name);
+/* The certificate of that number, NULL if none was issued. */
+const fl_session_issue *fl_session_issue_of(const fl_session *session, const char *number);
+/* The certificate that amends that one, NULL if none does. */
+const fl_session_issue *fl_session_amended_by(const fl_session *session, const char *number);
 
 /* Does this session need an as-left run: after an adjustment, or where there is no as-found run to stand for it. */
 bool fl_session_wants_as_left(const fl_session *session);
@@ -293,6 +315,15 @@ fl_status fl_journal_resume(fl_journal *journal, const fl_io *io, const char *pa
 /* Reads only: verifies and replays, ignores an unfinished last line (*torn tells). head[] gets the digest. */
 fl_status fl_journal_read(const fl_io *io, const char *path, fl_session *session, char head[FL_DIGEST_HEX_SIZE],
                           bool *torn, fl_error *err) FL_MUST_USE;
+/* The journal as it stood when that line was written: session and head of its first lines, up to and with `sequence`.
+ * The file is verified whole. *bytes (arena memory) are those lines, *length of them. FL_E_NOT_FOUND where there is no
+ * such line. */
+fl_status fl_journal_read_to(const fl_io *io, const char *path, int sequence, fl_session *session,
+                             char head[FL_DIGEST_HEX_SIZE], fl_arena *arena, char **bytes, size_t *length,
+                             fl_error *err) FL_MUST_USE;
+/* The digest that the line of this event would have if it were committed next; writes nothing. */
+fl_status fl_journal_foresee(const fl_journal *journal, fl_event *event, char head[FL_DIGEST_HEX_SIZE],
+                             fl_error *err) FL_MUST_USE;
 /* Checks the event against the session, writes it, flushes it to disk, then takes it into the session. The event's
  * sequence is set here. When it returns FL_OK the entry is committed; otherwise nothing changed. */
 fl_status fl_journal_commit(fl_journal *journal, fl_event *event, fl_error *err) FL_MUST_USE;

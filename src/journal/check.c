@@ -14,7 +14,10 @@
  *   5. The as-left run begins after at least one adjustment, or where nothing was adjusted and as-found is missing.
  *   6. An oil or an item of equipment is named only after its text stands in the record.
  *   7. A current outside the measuring range of NAMUR NE 43 is never a reading.
- *   8. After `close` come only remarks, and the lines that the program writes about itself (torn, resume).
+ *   8. After `close` come only remarks, certificates, and the lines that the program writes about itself (torn,
+ * resume).
+ *   9. A certificate is issued only after `close`, each number once; every further one of the same session amends the
+ *      latest, with its reason.
  *
  * SPDX-License-Identifier: GPL-3.0-or-later
  */
@@ -230,6 +233,36 @@ static fl_status check_close(const fl_session *s, fl_error *err) {
 	return FL_OK;
 }
 
+/* A number of another journal may be amended by the first certificate of this one: the work was done again. */
+static fl_status check_amends(const fl_session *s, const fl_event *e, fl_error *err) {
+	const char *amends = field(e, FL_F_ABOUT);
+	if (!amends != !field(e, FL_F_REASON))
+		return fl_fail(err, FL_E_VALUE, "a certificate that amends another says which one and why");
+	if (s->issue_count == 0)
+		return FL_OK;
+	const fl_session_issue *latest = &s->issues[s->issue_count - 1];
+	if (!amends)
+		return fl_fail(err, FL_E_STATE, "certificate %s was issued of this session: another one must amend it",
+		               latest->number);
+	if (strcmp(amends, latest->number) != 0)
+		return fl_fail(err, FL_E_STATE, "the latest certificate of this session is %s: amend that one", latest->number);
+	return FL_OK;
+}
+
+static fl_status check_issue(const fl_session *s, const fl_event *e, fl_error *err) {
+	fl_day day = FL_NO_DAY;
+	if (!s->closed)
+		return fl_fail(err, FL_E_STATE, "the session is still open: a certificate is issued of a closed one");
+	if (fl_session_issue_of(s, field(e, FL_F_ID)))
+		return fl_fail(err, FL_E_STATE, "certificate %s was issued already", field(e, FL_F_ID));
+	if (field(e, FL_F_ABOUT) && strcmp(field(e, FL_F_ABOUT), field(e, FL_F_ID)) == 0)
+		return fl_fail(err, FL_E_VALUE, "a certificate cannot amend itself: give it a number of its own");
+	fl_status status = fl_day_parse(field(e, FL_F_DAY), &day, err);
+	if (status >= 0 && day < s->day)
+		return fl_fail(err, FL_E_VALUE, "the day of issue lies before the day of the calibration");
+	return status < 0 ? status : check_amends(s, e, err);
+}
+
 static fl_status check_frame(const fl_session *s, const fl_event *e, fl_error *err) {
 	if (e->sequence != s->last_sequence + 1)
 		return fl_fail(err, FL_E_VALUE, "entry %d cannot follow entry %d", e->sequence, s->last_sequence);
@@ -237,7 +270,7 @@ static fl_status check_frame(const fl_session *s, const fl_event *e, fl_error *e
 		return fl_fail(err, FL_E_STATE,
 		               s->last_sequence == 0 ? "a journal begins with an entry \"open\""
 		                                     : "the session is open already");
-	if (s->closed && e->verb != FL_V_REMARK && e->verb != FL_V_TORN && e->verb != FL_V_RESUME)
+	if (s->closed && e->verb != FL_V_REMARK && e->verb != FL_V_TORN && e->verb != FL_V_RESUME && e->verb != FL_V_ISSUE)
 		return fl_fail(err, FL_E_STATE, "the session is closed: only a remark can be added");
 	return FL_OK;
 }
@@ -281,6 +314,8 @@ fl_status fl_session_check(const fl_session *s, const fl_event *e, fl_error *err
 		return check_adjust(s, err);
 	case FL_V_CLOSE:
 		return check_close(s, err);
+	case FL_V_ISSUE:
+		return check_issue(s, e, err);
 	case FL_V_GATE:
 	case FL_V_INDICATIVE:
 	case FL_V_QUESTION:

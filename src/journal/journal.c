@@ -141,6 +141,53 @@ fl_status fl_journal_read(const fl_io *io, const char *path, fl_session *session
 	return status;
 }
 
+/* The line of that number, with its LF; NULL where there are not so many. */
+static const char *end_of_line(const char *bytes, size_t length, int number) {
+	const char *at = bytes;
+	for (int i = 0; i < number; i++) {
+		const char *newline = memchr(at, '\n', (size_t)(bytes + length - at));
+		if (!newline)
+			return NULL;
+		at = newline + 1;
+	}
+	return at;
+}
+
+/* Whole first, so that nothing behind the line is damaged either; then again up to the line, if there is more. */
+static fl_status replay_to(const char *bytes, size_t length, const char *path, int sequence, fl_session *session,
+                           char head[FL_DIGEST_HEX_SIZE], size_t *part, fl_error *err) {
+	fl_hasher *hasher = NULL;
+	replayed what = {0};
+	fl_status status = fl_hasher_new(&hasher, err);
+	if (status >= 0)
+		status = replay(hasher, bytes, length, path, session, head, &what, err);
+	const char *end = status >= 0 && sequence > 0 ? end_of_line(bytes, what.good, sequence) : NULL;
+	if (status >= 0 && !end)
+		status = fl_fail_at(err, FL_E_NOT_FOUND, (fl_place){.file = path}, "the journal has no line %d", sequence);
+	*part = end ? (size_t)(end - bytes) : 0;
+	if (status >= 0 && *part < what.good) {
+		fl_session_free(session);
+		status = replay(hasher, bytes, *part, path, session, head, &what, err);
+	}
+	fl_hasher_free(hasher);
+	return status;
+}
+
+fl_status fl_journal_read_to(const fl_io *io, const char *path, int sequence, fl_session *session,
+                             char head[FL_DIGEST_HEX_SIZE], fl_arena *arena, char **bytes, size_t *length,
+                             fl_error *err) {
+	fl_session fresh = {0};
+	size_t whole = 0;
+	fl_status status = fl_file_read(io, path, FL_JOURNAL_LIMIT, arena, bytes, &whole, err);
+	if (status >= 0)
+		status = replay_to(*bytes, whole, path, sequence, &fresh, head, length, err);
+	if (status >= 0)
+		*session = fresh;
+	else
+		fl_session_free(&fresh);
+	return status;
+}
+
 /* ---- writing
  * ----------------------------------------------------------------------------------------------------------- */
 
@@ -165,6 +212,16 @@ fl_status fl_journal_commit(fl_journal *journal, fl_event *event, fl_error *err)
 	fl_session_take(&journal->session, &kept);
 	memcpy(journal->head, self, FL_DIGEST_HEX_SIZE);
 	return FL_OK;
+}
+
+fl_status fl_journal_foresee(const fl_journal *journal, fl_event *event, char head[FL_DIGEST_HEX_SIZE], fl_error *err) {
+	event->sequence = journal->session.last_sequence + 1;
+	fl_text line = {0};
+	fl_status status = fl_session_check(&journal->session, event, err);
+	if (status >= 0)
+		status = fl_line_write(journal->hasher, event, journal->head, &line, head, err);
+	fl_text_free(&line);
+	return status;
 }
 
 fl_status fl_journal_create(fl_journal *journal, const fl_io *io, const char *path, const fl_event *open,

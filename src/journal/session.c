@@ -49,6 +49,9 @@ static bool make_room(fl_session *s, fl_verb verb) {
 	case FL_V_REMARK:
 		GROW(remarks, remark_count, remark_capacity);
 		break;
+	case FL_V_ISSUE:
+		GROW(issues, issue_count, issue_capacity);
+		break;
 	default:
 		break;
 	}
@@ -242,6 +245,24 @@ static void take_decision(fl_session *s, const fl_event *e) {
 	s->decision_by = e->fields[FL_F_BY];
 }
 
+static void take_issue(fl_session *s, const fl_event *e) {
+	const char *const *f = e->fields;
+	fl_session_issue *issue = &s->issues[s->issue_count++];
+	*issue = (fl_session_issue){.sequence = e->sequence,
+	                            .at = e->at,
+	                            .number = f[FL_F_ID],
+	                            .day = FL_NO_DAY,
+	                            .program = f[FL_F_PROGRAM],
+	                            .journal_name = f[FL_F_ITEM],
+	                            .issuer = f[FL_F_NAME],
+	                            .address = f[FL_F_BODY],
+	                            .amends = f[FL_F_ABOUT],
+	                            .reason = f[FL_F_REASON],
+	                            .authorised_by = f[FL_F_BY]};
+	if (fl_day_parse(f[FL_F_DAY], &issue->day, NULL) < 0)
+		issue->day = FL_NO_DAY;
+}
+
 void fl_session_take(fl_session *s, const fl_event *e) {
 	const char *const *f = e->fields;
 	switch (e->verb) {
@@ -299,6 +320,9 @@ void fl_session_take(fl_session *s, const fl_event *e) {
 		s->closed = true;
 		s->closed_by = f[FL_F_BY];
 		break;
+	case FL_V_ISSUE:
+		take_issue(s, e);
+		break;
 	case FL_V_TORN:
 	case FL_V_RESUME:
 	case FL_VERB_COUNT:
@@ -351,6 +375,20 @@ const char *fl_session_text_body(const fl_session *s, const char *kind, const ch
 	for (size_t i = 0; i < s->text_count; i++)
 		if (strcmp(s->texts[i].kind, kind) == 0 && (!name || strcmp(s->texts[i].name, name) == 0))
 			return s->texts[i].body;
+	return NULL;
+}
+
+const fl_session_issue *fl_session_issue_of(const fl_session *s, const char *number) {
+	for (size_t i = 0; i < s->issue_count; i++)
+		if (strcmp(s->issues[i].number, number) == 0)
+			return &s->issues[i];
+	return NULL;
+}
+
+const fl_session_issue *fl_session_amended_by(const fl_session *s, const char *number) {
+	for (size_t i = 0; i < s->issue_count; i++)
+		if (s->issues[i].amends && strcmp(s->issues[i].amends, number) == 0)
+			return &s->issues[i];
 	return NULL;
 }
 

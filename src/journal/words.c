@@ -72,6 +72,7 @@ const fl_verb_rule fl_verb_rules[FL_VERB_COUNT] = {
     [FL_V_TORN] = RULE(B(BODY), 0),
     [FL_V_RESUME] = RULE(B(PROGRAM) | B(SOURCE), 0),
     [FL_V_CLOSE] = RULE(B(BY), 0),
+    [FL_V_ISSUE] = RULE(B(ID) | B(DAY) | B(PROGRAM) | B(ITEM), B(NAME) | B(BODY) | B(ABOUT) | B(REASON) | B(BY)),
 };
 
 static const char *const verb_words[FL_VERB_COUNT] = {
