@@ -176,8 +176,8 @@ fl_status fl_store_instruments(fl_store *store, const char *tag, fl_arena *arena
 	sqlite3_stmt *statement = NULL;
 	size_t capacity = 0, n = 0;
 	fl_known_instrument *list = NULL;
-	fl_status status = fl_sql(store, SQL_INSTRUMENTS, &statement, err);
-	if (status >= 0)
+	fl_status status = fl_sql(store, tag ? SQL_INSTRUMENTS_OF_TAG : SQL_INSTRUMENTS, &statement, err);
+	if (status >= 0 && tag)
 		fl_sql_bind(statement, "t", tag);
 	for (bool row = true; status >= 0;) {
 		status = fl_sql_step(store, statement, &row, err);

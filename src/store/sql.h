@@ -64,8 +64,8 @@
 	  "(SELECT s.entry FROM session s WHERE s.instrument = i.id AND " IN_FORCE                                         \
 	  " ORDER BY s.day DESC, s.closed DESC, s.digest DESC LIMIT 1) "                                                   \
 	  "ORDER BY s.due IS NULL, s.due, i.site, i.tag, i.serial")                                                        \
-	X(SQL_INSTRUMENTS,                                                                                                 \
-	  "SELECT id, site, tag, serial FROM instrument WHERE ?1 IS NULL OR tag = ?1 ORDER BY site, tag, serial")          \
+	X(SQL_INSTRUMENTS, "SELECT id, site, tag, serial FROM instrument ORDER BY site, tag, serial")                      \
+	X(SQL_INSTRUMENTS_OF_TAG, "SELECT id, site, tag, serial FROM instrument WHERE tag = ?1 ORDER BY site, serial")     \
 	X(SQL_FED_BY,                                                                                                      \
 	  "SELECT " RECORD_COLUMNS " FROM item i JOIN used u ON u.item = i.id JOIN session s ON s.entry = u.entry "        \
 	  "JOIN entry e ON e.id = s.entry WHERE i.name = ?2 AND (?1 IS NULL OR i.kind = ?1) AND s.day BETWEEN ?3 AND ?4 "  \

@@ -142,7 +142,7 @@ fl_status fl_store_found(const char *path, const fl_founding *founding, fl_store
 	status = open_file(path, SQLITE_OPEN_READWRITE, 5000, &store, err);
 	if (status < 0)
 		return status;
-	status = fl_sql_text(store, "PRAGMA journal_mode = WAL", err);
+	status = fl_sql_text(store, "PRAGMA page_size = 8192; PRAGMA journal_mode = WAL", err);
 	if (status >= 0)
 		status = fl_sql_run(store, SQL_BEGIN, err, "");
 	if (status >= 0)

@@ -7,7 +7,9 @@
  * their digest vouches for them, and scan() finds the few lines that the tables repeat. Which lots and equipment fed
  * which session is compared by a sum over both sides, in which the order does not matter; only when the sums differ is
  * each session looked at on its own, to name the one that does not fit.
+ * A second thread (digester.c) hashes while this one reads.
  */
+#include "digester.h"
 #include "lines.h"
 #include "link.h"
 #include "number.h"
@@ -78,6 +80,7 @@ typedef struct verification {
 	chain *chains; /* by row */
 	size_t chain_count, chain_capacity;
 	chain *at; /* of the entry at hand */
+	fl_digester *digester;
 } verification;
 
 /* ---- finding lines ---------------------------------------------------------------------------------------------- */
@@ -250,12 +253,17 @@ static fl_status misfit_of_number(verification *v, int64_t sequence, piece numbe
 
 /* ---- one entry -------------------------------------------------------------------------------------------------- */
 
-static fl_status check_digest(verification *v, const void *bytes, size_t length, piece digest, bool *same) {
-	char found[FL_DIGEST_HEX_SIZE];
-	fl_status status = fl_seal_digest(v->store->hasher, bytes ? bytes : "", length, found, v->err);
+/* Gives bytes to the other thread, which finds out whether the digest is theirs. */
+static fl_status put_digest(verification *v, sqlite3_stmt *row, const scanned *s, int column, piece digest,
+                            const char *what) {
+	fl_digested job = {.sequence = sqlite3_column_int64(row, C_SEQUENCE), .what = what};
+	const void *bytes = sqlite3_column_blob(row, column);
+	size_t length = (size_t)sqlite3_column_bytes(row, column);
+	memcpy(job.origin, v->at->origin, sizeof job.origin);
+	if (s->number.at && s->number.length < sizeof job.number)
+		memcpy(job.number, s->number.at, s->number.length);
 	v->counts.bytes += length;
-	*same = status >= 0 && piece_is(digest, found);
-	return status;
+	return fl_digester_put(v->digester, bytes, length, digest.at, digest.length, &job, v->err);
 }
 
 static fl_status check_place(verification *v, sqlite3_stmt *row, const scanned *s) {
@@ -273,13 +281,8 @@ static fl_status check_place(verification *v, sqlite3_stmt *row, const scanned *
 
 static fl_status check_facts(verification *v, sqlite3_stmt *row, const scanned *s) {
 	const char *digest = fl_sql_column(row, C_DIGEST);
-	bool same = false;
-	fl_status status = check_digest(v, sqlite3_column_text(row, C_FACTS), (size_t)sqlite3_column_bytes(row, C_FACTS),
-	                                (piece){digest, strlen(digest)}, &same);
-	if (status >= 0 && !same)
-		return misfit_of_number(v, sqlite3_column_int64(row, C_SEQUENCE), s->number,
-		                        "its facts or its digest were changed: they do not fit one another");
-	return status;
+	return put_digest(v, row, s, C_FACTS, (piece){digest, strlen(digest)},
+	                  "its facts or its digest were changed: they do not fit one another");
 }
 
 static fl_status check_unpacked(verification *v, sqlite3_stmt *row, const scanned *s) {
@@ -300,19 +303,18 @@ static fl_status check_unpacked(verification *v, sqlite3_stmt *row, const scanne
 }
 
 static fl_status check_carried(verification *v, sqlite3_stmt *row, const scanned *s) {
+	static const char not_kept[] = "its journal or paper is not the one that was kept";
 	int64_t sequence = sqlite3_column_int64(row, C_SEQUENCE);
 	if (sqlite3_column_type(row, C_PACKED) == SQLITE_NULL) {
 		v->counts.without_bytes++;
 		return v->at->own ? misfit_of_number(v, sequence, s->number, "its journal or paper is missing") : FL_OK;
 	}
 	v->with_bytes++;
-	size_t length = (size_t)sqlite3_column_bytes(row, C_PACKED);
-	bool same = false;
-	fl_status status = check_digest(v, sqlite3_column_blob(row, C_PACKED), length, value_of(s->carries, 3), &same);
+	fl_status status = put_digest(v, row, s, C_PACKED, value_of(s->carries, 3), not_kept);
 	if (status < 0)
 		return status;
-	if (!same || whole_of(value_of(s->carries, 2)) != (int64_t)length)
-		return misfit_of_number(v, sequence, s->number, "its journal or paper is not the one that was kept");
+	if (whole_of(value_of(s->carries, 2)) != sqlite3_column_bytes(row, C_PACKED))
+		return misfit_of_number(v, sequence, s->number, not_kept);
 	if (whole_of(value_of(s->carries, 0)) != sqlite3_column_int64(row, C_SIZE))
 		return misfit_of_number(v, sequence, s->number, "the size of its journal or paper was changed");
 	return v->deep ? check_unpacked(v, row, s) : FL_OK;
@@ -414,9 +416,10 @@ static fl_status check_entry(verification *v, sqlite3_stmt *row) {
 /* ---- chains ----------------------------------------------------------------------------------------------------- */
 
 static fl_status check_founding(verification *v, const char *founding, size_t length) {
-	bool same = false;
-	fl_status status = check_digest(v, founding, length, (piece){v->at->origin, strlen(v->at->origin)}, &same);
-	return status >= 0 && !same ? misfit(v, 0, "the founding of the chain was changed") : status;
+	char digest[FL_DIGEST_HEX_SIZE];
+	fl_status status = fl_seal_digest(v->store->hasher, founding, length, digest, v->err);
+	return status >= 0 && strcmp(digest, v->at->origin) != 0 ? misfit(v, 0, "the founding of the chain was changed")
+	                                                         : status;
 }
 
 /* Each chain of the book's own but the first goes on from another. */
@@ -464,18 +467,40 @@ static fl_status take_chains(verification *v) {
 	return status;
 }
 
-static fl_status check_chains(verification *v) {
+static fl_status check_entries(verification *v) {
 	sqlite3_stmt *entries = NULL;
-	fl_status status = take_chains(v);
-	if (status >= 0 && sqlite3_prepare_v2(v->store->db, ENTRIES_TEXT, -1, &entries, NULL) != SQLITE_OK)
-		status = fl_sql_fail(v->store, v->err);
-	for (bool row = true; status >= 0;) {
+	fl_status status = FL_OK;
+	if (sqlite3_prepare_v2(v->store->db, ENTRIES_TEXT, -1, &entries, NULL) != SQLITE_OK)
+		return fl_sql_fail(v->store, v->err);
+	for (bool row = true; status >= 0 && !fl_digester_failed(v->digester);) {
 		status = fl_sql_step(v->store, entries, &row, v->err);
 		if (status < 0 || !row)
 			break;
 		status = check_entry(v, entries);
 	}
 	sqlite3_finalize(entries);
+	return status;
+}
+
+/* What the other thread found stands before whatever was found here, or at the same entry: it gets the word. */
+static fl_status check_chains(verification *v) {
+	fl_digested wrong;
+	chain place = {0};
+	fl_status status = take_chains(v);
+	if (status >= 0)
+		status = fl_digester_new(&v->digester, v->err);
+	if (status < 0)
+		return status;
+	status = check_entries(v);
+	if (!fl_digester_finish(v->digester, &wrong))
+		return status;
+	if (v->err)
+		*v->err = (fl_error){0};
+	v->at = &place;
+	memcpy(place.origin, wrong.origin, sizeof place.origin);
+	piece number = {*wrong.number ? wrong.number : NULL, strlen(wrong.number)};
+	status = misfit_of_number(v, wrong.sequence, number, wrong.what);
+	v->at = NULL;
 	return status;
 }
 

@@ -169,7 +169,7 @@ static void test_full_disk(void **state) {
 		size_t length = 0;
 		snprintf(wal, sizeof wal, "%s-wal", path);
 		free(scratch_read(wal, &length));
-		allow(length + 4096 * (rlim_t)i);
+		allow(length + 8192 * (rlim_t)i);
 		fl_status status = fl_store_add(store, &b.record, b.journal, b.length, &err);
 		if (status < 0) {
 			assert_int_equal(status, FL_E_DISK_FULL);
