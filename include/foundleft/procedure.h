@@ -91,6 +91,11 @@ typedef struct fl_extra_term {
 	fl_band_basis basis;          /* FL_BAND_PERCENT_SPAN or FL_BAND_PERCENT_READING */
 } fl_extra_term;
 
+/* In which part a person signs. */
+typedef enum fl_part { FL_PART_PERFORMED, FL_PART_REVIEWED, FL_PART_AUTHORISED, FL_PARTS } fl_part;
+const char *fl_part_word(fl_part part); /* "performed", "reviewed", "authorised" */
+fl_part fl_part_find(const char *word); /* FL_PARTS if it is none of them */
+
 typedef struct fl_procedure {
 	fl_arena arena;
 	const char *id, *version, *title;
@@ -126,7 +131,8 @@ typedef struct fl_procedure {
 	int condition_count;
 	const fl_question *restore; /* at the end */
 	int restore_count;
-	const char *text; /* the file's bytes as read (valid UTF-8): goes into the journal */
+	unsigned signatures; /* bits 1 << fl_part: without these a certificate does not count as issued */
+	const char *text;    /* the file's bytes as read (valid UTF-8): goes into the journal */
 } fl_procedure;
 
 /* Reads a template from memory. `file` is used in errors. On success *out is complete and to be freed. */

@@ -45,6 +45,7 @@ static const char *const fields[] = {
     "gates",
     "conditions",
     "restore",
+    "signatures",
     NULL,
 };
 
@@ -53,7 +54,19 @@ static const char *const fields[] = {
 static const char *const medium_words[] = {"oil", "pressure", NULL};
 static const char *const rule_words[] = {"none", "simple acceptance", "guard band", "four states", NULL};
 static const char *const linearity_words[] = {"independent", "terminal-based", "zero-based", NULL};
+static const char *const part_words[FL_PARTS] = {"performed", "reviewed", "authorised"};
 static const char *const distribution_words[] = {"normal", "rectangular", "triangular", NULL};
+
+const char *fl_part_word(fl_part part) {
+	return (unsigned)part < FL_PARTS ? part_words[part] : "?";
+}
+
+fl_part fl_part_find(const char *word) {
+	unsigned part = 0;
+	while (part < FL_PARTS && strcmp(part_words[part], word) != 0)
+		part++;
+	return (fl_part)part;
+}
 
 const char *fl_procedure_rule_words(fl_rule rule) {
 	switch (rule) {
@@ -366,6 +379,26 @@ static fl_status read_extra_terms(const fl_node *root, fl_procedure *p, fl_error
 	return FL_OK;
 }
 
+/* ---- who signs ---------------------------------------------------------------------------------------------------
+ */
+
+static fl_status read_signatures(const fl_node *root, fl_procedure *p, fl_error *err) {
+	const fl_node *list;
+	TRY(fl_node_list(root, "signatures", false, &list, err));
+	for (size_t i = 0; list && i < list->count; i++) {
+		const fl_node *item = list->items[i];
+		fl_part part = item->kind == FL_NODE_SCALAR ? fl_part_find(item->text) : FL_PARTS;
+		if (part == FL_PARTS)
+			return fl_fail_at(
+			    err, FL_E_VALUE, fl_node_place(item),
+			    "a certificate is signed by who performed, reviewed or authorised it: write one of these");
+		if (p->signatures >> part & 1)
+			return fl_fail_at(err, FL_E_VALUE, fl_node_place(item), "\"%s\" stands twice", item->text);
+		p->signatures |= 1U << part;
+	}
+	return FL_OK;
+}
+
 /* ---- the whole
  * ---------------------------------------------------------------------------------------------------------- */
 
@@ -378,6 +411,7 @@ static fl_status read_procedure(const fl_node *root, fl_procedure *p, fl_error *
 	TRY(read_decision(root, p, err));
 	TRY(read_oil_terms(root, p, err));
 	TRY(read_extra_terms(root, p, err));
+	TRY(read_signatures(root, p, err));
 	return fl_procedure_read_questions(root, p, err);
 }
 
