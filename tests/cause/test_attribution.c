@@ -210,6 +210,37 @@ static void timed_volume_shows_the_slip(void **state) {
 	over_seeds((truth){.slip = 0.04}, &extra, expect_slip_alone);
 }
 
+static void expect_density_alone(const fl_cause *c, unsigned long long seed) {
+	truth_check(c, seed, c->explained && truth_named(c) == 1);
+	truth_check(c, seed, truth_finding(c, "cause:dial-density") != NULL);
+	truth_check(c, seed, strstr(fl_cause_finding(c, FL_FINDING_CAUSE)->sentence, "instead of 900 kg/m³") != NULL);
+	amount_is(c, seed, FL_FAULT_DENSITY, 991.0 / 900.0 - 1.0);
+}
+
+static void papers_show_the_dial_density(void **state) {
+	(void)state;
+	fl_cause_extra extra;
+	fl_cause_extra_begin(&extra);
+	extra.dial_density_kg_m3 = 991.0;
+	extra.u_dial_density = 0.5;
+	over_seeds((truth){.density = 991.0 / 900.0 - 1.0}, &extra, expect_density_alone);
+}
+
+static void expect_temperature_alone(const fl_cause *c, unsigned long long seed) {
+	truth_check(c, seed, c->explained && truth_named(c) == 1);
+	truth_check(c, seed, truth_finding(c, "cause:oil-temperature") != NULL);
+	amount_is(c, seed, FL_FAULT_TEMPERATURE, 0.6);
+}
+
+static void a_second_thermometer_shows_the_first(void **state) {
+	(void)state;
+	fl_cause_extra extra;
+	fl_cause_extra_begin(&extra);
+	extra.temp_difference_k = 0.59;
+	extra.u_temp_difference = 0.02;
+	over_seeds((truth){.warmer_k = 0.6}, &extra, expect_temperature_alone);
+}
+
 /* ---- zero, particle, curvature, clip ---- */
 
 static void expect_zero_group(const fl_cause *c, unsigned long long seed) {
@@ -288,6 +319,40 @@ static void an_output_that_rises_leaves_the_coupling(void **state) {
 	(void)state;
 	fl_cause_extra extra = sound_extra();
 	over_seeds((truth){.clip = 0.80}, &extra, expect_coupling);
+}
+
+static void expect_limit(const fl_cause *c, unsigned long long seed) {
+	truth_check(c, seed, c->explained && truth_named(c) == 1);
+	truth_check(c, seed, truth_finding(c, "cause:output-limit") != NULL);
+	truth_check(c, seed, !fl_cause_finding(c, FL_FINDING_REPAIR_FIRST)); /* nothing to clean */
+}
+
+static void an_output_that_stays_down_is_the_limit(void **state) {
+	(void)state;
+	fl_cause_extra extra = sound_extra();
+	injections[2].output = 4.0 + 16.0 * 0.80;
+	over_seeds((truth){.clip = 0.80}, &extra, expect_limit);
+}
+
+/* 0.9 % of span per 10 bar, read at 8 bar: stopped and running alike, so a member of the zero group. */
+static void expect_line(const fl_cause *c, unsigned long long seed) {
+	static const fl_fault faults[] = {FL_FAULT_ZERO, FL_FAULT_LINE};
+	truth_check(c, seed, c->explained && truth_named(c) == 1);
+	possible_are(c, seed, FL_FAULT_ZERO, faults, 1);
+	truth_check(c, seed, truth_group(c, FL_FAULT_LINE) == truth_group(c, FL_FAULT_ZERO));
+	check_near("per 10 bar", 0.009, truth_member(c, FL_FAULT_LINE)->alone, 0.0005);
+}
+
+static void expect_line_alone(const fl_cause *c, unsigned long long seed) {
+	truth_check(c, seed, c->explained && truth_named(c) == 1);
+	truth_check(c, seed, truth_member(c, FL_FAULT_LINE) && !truth_member(c, FL_FAULT_ZERO)->possible);
+}
+
+static void line_pressure(void **state) {
+	(void)state;
+	fl_cause_extra extra = sound_extra(); /* injected without line pressure: the transmitter itself is sound */
+	over_seeds((truth){.line_pa = 8e5, .line_per_10_bar = 0.009}, NULL, expect_line);
+	over_seeds((truth){.line_pa = 8e5, .line_per_10_bar = 0.009}, &extra, expect_line_alone);
 }
 
 /* ---- the way there ---- */
@@ -387,12 +452,16 @@ int main(void) {
 	    cmocka_unit_test(injection_shows_the_span),
 	    cmocka_unit_test(counted_revolutions_show_the_speed),
 	    cmocka_unit_test(timed_volume_shows_the_slip),
+	    cmocka_unit_test(papers_show_the_dial_density),
+	    cmocka_unit_test(a_second_thermometer_shows_the_first),
 	    cmocka_unit_test(zero),
 	    cmocka_unit_test(a_good_transmitter_leaves_the_column),
 	    cmocka_unit_test(particle),
 	    cmocka_unit_test(curvature),
 	    cmocka_unit_test(clip),
 	    cmocka_unit_test(an_output_that_rises_leaves_the_coupling),
+	    cmocka_unit_test(an_output_that_stays_down_is_the_limit),
+	    cmocka_unit_test(line_pressure),
 	    cmocka_unit_test(lag),
 	    cmocka_unit_test(carry_over),
 	    cmocka_unit_test(zero_and_deposit_together),
