@@ -38,7 +38,7 @@ bool fl_press_need(fl_press *press, double height) {
 }
 
 /* Hundredths of a point; never through the locale. */
-/* Hundredths as "12.34 ", "-0.05 ", "7 ". By hand: a page holds thousands of numbers, and printf was a fifth of setting
+/* Hundredths as "12.34 ", "-0.05 ", "7 ". By hand: a page holds thousands of numbers, and printf was a tenth of setting
  * it. */
 static void ink_hundredths(fl_text *page, long hundredths) {
 	char digits[32];
