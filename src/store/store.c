@@ -113,12 +113,18 @@ static fl_founding_text as_text(const fl_founding *founding) {
 	return text;
 }
 
-/* The tables and the founding, in one transaction: a book is there as a whole or not at all. */
-static fl_status found_within(fl_store *store, const fl_founding_text *founding, fl_error *err) {
+static fl_status refuse_tables(fl_store *store, fl_error *err) {
 	int64_t tables = 0;
 	fl_status status = pragma(store, "SELECT count(*) FROM sqlite_schema", &tables, err);
 	if (status >= 0 && tables > 0)
 		return fl_fail_at(err, FL_E_EXISTS, (fl_place){.file = store->path}, "there is a book here already");
+	return status;
+}
+
+/* The tables and the founding, in one transaction: a book is there as a whole or not at all. Looked at again within it:
+ * another program may have founded one meanwhile. */
+static fl_status found_within(fl_store *store, const fl_founding_text *founding, fl_error *err) {
+	fl_status status = refuse_tables(store, err);
 	if (status >= 0)
 		status = fl_schema_raise(store, 0, err);
 	if (status >= 0)
@@ -142,7 +148,9 @@ fl_status fl_store_found(const char *path, const fl_founding *founding, fl_store
 	status = open_file(path, SQLITE_OPEN_READWRITE, 5000, &store, err);
 	if (status < 0)
 		return status;
-	status = fl_sql_text(store, "PRAGMA page_size = 8192; PRAGMA journal_mode = WAL", err);
+	status = refuse_tables(store, err);
+	if (status >= 0)
+		status = fl_sql_text(store, "PRAGMA page_size = 8192; PRAGMA journal_mode = WAL", err);
 	if (status >= 0)
 		status = fl_sql_run(store, SQL_BEGIN, err, "");
 	if (status >= 0)
