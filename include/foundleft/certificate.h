@@ -13,6 +13,7 @@
 #include "foundleft/base.h"
 #include "foundleft/journal.h"
 #include "foundleft/procedure.h"
+#include "foundleft/seal.h"
 #include "foundleft/stock.h"
 
 /* What the record does not hold: said when the certificate is issued. Borrowed; "" or NULL where absent. */
@@ -23,9 +24,10 @@ typedef struct fl_issue {
 	int utc_offset_min; /* local time beside UTC */
 	const char *issuer, *issuer_address;
 	const char *authorised_by;
-	const char *journal_digest; /* 64 hex */
+	const char *journal_digest; /* 64 hex; NULL while it is a draft */
 	const char *journal_name;
 	const char *program_version;
+	const char *amends, *amends_reason; /* number of the certificate that this one replaces, and why */
 } fl_issue;
 
 /* Opaque to all but the certificate stage: the content as blocks (src/certificate/sheet.h). */
@@ -46,5 +48,20 @@ typedef struct fl_faces {
  * by name (FL_E_VALUE: the text, the character, its code point). Nothing is written to disk here. */
 fl_status fl_certificate_pdf(const fl_sheet *sheet, const fl_io *io, const fl_faces *faces, unsigned char **bytes,
                              size_t *length, fl_error *err) FL_MUST_USE;
+
+/* Where the visible blocks of the signatures belong, by the signer's part; `width` 0 where a part has no place. */
+typedef struct fl_sign_places {
+	fl_seal_place of[FL_PARTS];
+} fl_sign_places;
+/* The same, and *places. */
+fl_status fl_certificate_pdf_places(const fl_sheet *sheet, const fl_io *io, const fl_faces *faces,
+                                    unsigned char **bytes, size_t *length, fl_sign_places *places,
+                                    fl_error *err) FL_MUST_USE;
+/* The certificate's face for the visible blocks; all memory is the arena's. */
+fl_status fl_certificate_face(const fl_io *io, const fl_faces *faces, fl_arena *arena, fl_seal_face *out,
+                              fl_error *err) FL_MUST_USE;
+/* The digest of the journal that a certificate of this program names in its metadata: true where there is one. It only
+ * helps to find the journal, and proves nothing. */
+bool fl_certificate_journal_digest(const unsigned char *bytes, size_t length, char digest[FL_DIGEST_HEX_SIZE]);
 
 #endif

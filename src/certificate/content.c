@@ -84,6 +84,7 @@ static void write_title(fl_writing *w) {
 	sheet->program = fl_sheet_printf(sheet, "foundleft %s", issue->program_version ? issue->program_version : "");
 	sheet->fingerprint =
 	    fl_sheet_printf(sheet, "%s %s", issue->journal_digest ? issue->journal_digest : "", issue->number);
+	sheet->source = issue->journal_digest ? fl_sheet_printf(sheet, "journal-sha256:%s", issue->journal_digest) : "";
 	sheet->made_at = issue->issued_at;
 	sheet->utc_offset_min = issue->utc_offset_min;
 }
@@ -117,6 +118,9 @@ static fl_status check_issue(const fl_issue *issue, const fl_stock *stock, fl_er
 		return fl_fail_at(err, FL_E_VALUE, number,
 		                  "a certificate's number has at most %d characters, so that it fits on every page",
 		                  MOST_IN_NUMBER);
+	if (!issue->amends != !issue->amends_reason)
+		return fl_fail_at(err, FL_E_VALUE, (fl_place){.field = "amends"},
+		                  "a certificate that amends another says which one and why");
 	if (issue->issued_on == FL_NO_DAY)
 		return fl_fail_at(err, FL_E_VALUE, issued, "a certificate needs its date of issue");
 	if (stock->instrument_count == 0)

@@ -148,7 +148,8 @@ static void write_journal(fl_writing *w) {
 	                                       : "of the machine it was written on",
 	               issue->utc_offset_min == 0 ? "the same" : fl_word_offset(sheet, issue->utc_offset_min));
 	fl_sheet_add_led(sheet, FL_BLOCK_SMALL, "Digest of the journal (SHA-256):", "%s",
-	                 issue->journal_digest ? issue->journal_digest : "not stated");
+	                 issue->journal_digest ? issue->journal_digest
+	                                       : "stated when the certificate is issued; this is a draft");
 	fl_sheet_add_led(sheet, FL_BLOCK_SMALL, "Source of the procedure:", "%s, version %s: %s", w->procedure->id,
 	                 w->procedure->version, fl_word_sentence(sheet, w->procedure->source));
 }
@@ -163,23 +164,72 @@ void fl_write_record(fl_writing *w) {
 
 /* ---- end ------------------------------------------------------------------- */
 
+/* What it replaces is said where nobody can overlook it: before the signatures, and larger. */
+static void write_amends(fl_writing *w) {
+	const fl_session_issue *before = fl_session_issue_of(w->session, w->issue->amends);
+	const char *issued = before ? fl_sheet_printf(w->sheet, ", issued on %s,", fl_word_day(w->sheet, before->day)) : "";
+	fl_sheet_addf(w->sheet, FL_BLOCK_STATEMENT, "This certificate amends certificate %s%s and replaces it.",
+	              w->issue->amends, issued);
+	fl_sheet_add_led(w->sheet, FL_BLOCK_TEXT, "Reason of the amendment:", "%s",
+	                 fl_word_sentence(w->sheet, w->issue->amends_reason));
+}
+
+/* "performed and authorised" */
+static const char *parts_in_words(fl_writing *w, unsigned parts) {
+	const char *words = "";
+	for (fl_part part = 0; part < FL_PARTS; part++)
+		if (parts >> part & 1)
+			words = fl_sheet_printf(w->sheet, "%s%s%s", words,
+			                        !*words               ? ""
+			                        : parts >> (part + 1) ? ", "
+			                                              : " and ",
+			                        fl_part_word(part));
+	return words;
+}
+
+/* " It counts as issued only with ..."; "" where its procedure wants no signature. */
+static const char *signing_words(fl_writing *w) {
+	unsigned wanted = w->procedure->signatures;
+	bool several = (wanted & (wanted - 1)) != 0;
+	if (wanted == 0)
+		return "";
+	return fl_sheet_printf(w->sheet, " It counts as issued only with the electronic %s of who %s it%s.",
+	                       several ? "signatures" : "signature", parts_in_words(w, wanted),
+	                       several ? ", each another person" : "");
+}
+
+static void write_signatures(fl_writing *w) {
+	static const char *const heads[FL_PARTS] = {"Performed by", "Reviewed by", "Authorised by"};
+	const char *names[FL_PARTS] = {fl_writing_setting(w, "performed-by"), NULL, w->issue->authorised_by};
+	const char *shown[FL_PARTS];
+	int parts[FL_PARTS];
+	size_t count = 0;
+	for (fl_part part = 0; part < FL_PARTS; part++)
+		if (part != FL_PART_REVIEWED || w->procedure->signatures >> part & 1) {
+			shown[count] = heads[part];
+			parts[count++] = (int)part;
+		}
+	fl_block *block = fl_sheet_add_grid(w->sheet, FL_BLOCK_SIGNATURES, shown, count);
+	for (size_t i = 0; i < count; i++) {
+		const char *name = names[parts[i]];
+		if (block)
+			block->parts[i] = parts[i];
+		fl_sheet_pair(w->sheet, block, i, "name", name);
+		fl_sheet_pairf(w->sheet, block, i, fl_word_is_empty(name) ? "name, date and signature" : "date and signature",
+		               "%s", "");
+	}
+}
+
 void fl_write_close(fl_writing *w) {
-	static const char *const heads[] = {"Performed by", "Authorised by"};
 	fl_sheet *sheet = w->sheet;
-	const char *performer = fl_writing_setting(w, "performed-by");
+	if (w->issue->amends)
+		write_amends(w);
 	fl_sheet_add_led(
 	    sheet, FL_BLOCK_SMALL, "Validity.",
 	    "The results relate only to the item named on the first page, as it was on the day of the calibration and "
 	    "under the conditions stated. This certificate may be copied only in full, unless the issuer agrees in "
-	    "writing. It amends no earlier certificate.");
-	fl_block *block = fl_sheet_add_grid(sheet, FL_BLOCK_SIGNATURES, heads, 2);
-	const char *names[] = {performer, w->issue->authorised_by};
-	for (size_t i = 0; i < 2; i++) {
-		if (fl_word_is_empty(names[i]))
-			fl_sheet_pairf(sheet, block, i, "name", "%s", "");
-		else
-			fl_sheet_pair(sheet, block, i, "name", names[i]);
-		fl_sheet_pairf(sheet, block, i, "date and signature", "%s", "");
-	}
+	    "writing.%s%s",
+	    w->issue->amends ? "" : " It amends no earlier certificate.", signing_words(w));
+	write_signatures(w);
 	fl_sheet_addf(sheet, FL_BLOCK_END, "End of certificate %s", w->issue->number);
 }

@@ -252,6 +252,8 @@ static void write_xmp(const fl_sheet *sheet, const char *title, fl_text *out) {
 	                 "</rdf:Description>\n"
 	                 "<rdf:Description rdf:about=\"\" xmlns:dc=\"http://purl.org/dc/elements/1.1/\">\n"
 	                 "<dc:format>application/pdf</dc:format>\n");
+	if (*sheet->source)
+		xmp_property(out, FL_SOURCE_MARK, sheet->source, "</dc:identifier>\n");
 	xmp_property(out, "<dc:title><rdf:Alt><rdf:li xml:lang=\"x-default\">", title, "</rdf:li></rdf:Alt></dc:title>\n");
 	xmp_property(out, "<dc:creator><rdf:Seq><rdf:li>", sheet->author, "</rdf:li></rdf:Seq></dc:creator>\n");
 	xmp_property(out, "<dc:description><rdf:Alt><rdf:li xml:lang=\"x-default\">", sheet->subject,

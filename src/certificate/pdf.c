@@ -69,8 +69,8 @@ static fl_status check_unset_texts(const fl_sheet *sheet, fl_error *err) {
 	return FL_OK;
 }
 
-fl_status fl_certificate_pdf(const fl_sheet *sheet, const fl_io *io, const fl_faces *faces, unsigned char **bytes,
-                             size_t *length, fl_error *err) {
+fl_status fl_certificate_pdf_places(const fl_sheet *sheet, const fl_io *io, const fl_faces *faces,
+                                    unsigned char **bytes, size_t *length, fl_sign_places *places, fl_error *err) {
 	fl_error own = {0};
 	fl_press press = {.sheet = sheet, .err = err ? err : &own};
 	fl_status status = check_unset_texts(sheet, err);
@@ -84,6 +84,13 @@ fl_status fl_certificate_pdf(const fl_sheet *sheet, const fl_io *io, const fl_fa
 		status = fl_press_bytes(&press, bytes, length, err);
 	for (size_t i = 0; i < press.page_count; i++)
 		fl_text_free(&press.pages[i]);
+	*places = press.places;
 	fl_arena_free(&press.arena);
 	return status;
+}
+
+fl_status fl_certificate_pdf(const fl_sheet *sheet, const fl_io *io, const fl_faces *faces, unsigned char **bytes,
+                             size_t *length, fl_error *err) {
+	fl_sign_places places;
+	return fl_certificate_pdf_places(sheet, io, faces, bytes, length, &places, err);
 }

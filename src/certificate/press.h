@@ -25,6 +25,9 @@
 #define FL_RULE 0.62
 #define FL_FAINT 0.86
 
+/* What stands before a document's source in its metadata. */
+#define FL_SOURCE_MARK "<dc:identifier>"
+
 typedef enum fl_weight { FL_REGULAR, FL_BOLD, FL_WEIGHTS } fl_weight;
 
 /* A face with what has been used of it: each code point used gets the next number, 1, 2, 3 ... */
@@ -45,6 +48,7 @@ typedef struct fl_press {
 	fl_text *pages;
 	size_t page_count, page_capacity;
 	double y; /* the next line's top on the last page */
+	fl_sign_places places;
 	fl_status status;
 	fl_error *err;
 } fl_press;

@@ -13,7 +13,7 @@
 #define SMALL_LEADING 9.5
 #define LABEL_SIZE 7.6
 #define COLUMN_GAP 20.0
-#define SIGN_ROOM 26.0
+#define SIGN_ROOM 38.0 /* to sign by hand, or for the visible block of a signature */
 
 typedef struct fl_style {
 	fl_weight weight;
@@ -151,39 +151,60 @@ static void set_grid(fl_press *press, const fl_block *block) {
 
 /* ---- signatures ------------------------------------------------------------ */
 
+static double signature_width(const fl_block *block) {
+	double columns = (double)block->grid_count;
+	return (FL_MEASURE - (columns - 1) * COLUMN_GAP) / columns;
+}
+
+/* Where a value stands beside the column's head; 0 where it does not fit between head and label, and goes below. */
+static double beside_head(fl_press *press, const fl_pairs *pairs, const char *value, double width) {
+	const char *label = pairs->count > 0 ? pairs->pairs[pairs->count - 1].label : "";
+	double head = fl_press_width(press, FL_BOLD, LABEL_SIZE, pairs->head, strlen(pairs->head)) + 6;
+	double taken = head + fl_press_width(press, FL_REGULAR, BODY, value, strlen(value)) + 6 +
+	               fl_press_width(press, FL_REGULAR, SMALL, label, strlen(label));
+	return taken <= width ? head : 0;
+}
+
 static double signatures_height(fl_press *press, const fl_block *block, double width) {
 	double highest = 0;
 	for (size_t c = 0; c < block->grid_count; c++) {
 		double height = LEADING + 4;
 		for (size_t i = 0; i < block->grid[c].count; i++) {
 			const char *value = block->grid[c].pairs[i].value;
-			height += *value ? lines_height(press, STYLE_BODY, value, width) + 2 : SIGN_ROOM;
+			if (!*value)
+				height += SIGN_ROOM;
+			else if (beside_head(press, &block->grid[c], value, width) == 0)
+				height += lines_height(press, STYLE_BODY, value, width) + 2;
 		}
 		highest = fmax(highest, height);
 	}
-	return highest + 8;
+	return highest + 6;
 }
 
-static double signature_width(const fl_block *block) {
-	double columns = (double)block->grid_count;
-	return (FL_MEASURE - (columns - 1) * COLUMN_GAP) / columns;
+/* The room above the line, as the place for a visible block. */
+static void keep_place(fl_press *press, int part, double x, double line, double width) {
+	if (part >= 0 && part < FL_PARTS)
+		press->places.of[part] = (fl_seal_place){(int)press->page_count, x, line + 1, width, SIGN_ROOM - 2};
 }
 
-/* A pair with a value is set; one without is a line to write on, with its label below. */
-static void set_signature(fl_press *press, const fl_pairs *pairs, double x, double width) {
-	double y = press->y;
-	fl_ink_words(press, FL_BOLD, LABEL_SIZE, FL_BLACK, x, y - LABEL_SIZE, pairs->head);
+/* A pair with a value is set; one without is a line to sign on, with its label at the column's head. */
+static void set_signature(fl_press *press, const fl_pairs *pairs, int part, double x, double width) {
+	double y = press->y, head = y - LABEL_SIZE;
+	fl_ink_words(press, FL_BOLD, LABEL_SIZE, FL_BLACK, x, head, pairs->head);
 	y -= LEADING + 4;
 	for (size_t i = 0; i < pairs->count; i++) {
 		const fl_pair *pair = &pairs->pairs[i];
-		if (*pair->value) {
+		double beside = *pair->value ? beside_head(press, pairs, pair->value, width) : 0;
+		if (beside > 0) {
+			fl_ink_words(press, FL_REGULAR, BODY, FL_BLACK, x + beside, head, pair->value);
+		} else if (*pair->value) {
 			y -= set_lines_at(press, STYLE_BODY, pair->value, x, y, width) + 2;
-			continue;
+		} else {
+			y -= SIGN_ROOM;
+			keep_place(press, part, x, y, width);
+			fl_ink_line(press, x, y, x + width, y, 0.5, FL_BLACK);
+			fl_ink_words_right(press, FL_REGULAR, SMALL, FL_SOFT, x + width, head, pair->label);
 		}
-		y -= SIGN_ROOM - SMALL_LEADING;
-		fl_ink_line(press, x, y, x + width, y, 0.5, FL_BLACK);
-		fl_ink_words(press, FL_REGULAR, SMALL, FL_SOFT, x, y - SMALL - 1.5, pair->label);
-		y -= SMALL_LEADING;
 	}
 }
 
@@ -192,7 +213,7 @@ static void set_signatures(fl_press *press, const fl_block *block) {
 	fl_press_need(press, height);
 	press->y -= 4;
 	for (size_t c = 0; c < block->grid_count; c++)
-		set_signature(press, &block->grid[c], FL_LEFT + (double)c * (width + COLUMN_GAP), width);
+		set_signature(press, &block->grid[c], block->parts[c], FL_LEFT + (double)c * (width + COLUMN_GAP), width);
 	press->y -= height - 4;
 }
 

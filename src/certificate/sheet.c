@@ -13,7 +13,7 @@ fl_sheet *fl_sheet_new(void) {
 		return NULL;
 	const char **texts[] = {&sheet->title,   &sheet->subtitle, &sheet->number_label, &sheet->number,
 	                        &sheet->issuer,  &sheet->running,  &sheet->mark,         &sheet->author,
-	                        &sheet->subject, &sheet->program,  &sheet->fingerprint};
+	                        &sheet->subject, &sheet->program,  &sheet->fingerprint,  &sheet->source};
 	for (size_t i = 0; i < sizeof texts / sizeof *texts; i++)
 		*texts[i] = "";
 	return sheet;

@@ -86,7 +86,7 @@ typedef enum fl_block_kind {
 	FL_BLOCK_GRID,
 	FL_BLOCK_TABLE,
 	FL_BLOCK_CHART,
-	FL_BLOCK_SIGNATURES,
+	FL_BLOCK_SIGNATURES, /* a pair with a value is set; one without is room to sign, by the block's `parts` */
 	FL_BLOCK_END
 } fl_block_kind;
 
@@ -96,6 +96,7 @@ typedef struct fl_block {
 	const char *text; /* all but grid, table and signatures */
 	fl_pairs *grid;   /* grid, signatures: the columns */
 	size_t grid_count;
+	int parts[3]; /* signatures: which place each column is; known to whoever asks for the places */
 	fl_column *columns;
 	size_t column_count;
 	fl_row *rows;
@@ -114,7 +115,8 @@ struct fl_sheet {
 	const char *running; /* at the head of every page but the first */
 	const char *mark;    /* on every page, "" if none */
 	const char *author, *subject, *program;
-	const char *fingerprint; /* hexadecimal: the document's identity, from what it was made of */
+	const char *fingerprint; /* the document's identity, from what it was made of */
+	const char *source;      /* in the metadata: what it was made of, for whoever looks for it; "" if none */
 	fl_utc made_at;
 	int utc_offset_min;
 	fl_block *blocks;
