@@ -70,8 +70,7 @@ fl_status fl_store_reserve(fl_store *store, int year, fl_utc at, const char *pur
 		return fl_fail(err, FL_E_RANGE, "numbers are given for the years 1900 to 2200, not for %d", year);
 	if (!fl_can_put(purpose))
 		return fl_fail(err, FL_E_VALUE, "the purpose of a number has control characters or is not UTF-8");
-	fl_number_row row = {
-	    .origin = store->own_digest, .prefix = store->own_prefix, .year = year, .at = at, .purpose = purpose};
+	fl_number_row row = {.origin = store->own_digest, .year = year, .at = at, .purpose = purpose};
 	fl_status status = fl_sql_run(store, SQL_BEGIN, err, "");
 	if (status >= 0)
 		status = reserve_within(store, &row, text, err);

@@ -9,7 +9,7 @@
 
 /* A number as its row says. Borrowed texts. */
 typedef struct fl_number_row {
-	const char *origin, *prefix; /* digest of the chain; its founding's prefix */
+	const char *origin; /* digest of the chain */
 	int64_t year, value;
 	const char *text, *purpose;
 	fl_utc at;

@@ -45,9 +45,7 @@
 	X(SQL_NUMBER_HEAD, "SELECT id, digest FROM number ORDER BY id DESC LIMIT 1")                                       \
 	X(SQL_ADD_NUMBER, "INSERT INTO number(id, origin, year, value, text, at, purpose, digest) VALUES (?1, ?2, ?3, "    \
 	                  "?4, ?5, ?6, ?7, ?8)")                                                                           \
-	X(SQL_NUMBERS,                                                                                                     \
-	  "SELECT n.id, o.digest, n.year, n.value, n.text, n.at, n.purpose, n.digest, o.founding, o.own FROM number n "    \
-	  "LEFT JOIN origin o ON o.id = n.origin ORDER BY n.id")                                                           \
+	X(SQL_NUMBERS, "SELECT id, origin, year, value, text, at, purpose, digest FROM number ORDER BY id")                \
 	X(SQL_UNUSED,                                                                                                      \
 	  "SELECT text, purpose, at FROM number n WHERE NOT EXISTS (SELECT 1 FROM session s WHERE s.origin = n.origin "    \
 	  "AND s.number = n.text) ORDER BY id")                                                                            \

@@ -65,6 +65,7 @@ typedef struct chain {
 	int64_t row, sequence;
 	bool own;
 	char origin[FL_DIGEST_HEX_SIZE], previous[FL_DIGEST_HEX_SIZE];
+	char prefix[16]; /* of its numbers */
 } chain;
 
 typedef struct verification {
@@ -426,10 +427,10 @@ static fl_status check_founding(verification *v, const char *founding, size_t le
 static fl_status check_own(verification *v, const char *text, size_t length, int64_t *first) {
 	fl_arena arena = {0};
 	fl_founding_text founding;
-	if (!v->at->own)
-		return FL_OK;
 	fl_status status = fl_founding_read(text, length, &arena, &founding, v->err);
-	if (status >= 0 && !*founding.continues && ++*first > 1)
+	if (status >= 0)
+		snprintf(v->at->prefix, sizeof v->at->prefix, "%s", founding.prefix);
+	if (status >= 0 && v->at->own && !*founding.continues && ++*first > 1)
 		status = misfit(v, 0, "a chain that was taken in was made the book's own");
 	fl_arena_free(&arena);
 	return status;
@@ -508,25 +509,23 @@ static fl_status check_chains(verification *v) {
 
 static fl_status check_number(verification *v, sqlite3_stmt *row, int64_t expected, char previous[FL_DIGEST_HEX_SIZE]) {
 	const fl_place place = {.file = v->store->path, .field = fl_sql_column(row, 4)};
-	fl_number_row number = {.origin = fl_sql_column(row, 1),
+	const chain *c = v->at = chain_of(v, sqlite3_column_int64(row, 1));
+	fl_number_row number = {.origin = c ? c->origin : "",
 	                        .year = sqlite3_column_int64(row, 2),
 	                        .value = sqlite3_column_int64(row, 3),
 	                        .text = fl_sql_column(row, 4),
 	                        .at = sqlite3_column_int64(row, 5),
 	                        .purpose = fl_sql_column(row, 6)};
 	char digest[FL_DIGEST_HEX_SIZE], text[FL_NUMBER_SIZE];
-	fl_arena arena = {0};
-	fl_founding_text founding = {.prefix = ""};
-	fl_status status =
-	    fl_founding_read(fl_sql_column(row, 8), (size_t)sqlite3_column_bytes(row, 8), &arena, &founding, NULL);
-	fl_number_text(status < 0 ? "" : founding.prefix, number.year, number.value, text);
-	fl_arena_free(&arena);
-	status = fl_number_digest(v->store, previous, &number, digest, v->err);
-	if (status >= 0 && (strcmp(digest, fl_sql_column(row, 7)) != 0 || sqlite3_column_int64(row, 0) != expected ||
-	                    strcmp(text, number.text) != 0 || sqlite3_column_int(row, 9) != 1))
-		status = fl_fail_at(v->err, FL_E_TAMPERED, place, "a number that was given out was changed or taken out");
+	fl_number_text(c ? c->prefix : "", number.year, number.value, text);
+	fl_status status = fl_number_digest(v->store, previous, &number, digest, v->err);
+	if (status < 0)
+		return status;
+	bool same = strcmp(digest, fl_sql_column(row, 7)) == 0 && strcmp(text, number.text) == 0;
+	if (!same || !c || !c->own || sqlite3_column_int64(row, 0) != expected)
+		return fl_fail_at(v->err, FL_E_TAMPERED, place, "a number that was given out was changed or taken out");
 	memcpy(previous, digest, sizeof digest);
-	return status;
+	return FL_OK;
 }
 
 static fl_status check_numbers(verification *v) {
