@@ -75,6 +75,9 @@ fl_status fl_identity_of_pem(const char *pem, size_t length, const char *file, f
 /* True if both certificates are of one person as far as they can tell: the same key, or the same name in the same
  * organisation (letter case and repeated spaces aside). */
 bool fl_identity_same_person(const fl_identity *a, const fl_identity *b);
+/* True if the certificate is of somebody of that name: the same words in any order, letter case (of ASCII), commas and
+ * repeated spaces aside, as authorities write names their own way. */
+bool fl_identity_is_named(const fl_identity *who, const char *name);
 
 /* A private key and, once there is one, its certificate with those of the authorities between. */
 typedef struct fl_signer fl_signer;
@@ -130,6 +133,16 @@ typedef struct fl_timestamper {
 	                 size_t *response_length, fl_error *err);
 	const fl_trust *trust; /* the authority of timestamps must be in it */
 } fl_timestamper;
+
+/* An authority that is asked by HTTP. Its token is signed, so that the way to it need not be: https is not for this. */
+typedef struct fl_stamp_server {
+	const char *url;              /* "http://host:port/path" */
+	const char *proxy, *no_proxy; /* as in the variables http_proxy and no_proxy; NULL: none */
+	int timeout_s;
+} fl_stamp_server;
+/* A timestamper that asks the server; borrows both. FL_E_VALUE where the URL is not one. */
+fl_status fl_stamp_server_timestamper(fl_stamp_server *server, const fl_trust *trust, fl_timestamper *out,
+                                      fl_error *err) FL_MUST_USE;
 
 /* ---- sealing bytes ---------------------------------------------------------------------------------------------- */
 

@@ -10,6 +10,7 @@
 #include <openssl/x509v3.h>
 #include <stdio.h>
 #include <string.h>
+#include <strings.h>
 #include <time.h>
 
 char *fl_crypto_reason(char *out, size_t size) {
@@ -138,6 +139,31 @@ bool fl_identity_same_person(const fl_identity *a, const fl_identity *b) {
 		return true;
 	return same_words(skip_spaces(a->name), skip_spaces(b->name)) &&
 	       same_words(skip_spaces(a->organisation), skip_spaces(b->organisation));
+}
+
+/* The next word of a name; false at its end. */
+static bool next_word(const char **at, const char **word, size_t *length) {
+	*word = *at + strspn(*at, " ,");
+	*length = strcspn(*word, " ,");
+	*at = *word + *length;
+	return *length > 0;
+}
+
+static bool all_words_in(const char *some, const char *name) {
+	const char *word, *other;
+	size_t length, size;
+	while (next_word(&some, &word, &length)) {
+		bool found = false;
+		for (const char *at = name; !found && next_word(&at, &other, &size);)
+			found = size == length && strncasecmp(word, other, length) == 0;
+		if (!found)
+			return false;
+	}
+	return true;
+}
+
+bool fl_identity_is_named(const fl_identity *who, const char *name) {
+	return who->name[strspn(who->name, " ,")] != '\0' && all_words_in(who->name, name) && all_words_in(name, who->name);
 }
 
 fl_status fl_certificates_of_pem(const char *pem, size_t length, const char *file, STACK_OF(X509) * *out,

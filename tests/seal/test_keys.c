@@ -210,6 +210,11 @@ static void two_people_are_told_apart(void **state) {
 	assert_true(fl_identity_same_person(&a, &b));  /* the same name, spaced and capitalised otherwise */
 	assert_true(fl_identity_same_person(&a, &c));  /* the same key under another name */
 	assert_false(fl_identity_same_person(&a, &d)); /* two people */
+	assert_true(fl_identity_is_named(&a, "MARLOW,  Ann"));
+	assert_false(fl_identity_is_named(&a, "Ann"));
+	assert_false(fl_identity_is_named(&a, "Ann Marlow-Holm"));
+	assert_false(fl_identity_is_named(&a, ""));
+	assert_false(fl_identity_is_named(&(fl_identity){.name = " "}, " "));
 }
 
 int main(void) {
