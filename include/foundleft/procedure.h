@@ -38,6 +38,13 @@ typedef struct fl_band {
 	double half_width; /* in the unit of the basis */
 } fl_band;
 
+/* A stretch of the scale with a tolerance of its own. Both ends belong to it; where two zones touch the tighter rules.
+ */
+typedef struct fl_zone {
+	double from_pct_span, to_pct_span;
+	fl_band band;
+} fl_zone;
+
 typedef enum fl_linearity { FL_LINEARITY_INDEPENDENT, FL_LINEARITY_TERMINAL, FL_LINEARITY_ZERO_BASED } fl_linearity;
 
 /* One place on the scale where the instrument is tested. */
@@ -89,7 +96,16 @@ typedef struct fl_extra_term {
 	double coverage;              /* k for FL_DIST_NORMAL, else 0 */
 	fl_distribution distribution; /* never FL_DIST_STUDENT: a template has no degrees of freedom to give */
 	fl_band_basis basis;          /* FL_BAND_PERCENT_SPAN or FL_BAND_PERCENT_READING */
+	bool own;                     /* another deviation at every point; else one and the same at all of them */
+	const char *source;           /* where the value comes from; NULL where the template does not say */
 } fl_extra_term;
+
+/* Which line is computed beside the ordinary least-squares one. */
+typedef enum fl_line_choice {
+	FL_LINE_BY_RATIO, /* the generalized one where the points' uncertainties differ by more than three to one */
+	FL_LINE_ORDINARY, /* none */
+	FL_LINE_GENERAL   /* the generalized one always */
+} fl_line_choice;
 
 /* In which part a person signs. */
 typedef enum fl_part { FL_PART_PERFORMED, FL_PART_REVIEWED, FL_PART_AUTHORISED, FL_PARTS } fl_part;
@@ -114,7 +130,9 @@ typedef struct fl_procedure {
 	fl_settle settle;
 	fl_band tolerance;      /* used where the instrument states none */
 	bool sets_limits_aside; /* the instrument's own tolerance and limits are for the whole sensor, not for this */
-	fl_band adjust_limit;   /* inside: leave alone */
+	const fl_zone *zones;   /* where it is another one; rising, not overlapping */
+	int zone_count;
+	fl_band adjust_limit;             /* inside: leave alone */
 	double hysteresis_limit_pct_span; /* NAN if none */
 	double linearity_limit_pct_span;  /* NAN if none */
 	fl_linearity deciding_linearity;
@@ -122,7 +140,14 @@ typedef struct fl_procedure {
 	double coverage_probability;             /* 0.9545 usual */
 	double oil_interpolation_half_width_rel; /* D341 between certified temperatures, fraction of nu, rectangular */
 	double oil_ageing_per_year_rel;          /* fraction of nu a year since certified, half width, rectangular */
-	double minimum_tur;                      /* below: no conformity statement (verdict withheld); 0 for never */
+	double oil_own_share; /* certificates of one issuer are correlated by 1 less this; 0: fully, as if one scale were
+	                         off */
+	fl_line_choice line;
+	double minimum_tur;        /* below: no conformity statement (verdict withheld); 0 for never; 1.5 if not stated */
+	bool states_below_tur;     /* a verdict is given below it all the same, and the certificate says so */
+	double reliability;        /* share of such instruments that is in tolerance, for the global risk; 0: not stated */
+	bool reliability_observed; /* the share as observed by measurements; else of the true values */
+	bool budget_on_certificate;
 	const fl_extra_term *extra;
 	int extra_count;
 	const fl_question *gates; /* before the first reading */
@@ -144,6 +169,13 @@ void fl_procedure_free(fl_procedure *procedure);
  * A bare "2.0 %" is refused: nobody can tell of what. Absent and not required: *out stays. For stage stock too. */
 fl_status fl_procedure_band(const struct fl_node *map, const char *key, bool required, fl_unit dial, fl_band *out,
                             fl_error *err) FL_MUST_USE;
+
+/* Reads map[key] as a list of {from, to, band}. `from` and `to` in % of span or, with `dial` not FL_U_NONE, in that
+ * unit, which `pct_of_dial` turns into % of span. Zones that overlap are refused. Absent: *out stays. */
+typedef double (*fl_zone_place)(const void *context, double dial);
+fl_status fl_procedure_zones(fl_arena *arena, const struct fl_node *map, const char *key, fl_unit dial,
+                             fl_zone_place pct_of_dial, const void *context, const fl_zone **out, int *count,
+                             fl_error *err) FL_MUST_USE;
 
 /* The rule in words, as the certificate states it. Never NULL. */
 const char *fl_procedure_rule_words(fl_rule rule);

@@ -71,6 +71,8 @@ typedef struct fl_instrument {
 	double dp_full_pa;                               /* plate differential pressure at full scale; NAN if not stated */
 	double supply_hz, motor_speed_rev_s, gear_ratio; /* NAN where not stated */
 	fl_band tolerance;                               /* FL_BAND_NONE: the procedure's */
+	const fl_zone *zones;                            /* where the tolerance is another one */
+	int zone_count;
 	fl_band adjust_limit;
 	double hysteresis_limit_pct_span;                             /* NAN: the procedure's */
 	double set_point, set_point_tolerance, alarm_low, alarm_high; /* dial units; NAN where not stated */

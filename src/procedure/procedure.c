@@ -31,6 +31,7 @@ static const char *const fields[] = {
     "bath tolerance",
     "settled",
     "tolerance",
+    "tolerance zones",
     "instrument limits",
     "adjust limit",
     "hysteresis limit",
@@ -40,7 +41,12 @@ static const char *const fields[] = {
     "coverage",
     "oil interpolation",
     "oil ageing per year",
+    "oil certificates correlated",
+    "line",
     "minimum TUR",
+    "conformity below minimum TUR",
+    "in-tolerance reliability",
+    "budget on certificate",
     "further uncertainty",
     "gates",
     "conditions",
@@ -55,6 +61,7 @@ static const char *const medium_words[] = {"oil", "pressure", NULL};
 static const char *const rule_words[] = {"none", "simple acceptance", "guard band", "four states", NULL};
 static const char *const linearity_words[] = {"independent", "terminal-based", "zero-based", NULL};
 static const char *const part_words[FL_PARTS] = {"performed", "reviewed", "authorised"};
+static const char *const line_words[] = {"by uncertainty ratio", "ordinary", "generalised", NULL};
 static const char *const distribution_words[] = {"normal", "rectangular", "triangular", NULL};
 
 const char *fl_part_word(fl_part part) {
@@ -131,6 +138,78 @@ fl_status fl_procedure_band(const fl_node *map, const char *key, bool required, 
 		return fl_fail_at(err, FL_E_RANGE, fl_node_place(scalar), "%.60s is not possible: above 0%s would be",
 		                  scalar->text, percent ? " and up to 50 %" : "");
 	*out = (fl_band){basis, value};
+	return FL_OK;
+}
+
+/* ---- zones ------------------------------------------------------------------------------------------------------- */
+
+/* What the zones of one list are read with. */
+typedef struct zone_reader {
+	fl_unit dial;
+	fl_zone_place pct_of_dial;
+	const void *context;
+} zone_reader;
+
+static fl_status read_zone_end(const fl_node *map, const char *key, const zone_reader *by, double *pct, fl_error *err) {
+	const char *text = NULL;
+	double value = 0.0;
+	fl_unit unit = FL_U_NONE;
+	TRY(fl_node_text(map, key, true, &text, err));
+	const fl_node *scalar = fl_node_get(map, key);
+	TRY(fl_node_measure(scalar, &value, &unit, err));
+	bool percent = unit == FL_U_PERCENT_SPAN || unit == FL_U_PERCENT,
+	     on_dial = by->dial != FL_U_NONE && unit == by->dial;
+	if (!percent && !on_dial)
+		return fl_fail_at(err, FL_E_VALUE, fl_node_place(scalar),
+		                  "\"%.60s\" does not fit here: write it in %% of span%s%s", text,
+		                  by->dial != FL_U_NONE ? " or " : "", by->dial != FL_U_NONE ? fl_unit_text(by->dial) : "");
+	*pct = on_dial ? by->pct_of_dial(by->context, value) : value;
+	if (!(*pct >= -5.0 && *pct <= 110.0))
+		return fl_fail_at(err, FL_E_RANGE, fl_node_place(scalar),
+		                  "%.60s is not on the scale: from -5 to 110 %% of span would be", text);
+	return FL_OK;
+}
+
+static fl_status read_zone(const fl_node *map, const zone_reader *by, fl_zone *zone, fl_error *err) {
+	static const char *const known[] = {"from", "to", "band", NULL};
+	TRY(fl_node_only(map, known, err));
+	TRY(read_zone_end(map, "from", by, &zone->from_pct_span, err));
+	TRY(read_zone_end(map, "to", by, &zone->to_pct_span, err));
+	TRY(fl_procedure_band(map, "band", true, by->dial, &zone->band, err));
+	if (zone->from_pct_span >= zone->to_pct_span)
+		return fl_fail_at(err, FL_E_VALUE, fl_node_place(map),
+		                  "the zone ends at %g %% of span, where it begins: from %g %%", zone->to_pct_span,
+		                  zone->from_pct_span);
+	return FL_OK;
+}
+
+fl_status fl_procedure_zones(fl_arena *arena, const fl_node *map, const char *key, fl_unit dial,
+                             fl_zone_place pct_of_dial, const void *context, const fl_zone **out, int *count,
+                             fl_error *err) {
+	const fl_node *list;
+	const zone_reader by = {dial, pct_of_dial, context};
+	TRY(fl_node_list(map, key, false, &list, err));
+	if (!list || list->count == 0)
+		return FL_OK;
+	if (!fl_node_get(map, "tolerance"))
+		return fl_fail_at(err, FL_E_VALUE, fl_node_place(list),
+		                  "zones are exceptions: write under tolerance what holds elsewhere on the scale");
+	if (list->count > MAX_POINTS)
+		return fl_fail_at(err, FL_E_VALUE, fl_node_place(list), "more than %d zones", (int)MAX_POINTS);
+	fl_zone *zones = fl_arena_alloc(arena, list->count, sizeof *zones);
+	if (!zones)
+		return fl_fail(err, FL_E_MEMORY, "out of memory");
+	for (size_t i = 0; i < list->count; i++) {
+		TRY(read_zone(list->items[i], &by, &zones[i], err));
+		if (i > 0 && zones[i].from_pct_span < zones[i - 1].to_pct_span)
+			return fl_fail_at(
+			    err, FL_E_VALUE, fl_node_place(list->items[i]),
+			    "it begins at %g %% of span, before the zone above it ends, at %g %%: write zones from low "
+			    "to high and apart",
+			    zones[i].from_pct_span, zones[i - 1].to_pct_span);
+	}
+	*out = zones;
+	*count = (int)list->count;
 	return FL_OK;
 }
 
@@ -305,9 +384,34 @@ static fl_status check_limits(const fl_node *root, const fl_procedure *p, fl_err
 	return FL_OK;
 }
 
+/* {share: 90 %, of: true values} or {share: 90 %, of: observed values}: the two are not the same. */
+static fl_status read_reliability(const fl_node *root, fl_procedure *p, fl_error *err) {
+	static const char *const known[] = {"share", "of", NULL}, *const of[] = {"true values", "observed values", NULL};
+	const fl_node *map = fl_node_get(root, "in-tolerance reliability");
+	int whose = 0;
+	if (!map)
+		return FL_OK;
+	TRY(fl_node_only(map, known, err));
+	TRY(fl_node_amount_within(map, "share", true, FL_Q_RATIO, 0.01, 0.9999, &p->reliability, NULL, err));
+	TRY(fl_node_choice(map, "of", true, of, &whose, err));
+	p->reliability_observed = whose == 1;
+	return FL_OK;
+}
+
+static fl_status read_risks(const fl_node *root, fl_procedure *p, fl_error *err) {
+	static const char *const below[] = {"withhold", "state", NULL};
+	int what = 0;
+	p->minimum_tur = 1.5;
+	TRY(fl_node_number(root, "minimum TUR", false, 0.0, 20.0, &p->minimum_tur, err));
+	TRY(fl_node_choice(root, "conformity below minimum TUR", false, below, &what, err));
+	p->states_below_tur = what == 1;
+	return read_reliability(root, p, err);
+}
+
 static fl_status read_decision(const fl_node *root, fl_procedure *p, fl_error *err) {
 	int rule = 0, linearity = 0;
 	TRY(fl_procedure_band(root, "tolerance", false, FL_U_NONE, &p->tolerance, err));
+	TRY(fl_procedure_zones(&p->arena, root, "tolerance zones", FL_U_NONE, NULL, NULL, &p->zones, &p->zone_count, err));
 	static const char *const limits[] = {"apply", "set aside", NULL};
 	int whose = 0;
 	TRY(fl_node_choice(root, "instrument limits", false, limits, &whose, err));
@@ -321,7 +425,7 @@ static fl_status read_decision(const fl_node *root, fl_procedure *p, fl_error *e
 	p->deciding_linearity = (fl_linearity)linearity;
 	p->rule = (fl_rule)rule;
 	TRY(fl_node_amount_within(root, "coverage", true, FL_Q_RATIO, 0.5, 0.9999, &p->coverage_probability, NULL, err));
-	TRY(fl_node_number(root, "minimum TUR", false, 0.0, 20.0, &p->minimum_tur, err));
+	TRY(read_risks(root, p, err));
 	return check_limits(root, p, err);
 }
 
@@ -332,8 +436,20 @@ static fl_status read_oil_terms(const fl_node *root, fl_procedure *p, fl_error *
 	bool oil = p->medium == FL_MEDIUM_OIL;
 	TRY(fl_node_amount_within(root, "oil interpolation", oil, FL_Q_RATIO, 0.0, 0.05,
 	                          &p->oil_interpolation_half_width_rel, NULL, err));
-	return fl_node_amount_within(root, "oil ageing per year", oil, FL_Q_RATIO, 0.0, 0.05, &p->oil_ageing_per_year_rel,
-	                             NULL, err);
+	TRY(fl_node_amount_within(root, "oil ageing per year", oil, FL_Q_RATIO, 0.0, 0.05, &p->oil_ageing_per_year_rel,
+	                          NULL, err));
+	double correlated = 1.0;
+	TRY(fl_node_number(root, "oil certificates correlated", false, 0.0, 1.0, &correlated, err));
+	p->oil_own_share = 1.0 - correlated;
+	return FL_OK;
+}
+
+/* Which line, and what goes on the certificate. */
+static fl_status read_statement(const fl_node *root, fl_procedure *p, fl_error *err) {
+	int line = 0;
+	TRY(fl_node_choice(root, "line", false, line_words, &line, err));
+	p->line = (fl_line_choice)line;
+	return fl_node_bool(root, "budget on certificate", false, &p->budget_on_certificate, err);
 }
 
 static fl_status read_coverage_factor(const fl_node *map, fl_extra_term *term, fl_error *err) {
@@ -351,8 +467,9 @@ static fl_status read_coverage_factor(const fl_node *map, fl_extra_term *term, f
 }
 
 static fl_status read_extra_term(const fl_node *map, fl_extra_term *term, fl_error *err) {
-	static const char *const known[] = {"name", "value", "distribution", "k", NULL};
-	int distribution = 0;
+	static const char *const known[] = {"name", "value", "distribution", "k", "at each point", "source", NULL};
+	static const char *const deviation[] = {"the same", "its own", NULL};
+	int distribution = 0, whose = 0;
 	fl_band band = {FL_BAND_NONE, 0.0};
 	TRY(fl_node_only(map, known, err));
 	TRY(fl_node_text(map, "name", true, &term->name, err));
@@ -361,6 +478,9 @@ static fl_status read_extra_term(const fl_node *map, fl_extra_term *term, fl_err
 	term->basis = band.basis;
 	term->value = band.half_width;
 	term->distribution = (fl_distribution)distribution;
+	TRY(fl_node_choice(map, "at each point", false, deviation, &whose, err));
+	term->own = whose == 1;
+	TRY(fl_node_text(map, "source", false, &term->source, err));
 	return read_coverage_factor(map, term, err);
 }
 
@@ -411,6 +531,7 @@ static fl_status read_procedure(const fl_node *root, fl_procedure *p, fl_error *
 	TRY(read_decision(root, p, err));
 	TRY(read_oil_terms(root, p, err));
 	TRY(read_extra_terms(root, p, err));
+	TRY(read_statement(root, p, err));
 	TRY(read_signatures(root, p, err));
 	return fl_procedure_read_questions(root, p, err);
 }

@@ -23,6 +23,7 @@ static const char *const fields[] = {"tag",
                                      "motor speed",
                                      "gear ratio",
                                      "tolerance",
+                                     "tolerance zones",
                                      "adjust limit",
                                      "hysteresis limit",
                                      "set point",
@@ -167,10 +168,24 @@ static fl_status read_hydraulics(const fl_node *map, fl_instrument *item, fl_err
 /* ---- limits and the plant -------------------------------------------------------------------------------------------
  */
 
-static fl_status read_limits(const fl_node *map, fl_instrument *item, fl_error *err) {
+/* Place of a dial value on the scale, % of span; NAN where the dial has none. */
+static double pct_of_dial(const void *context, double dial) {
+	const fl_scale *scale = context;
+	double low_m2_s, high_m2_s, at_m2_s = dial * 1e-6;
+	fl_status status = fl_physics_scale_span(scale, &low_m2_s, &high_m2_s, NULL);
+	if (status >= 0 && scale->dial_unit == FL_DIAL_REDWOOD)
+		status = fl_physics_redwood_to_nu(dial, &at_m2_s, NULL);
+	if (status >= 0 && scale->dial_unit == FL_DIAL_SAYBOLT)
+		status = fl_physics_saybolt_to_nu(dial, scale->saybolt_temp_c, &at_m2_s, NULL);
+	return status < 0 ? NAN : 100.0 * (at_m2_s - low_m2_s) / (high_m2_s - low_m2_s);
+}
+
+static fl_status read_limits(fl_arena *arena, const fl_node *map, fl_instrument *item, fl_error *err) {
 	fl_unit dial = fl_physics_dial_unit(item->scale.dial_unit);
 	fl_band hysteresis = {FL_BAND_NONE, 0.0};
 	TRY(fl_procedure_band(map, "tolerance", false, dial, &item->tolerance, err));
+	TRY(fl_procedure_zones(arena, map, "tolerance zones", dial, pct_of_dial, &item->scale, &item->zones,
+	                       &item->zone_count, err));
 	TRY(fl_procedure_band(map, "adjust limit", false, dial, &item->adjust_limit, err));
 	TRY(fl_procedure_band(map, "hysteresis limit", false, dial, &hysteresis, err));
 	item->hysteresis_limit_pct_span = hysteresis.basis == FL_BAND_PERCENT_SPAN ? hysteresis.half_width : NAN;
@@ -213,11 +228,11 @@ static fl_status read_plant(const fl_node *map, fl_instrument *item, fl_error *e
 	return FL_OK;
 }
 
-fl_status fl_stock_read_instrument(const fl_node *map, fl_instrument *out, fl_error *err) {
+fl_status fl_stock_read_instrument(fl_arena *arena, const fl_node *map, fl_instrument *out, fl_error *err) {
 	TRY(fl_node_only(map, fields, err));
 	TRY(read_plate(map, out, err));
 	TRY(read_scale(map, &out->scale, err));
 	TRY(read_hydraulics(map, out, err));
-	TRY(read_limits(map, out, err));
+	TRY(read_limits(arena, map, out, err));
 	return read_plant(map, out, err);
 }

@@ -17,7 +17,7 @@
 /* Each reads one item of its kind from a map into *out, which is zeroed; text and place are the caller's. */
 fl_status fl_stock_read_oil(fl_arena *arena, const fl_node *map, fl_oil *out, fl_error *err) FL_MUST_USE;
 fl_status fl_stock_read_equipment(fl_arena *arena, const fl_node *map, fl_equipment *out, fl_error *err) FL_MUST_USE;
-fl_status fl_stock_read_instrument(const fl_node *map, fl_instrument *out, fl_error *err) FL_MUST_USE;
+fl_status fl_stock_read_instrument(fl_arena *arena, const fl_node *map, fl_instrument *out, fl_error *err) FL_MUST_USE;
 /* Refuses a plate differential pressure that geometry, pump and dial density cannot give within 15 %, naming the field
  * whose usual slip would explain it. `map` is the instrument, `geometry` its group. */
 fl_status fl_stock_check_geometry(const fl_node *map, const fl_node *geometry, const fl_instrument *instrument,

@@ -103,7 +103,7 @@ static fl_status check_sisters(const fl_stock *stock, const fl_node *map, const 
 
 static fl_status add_instrument(fl_stock *stock, const char *source, const fl_node *map, fl_error *err) {
 	fl_instrument item = {.place = fl_node_place(map), .text = fl_document_excerpt(&stock->arena, source, map)};
-	TRY(fl_stock_read_instrument(map, &item, err));
+	TRY(fl_stock_read_instrument(&stock->arena, map, &item, err));
 	TRY(check_sisters(stock, map, &item, err));
 	fl_instrument *grown = fl_arena_grow(&stock->arena, stock->instruments, stock->instrument_count,
 	                                     &stock->instrument_capacity, sizeof *grown);
