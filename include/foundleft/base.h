@@ -180,6 +180,7 @@ typedef enum fl_quantity {
 	FL_Q_FREQUENCY,
 	FL_Q_VOLTAGE,
 	FL_Q_TIME,
+	FL_Q_VOLUME,
 	FL_Q_RATIO,   /* inside: fraction; % and parts are scaled */
 	FL_Q_HUMIDITY /* inside: fraction relative humidity */
 } fl_quantity;
@@ -205,6 +206,7 @@ typedef enum fl_quantity {
 	X(FL_U_MM, "mm", FL_Q_LENGTH, 1e-3, 0.0)                                           \
 	X(FL_U_M, "m", FL_Q_LENGTH, 1.0, 0.0)                                              \
 	X(FL_U_CM3_REV, "cm³/rev", FL_Q_VOLUME_PER_REV, 1e-6, 0.0)                         \
+	X(FL_U_CM3, "cm³", FL_Q_VOLUME, 1e-6, 0.0)                                         \
 	X(FL_U_R_MIN, "r/min", FL_Q_ROTATION, 0.016666666666666666, 0.0)                   \
 	X(FL_U_HZ, "Hz", FL_Q_FREQUENCY, 1.0, 0.0)                                         \
 	X(FL_U_V, "V", FL_Q_VOLTAGE, 1.0, 0.0)                                             \

@@ -46,6 +46,11 @@
 	X(FL_V_REMARK, "remark", "a remark: typed")                                                          \
 	X(FL_V_TORN, "torn", "an unfinished line was found behind the last good one and cut off: body")      \
 	X(FL_V_RESUME, "resume", "the session was taken up again: program, source")                          \
+	X(FL_V_MEASURE, "measure",                                                                           \
+	  "an extra measurement: run (whose state it was made in), id (what), typed, unit, value; with it "  \
+	  "the pressure applied, the time or the thermometer in use; item (measuring equipment)")            \
+	X(FL_V_FINDING, "finding", "what the program found is answered: id, answer, reason, by")             \
+	X(FL_V_CHECK, "check", "a function check: id; answer, or typed with unit and value, or reason")      \
 	X(FL_V_CLOSE, "close", "the session is closed: by")                                                  \
 	X(FL_V_ISSUE, "issue",                                                                               \
 	  "a certificate is issued: id (its number), day, program, item (the journal's name); name and "     \
@@ -88,6 +93,8 @@ typedef enum fl_verb {
 	X(FL_F_APPLIED_PA, "applied-pa")     \
 	X(FL_F_LINE_TYPED, "line")           \
 	X(FL_F_LINE_PA, "line-pa")           \
+	X(FL_F_OVER_TYPED, "over")           \
+	X(FL_F_OVER_S, "over-s")             \
 	X(FL_F_TAKEN, "taken")               \
 	X(FL_F_TARGET, "target")             \
 	X(FL_F_ABOUT, "about")               \
@@ -216,6 +223,64 @@ typedef struct fl_remark {
 	const char *typed;
 } fl_remark;
 
+/* What can be measured besides the readings, to tell causes apart. Word, what is measured. */
+#define FL_MEASURE_LIST(X)                                                                              \
+	X(FL_MEASURE_INJECTION, "injection", "a differential pressure injected into the transmitter alone") \
+	X(FL_MEASURE_SPEED, "speed", "revolutions counted at the pump shaft")                               \
+	X(FL_MEASURE_VOLUME, "volume", "a volume through the capillary, timed")                             \
+	X(FL_MEASURE_DENSITY, "density", "the density that the dial assumes, from plate or papers")         \
+	X(FL_MEASURE_TEMPERATURE, "temperature", "a second thermometer in the oil, beside the one in use")  \
+	X(FL_MEASURE_SPANNED, "spanned-out", "sum of the span corrections since the capillary was cleaned")
+
+typedef enum fl_measure {
+#define FL_MEASURE_ENUM(name, word, meaning) name,
+	FL_MEASURE_LIST(FL_MEASURE_ENUM)
+#undef FL_MEASURE_ENUM
+	    FL_MEASURE_COUNT
+} fl_measure;
+const char *fl_measure_word(fl_measure what);
+
+typedef struct fl_measurement {
+	int sequence;
+	fl_utc at;
+	fl_measure what;
+	fl_run_kind run; /* the instrument was in the state of this run */
+	const char *typed;
+	fl_unit unit;
+	double value;              /* in `unit`: output, speed, volume, density, temperature, ratio */
+	const char *applied_typed; /* injection; else NULL */
+	fl_unit applied_unit;
+	double applied_pa;
+	const char *over_typed; /* volume: the time; else NULL */
+	double over_s;
+	const char *temp_typed; /* temperature: what the thermometer in use showed; else NULL */
+	double temp_c;
+	const char *equipment; /* id of what it was measured with; NULL if none was named */
+	bool undone;
+} fl_measurement;
+
+/* The answer to a finding that wanted one before anything is decided. */
+typedef struct fl_finding_answer {
+	int sequence;
+	const char *id;
+	bool yes; /* it is so */
+	const char *reason, *by;
+	bool undone;
+} fl_finding_answer;
+
+/* What a function check found, before the loop is restored. */
+typedef struct fl_check_answer {
+	int sequence;
+	fl_utc at;
+	const char *id;
+	const char *answer; /* "yes", "no"; NULL for an amount or where it was not tried */
+	const char *typed;  /* amount as typed; NULL where there is none */
+	fl_unit unit;
+	double value;       /* in `unit`; NAN without */
+	const char *reason; /* why it was not tried; NULL if it was */
+	bool undone;
+} fl_check_answer;
+
 /* A certificate as issued: all that the session itself does not say. NULL where absent. */
 typedef struct fl_session_issue {
 	int sequence;
@@ -259,6 +324,12 @@ typedef struct fl_session {
 	size_t adjustment_count, adjustment_capacity;
 	fl_remark *remarks;
 	size_t remark_count, remark_capacity;
+	fl_measurement *measurements;
+	size_t measurement_count, measurement_capacity;
+	fl_finding_answer *findings;
+	size_t finding_count, finding_capacity;
+	fl_check_answer *checks;
+	size_t check_count, check_capacity;
 	int questions; /* times the program asked back and was confirmed */
 	bool closed;
 	const char *closed_by;
@@ -278,6 +349,13 @@ void fl_session_free(fl_session *session);
 const fl_setting *fl_session_setting(const fl_session *session, const char *id);
 const fl_gate_answer *fl_session_gate(const fl_session *session, const char *id);
 const char *fl_session_equipment_id(const fl_session *session, fl_role role); /* NULL if none */
+/* The answers that count; NULL if none. */
+const fl_finding_answer *fl_session_finding(const fl_session *session, const char *id);
+const fl_check_answer *fl_session_check_answer(const fl_session *session, const char *id);
+/* Which run shows the instrument as it is now: as-left from the first adjustment on, or where there is no as-found. */
+fl_run_kind fl_session_state(const fl_session *session);
+/* Is the work with the oils done, so that functions can be checked? */
+bool fl_session_runs_done(const fl_session *session);
 /* The body of the text of `kind` and `name` (NULL: the first of that kind); NULL if none. */
 const char *fl_session_text_body(const fl_session *session, const char *kind, const char *name);
 /* The certificate of that number, NULL if none was issued. */

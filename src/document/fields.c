@@ -37,6 +37,8 @@ static const char *quantity_words(fl_quantity quantity) {
 		return "a length";
 	case FL_Q_VOLUME_PER_REV:
 		return "a volume per revolution";
+	case FL_Q_VOLUME:
+		return "a volume";
 	case FL_Q_ROTATION:
 		return "a speed of rotation";
 	case FL_Q_FREQUENCY:

@@ -18,6 +18,10 @@
  * resume).
  *   9. A certificate is issued only after `close`, each number once; every further one of the same session amends the
  *      latest, with its reason.
+ *  10. An extra measurement belongs to the state that the instrument is in, and comes only after as-found is settled.
+ *      A finding is answered before the decision, once; a "yes" (the readings are mixed up) rules out adjusting.
+ *      A function check comes after the runs and before `close`, each once: an answer, an amount, or why it was not
+ * tried.
  *
  * SPDX-License-Identifier: GPL-3.0-or-later
  */
@@ -210,6 +214,105 @@ static fl_status check_decide(const fl_session *s, const fl_event *e, fl_error *
 		return fl_fail(err, FL_E_STATE, "the as-found run has to be closed before anything is decided");
 	if (s->decision)
 		return fl_fail(err, FL_E_STATE, "it was decided already: %s", fl_decision_word(s->decision));
+	for (size_t i = 0; i < s->finding_count && answer == FL_DECISION_ADJUST; i++)
+		if (s->findings[i].yes && !s->findings[i].undone)
+			return fl_fail(
+			    err, FL_E_STATE,
+			    "no adjustment on mixed-up readings (%s): decide leave or repair, and take them again in a new "
+			    "session",
+			    s->findings[i].id);
+	return FL_OK;
+}
+
+/* ---- extra measurements, findings, function checks ----------------------------------------------------------------
+ */
+
+fl_run_kind fl_session_state(const fl_session *s) {
+	bool changed = live_adjustments(s) > 0 || s->runs[FL_RUN_AS_LEFT].begun || s->runs[FL_RUN_AS_FOUND].missing;
+	return changed ? FL_RUN_AS_LEFT : FL_RUN_AS_FOUND;
+}
+
+bool fl_session_runs_done(const fl_session *s) {
+	const fl_session_run *as_left = &s->runs[FL_RUN_AS_LEFT];
+	return s->decision && (!fl_session_wants_as_left(s) || as_left->closed || as_left->missing);
+}
+
+/* What an extra measurement consists of. */
+static const struct {
+	fl_quantity quantity, or_quantity;
+	bool applied, over, temp;
+} measure_parts[FL_MEASURE_COUNT] = {
+    [FL_MEASURE_INJECTION] = {FL_Q_CURRENT, FL_Q_PRESSURE, true, false, false},
+    [FL_MEASURE_SPEED] = {FL_Q_ROTATION, FL_Q_ROTATION, false, false, false},
+    [FL_MEASURE_VOLUME] = {FL_Q_VOLUME, FL_Q_VOLUME, false, true, false},
+    [FL_MEASURE_DENSITY] = {FL_Q_DENSITY, FL_Q_DENSITY, false, false, false},
+    [FL_MEASURE_TEMPERATURE] = {FL_Q_TEMPERATURE, FL_Q_TEMPERATURE, false, false, true},
+    [FL_MEASURE_SPANNED] = {FL_Q_RATIO, FL_Q_RATIO, false, false, false},
+};
+
+/* Both fields where they are wanted, none elsewhere. */
+static bool pair_stands(const fl_event *e, fl_field typed, fl_field value, bool wanted) {
+	return wanted == (field(e, typed) != NULL) && wanted == (field(e, value) != NULL);
+}
+
+static fl_status check_measure(const fl_session *s, const fl_event *e, fl_error *err) {
+	int what = fl_words_index(fl_words_measures, field(e, FL_F_ID));
+	fl_run_kind run = (fl_run_kind)fl_words_index(fl_words_runs, field(e, FL_F_RUN)), state = fl_session_state(s);
+	fl_unit unit = FL_U_NONE;
+	if (what < 0)
+		return fl_fail(err, FL_E_VALUE, "\"%.40s\" is nothing that is measured besides the readings",
+		               field(e, FL_F_ID));
+	if (!as_found_settled(s))
+		return fl_fail(err, FL_E_STATE, "extra measurements come after the as-found run is closed");
+	if (run != state)
+		return fl_fail(err, FL_E_STATE, "the instrument is in its %s state now, not %s", fl_run_word(state),
+		               fl_run_word(run));
+	if (!pair_stands(e, FL_F_APPLIED_TYPED, FL_F_APPLIED_PA, measure_parts[what].applied) ||
+	    !pair_stands(e, FL_F_APPLIED_TYPED, FL_F_APPLIED_UNIT, measure_parts[what].applied) ||
+	    !pair_stands(e, FL_F_OVER_TYPED, FL_F_OVER_S, measure_parts[what].over) ||
+	    !pair_stands(e, FL_F_TEMP_TYPED, FL_F_TEMP_C, measure_parts[what].temp))
+		return fl_fail(err, FL_E_VALUE, "the measurement \"%s\" lacks a part, or has one too many", field(e, FL_F_ID));
+	if (measure_parts[what].over && !(fl_words_real(field(e, FL_F_OVER_S)) > 0.0))
+		return fl_fail(err, FL_E_VALUE, "the time of a timed volume has to be above 0");
+	fl_status status = fl_unit_parse(field(e, FL_F_UNIT), &unit, err);
+	if (status < 0)
+		return status;
+	fl_quantity quantity = fl_unit_quantity(unit);
+	if (quantity != measure_parts[what].quantity && quantity != measure_parts[what].or_quantity)
+		return fl_fail(err, FL_E_VALUE, "\"%s\" is not measured in %s", field(e, FL_F_ID), fl_unit_text(unit));
+	if (field(e, FL_F_ITEM) && !fl_session_text_body(s, "equipment", field(e, FL_F_ITEM)))
+		return fl_fail(err, FL_E_STATE, "the equipment %s is not in the record of this session", field(e, FL_F_ITEM));
+	return FL_OK;
+}
+
+static bool is_yes_or_no(const char *answer) {
+	return strcmp(answer, "yes") == 0 || strcmp(answer, "no") == 0;
+}
+
+static fl_status check_finding(const fl_session *s, const fl_event *e, fl_error *err) {
+	if (!is_yes_or_no(field(e, FL_F_ANSWER)))
+		return fl_fail(err, FL_E_VALUE, "a finding is answered yes or no");
+	if (!as_found_settled(s))
+		return fl_fail(err, FL_E_STATE, "nothing is found before the as-found run is closed");
+	if (s->decision)
+		return fl_fail(err, FL_E_STATE, "a finding is answered before the decision");
+	if (fl_session_finding(s, field(e, FL_F_ID)))
+		return fl_fail(err, FL_E_STATE, "the finding %s is answered already", field(e, FL_F_ID));
+	return FL_OK;
+}
+
+static fl_status check_function(const fl_session *s, const fl_event *e, fl_error *err) {
+	const char *answer = field(e, FL_F_ANSWER), *typed = field(e, FL_F_TYPED);
+	int parts = (answer != NULL) + (typed != NULL) + (field(e, FL_F_REASON) != NULL);
+	if (!fl_session_runs_done(s))
+		return fl_fail(err, FL_E_STATE, "functions are checked after the runs, before the loop is restored");
+	if (parts != 1 || !typed != !field(e, FL_F_VALUE) || !typed != !field(e, FL_F_UNIT))
+		return fl_fail(err, FL_E_VALUE,
+		               "a function check holds one of these: an answer, an amount with its unit, why it was not tried");
+	if (answer && !is_yes_or_no(answer))
+		return fl_fail(err, FL_E_VALUE, "a function check is answered yes or no");
+	if (fl_session_check_answer(s, field(e, FL_F_ID)))
+		return fl_fail(err, FL_E_STATE, "the function check %s stands in the record already", field(e, FL_F_ID));
 	return FL_OK;
 }
 
@@ -312,6 +415,12 @@ fl_status fl_session_check(const fl_session *s, const fl_event *e, fl_error *err
 		return check_decide(s, e, err);
 	case FL_V_ADJUST:
 		return check_adjust(s, err);
+	case FL_V_MEASURE:
+		return check_measure(s, e, err);
+	case FL_V_FINDING:
+		return check_finding(s, e, err);
+	case FL_V_CHECK:
+		return check_function(s, e, err);
 	case FL_V_CLOSE:
 		return check_close(s, err);
 	case FL_V_ISSUE:
@@ -335,7 +444,11 @@ static bool point_is_free(const fl_session *s, size_t index) {
 	return index + 1 == s->point_count && !any_run_begun(s);
 }
 
+/* What was measured in the changed state holds the change fast. */
 static bool adjustment_is_free(const fl_session *s) {
+	for (size_t i = 0; i < s->measurement_count; i++)
+		if (!s->measurements[i].undone && s->measurements[i].run == FL_RUN_AS_LEFT)
+			return false;
 	return !s->runs[FL_RUN_AS_LEFT].begun;
 }
 
@@ -345,6 +458,9 @@ static bool is_own_setting(const char *id) {
 }
 
 static bool decision_is_free(const fl_session *s) {
+	for (size_t i = 0; i < s->check_count; i++)
+		if (!s->checks[i].undone)
+			return false;
 	return s->decision && live_adjustments(s) == 0 && !s->runs[FL_RUN_AS_LEFT].begun &&
 	       !s->runs[FL_RUN_AS_LEFT].missing;
 }
@@ -367,10 +483,14 @@ fl_undoable fl_session_find(const fl_session *s, int sequence, size_t *index) {
 	FIND(s->readings, s->reading_count,
 	     !s->readings[i].undone && !s->readings[i].struck && !s->runs[s->readings[i].run].closed, FL_UNDO_READING)
 	FIND(s->adjustments, s->adjustment_count, !s->adjustments[i].undone && adjustment_is_free(s), FL_UNDO_ADJUSTMENT)
+	FIND(s->measurements, s->measurement_count,
+	     !s->measurements[i].undone && s->measurements[i].run == fl_session_state(s), FL_UNDO_MEASUREMENT)
+	FIND(s->findings, s->finding_count, !s->findings[i].undone && !s->decision, FL_UNDO_FINDING)
+	FIND(s->checks, s->check_count, !s->checks[i].undone, FL_UNDO_CHECK)
 	for (size_t run = 0; run < FL_RUN_KINDS; run++)
 		if (s->runs[run].missing && s->runs[run].missing_sequence == sequence) {
 			*index = run;
-			return run == FL_RUN_AS_LEFT || !s->decision ? FL_UNDO_MISSING : FL_NOTHING;
+			return run == FL_RUN_AS_LEFT || (!s->decision && adjustment_is_free(s)) ? FL_UNDO_MISSING : FL_NOTHING;
 		}
 	if (s->decision_sequence == sequence && decision_is_free(s))
 		return FL_UNDO_DECISION;

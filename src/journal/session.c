@@ -49,6 +49,15 @@ static bool make_room(fl_session *s, fl_verb verb) {
 	case FL_V_REMARK:
 		GROW(remarks, remark_count, remark_capacity);
 		break;
+	case FL_V_MEASURE:
+		GROW(measurements, measurement_count, measurement_capacity);
+		break;
+	case FL_V_FINDING:
+		GROW(findings, finding_count, finding_capacity);
+		break;
+	case FL_V_CHECK:
+		GROW(checks, check_count, check_capacity);
+		break;
 	case FL_V_ISSUE:
 		GROW(issues, issue_count, issue_capacity);
 		break;
@@ -205,6 +214,15 @@ static void take_undo(fl_session *s, const fl_event *e) {
 	case FL_UNDO_ADJUSTMENT:
 		s->adjustments[i].undone = true;
 		break;
+	case FL_UNDO_MEASUREMENT:
+		s->measurements[i].undone = true;
+		break;
+	case FL_UNDO_FINDING:
+		s->findings[i].undone = true;
+		break;
+	case FL_UNDO_CHECK:
+		s->checks[i].undone = true;
+		break;
 	case FL_UNDO_MISSING:
 		s->runs[i].missing = false;
 		s->runs[i].missing_reason = NULL;
@@ -243,6 +261,50 @@ static void take_decision(fl_session *s, const fl_event *e) {
 	s->decision_sequence = e->sequence;
 	s->decision_reason = e->fields[FL_F_REASON];
 	s->decision_by = e->fields[FL_F_BY];
+}
+
+static double real_or_nan(const char *text) {
+	return text ? fl_words_real(text) : NAN;
+}
+
+static void take_measurement(fl_session *s, const fl_event *e) {
+	const char *const *f = e->fields;
+	s->measurements[s->measurement_count++] =
+	    (fl_measurement){.sequence = e->sequence,
+	                     .at = e->at,
+	                     .what = (fl_measure)fl_words_index(fl_words_measures, f[FL_F_ID]),
+	                     .run = run_of(e),
+	                     .typed = f[FL_F_TYPED],
+	                     .unit = unit_of(f[FL_F_UNIT]),
+	                     .value = fl_words_real(f[FL_F_VALUE]),
+	                     .applied_typed = f[FL_F_APPLIED_TYPED],
+	                     .applied_unit = unit_of(f[FL_F_APPLIED_UNIT]),
+	                     .applied_pa = real_or_nan(f[FL_F_APPLIED_PA]),
+	                     .over_typed = f[FL_F_OVER_TYPED],
+	                     .over_s = real_or_nan(f[FL_F_OVER_S]),
+	                     .temp_typed = f[FL_F_TEMP_TYPED],
+	                     .temp_c = real_or_nan(f[FL_F_TEMP_C]),
+	                     .equipment = f[FL_F_ITEM]};
+}
+
+static void take_finding(fl_session *s, const fl_event *e) {
+	s->findings[s->finding_count++] = (fl_finding_answer){.sequence = e->sequence,
+	                                                      .id = e->fields[FL_F_ID],
+	                                                      .yes = strcmp(e->fields[FL_F_ANSWER], "yes") == 0,
+	                                                      .reason = e->fields[FL_F_REASON],
+	                                                      .by = e->fields[FL_F_BY]};
+}
+
+static void take_check(fl_session *s, const fl_event *e) {
+	const char *const *f = e->fields;
+	s->checks[s->check_count++] = (fl_check_answer){.sequence = e->sequence,
+	                                                .at = e->at,
+	                                                .id = f[FL_F_ID],
+	                                                .answer = f[FL_F_ANSWER],
+	                                                .typed = f[FL_F_TYPED],
+	                                                .unit = unit_of(f[FL_F_UNIT]),
+	                                                .value = real_or_nan(f[FL_F_VALUE]),
+	                                                .reason = f[FL_F_REASON]};
 }
 
 static void take_issue(fl_session *s, const fl_event *e) {
@@ -316,6 +378,15 @@ void fl_session_take(fl_session *s, const fl_event *e) {
 	case FL_V_REMARK:
 		s->remarks[s->remark_count++] = (fl_remark){e->sequence, e->at, f[FL_F_TYPED]};
 		break;
+	case FL_V_MEASURE:
+		take_measurement(s, e);
+		break;
+	case FL_V_FINDING:
+		take_finding(s, e);
+		break;
+	case FL_V_CHECK:
+		take_check(s, e);
+		break;
 	case FL_V_CLOSE:
 		s->closed = true;
 		s->closed_by = f[FL_F_BY];
@@ -361,6 +432,20 @@ const fl_gate_answer *fl_session_gate(const fl_session *s, const char *id) {
 	for (size_t i = s->gate_count; i-- > 0;)
 		if (!s->gates[i].undone && strcmp(s->gates[i].id, id) == 0)
 			return &s->gates[i];
+	return NULL;
+}
+
+const fl_finding_answer *fl_session_finding(const fl_session *s, const char *id) {
+	for (size_t i = s->finding_count; i-- > 0;)
+		if (!s->findings[i].undone && strcmp(s->findings[i].id, id) == 0)
+			return &s->findings[i];
+	return NULL;
+}
+
+const fl_check_answer *fl_session_check_answer(const fl_session *s, const char *id) {
+	for (size_t i = s->check_count; i-- > 0;)
+		if (!s->checks[i].undone && strcmp(s->checks[i].id, id) == 0)
+			return &s->checks[i];
 	return NULL;
 }
 

@@ -22,7 +22,10 @@ typedef enum fl_undoable {
 	FL_UNDO_READING,
 	FL_UNDO_MISSING,
 	FL_UNDO_DECISION,
-	FL_UNDO_ADJUSTMENT
+	FL_UNDO_ADJUSTMENT,
+	FL_UNDO_MEASUREMENT,
+	FL_UNDO_FINDING,
+	FL_UNDO_CHECK
 } fl_undoable;
 /* What stands under `sequence` that may be taken back now, and its index in its array. */
 fl_undoable fl_session_find(const fl_session *session, int sequence, size_t *index);

@@ -13,6 +13,11 @@
 const char *const fl_words_runs[] = {"as-found", "as-left", NULL};
 const char *const fl_words_passes[] = {"rising", "falling", NULL};
 const char *const fl_words_sources[] = {"keyboard", "replay", "import", NULL};
+const char *const fl_words_measures[] = {
+#define MEASURE_WORD(name, word, meaning) word,
+    FL_MEASURE_LIST(MEASURE_WORD)
+#undef MEASURE_WORD
+        NULL};
 const char *const fl_words_decisions[] = {"undecided", "adjust", "leave", "repair", NULL};
 static const char *const clocks[] = {"machine", "declared", NULL};
 static const char *const kinds[] = {"procedure", "instrument", "oil", "equipment", NULL};
@@ -34,6 +39,7 @@ const fl_field_rule fl_field_rules[FL_FIELD_COUNT] = {
     [FL_F_TEMP_C] = {FL_C_REAL, NULL},       [FL_F_APPLIED_TYPED] = {FL_C_NAME, NULL},
     [FL_F_APPLIED_UNIT] = {FL_C_UNIT, NULL}, [FL_F_APPLIED_PA] = {FL_C_REAL, NULL},
     [FL_F_LINE_TYPED] = {FL_C_NAME, NULL},   [FL_F_LINE_PA] = {FL_C_REAL, NULL},
+    [FL_F_OVER_TYPED] = {FL_C_NAME, NULL},   [FL_F_OVER_S] = {FL_C_REAL, NULL},
     [FL_F_TAKEN] = {FL_C_NAME, NULL}, /* a time, or "unknown" where only the day is known */
     [FL_F_TARGET] = {FL_C_COUNT, NULL},      [FL_F_ABOUT] = {FL_C_NAME, NULL},
     [FL_F_ANSWER] = {FL_C_NAME, NULL},       [FL_F_BEFORE] = {FL_C_NAME, NULL},
@@ -44,6 +50,7 @@ const fl_field_rule fl_field_rules[FL_FIELD_COUNT] = {
 #define B(field) (UINT64_C(1) << (FL_F_##field))
 #define PLACE (B(RUN) | B(CYCLE) | B(PASS) | B(POINT))
 #define OUTPUT (B(TYPED) | B(UNIT) | B(VALUE))
+#define APPLIED (B(APPLIED_TYPED) | B(APPLIED_UNIT) | B(APPLIED_PA))
 #define AROUND                                                                                                     \
 	(B(TEMP_TYPED) | B(TEMP_C) | B(APPLIED_TYPED) | B(APPLIED_UNIT) | B(APPLIED_PA) | B(LINE_TYPED) | B(LINE_PA) | \
 	 B(TAKEN))
@@ -71,6 +78,10 @@ const fl_verb_rule fl_verb_rules[FL_VERB_COUNT] = {
     [FL_V_REMARK] = RULE(B(TYPED), 0),
     [FL_V_TORN] = RULE(B(BODY), 0),
     [FL_V_RESUME] = RULE(B(PROGRAM) | B(SOURCE), 0),
+    [FL_V_MEASURE] =
+        RULE(B(RUN) | B(ID) | OUTPUT, APPLIED | B(OVER_TYPED) | B(OVER_S) | B(TEMP_TYPED) | B(TEMP_C) | B(ITEM)),
+    [FL_V_FINDING] = RULE(B(ID) | B(ANSWER) | B(REASON) | B(BY), 0),
+    [FL_V_CHECK] = RULE(B(ID), OUTPUT | B(ANSWER) | B(REASON)),
     [FL_V_CLOSE] = RULE(B(BY), 0),
     [FL_V_ISSUE] = RULE(B(ID) | B(DAY) | B(PROGRAM) | B(ITEM), B(NAME) | B(BODY) | B(ABOUT) | B(REASON) | B(BY)),
 };
@@ -105,6 +116,10 @@ const char *fl_pass_word(fl_pass pass) {
 
 const char *fl_source_word(fl_source source) {
 	return (unsigned)source <= FL_SOURCE_IMPORT ? fl_words_sources[source] : "?";
+}
+
+const char *fl_measure_word(fl_measure what) {
+	return (unsigned)what < FL_MEASURE_COUNT ? fl_words_measures[what] : "?";
 }
 
 const char *fl_decision_word(fl_decision decision) {

@@ -41,7 +41,7 @@ int fl_words_count(const char *text);
 int fl_words_point(const char *text); /* index, or FL_POINT_ZERO */
 double fl_words_real(const char *text);
 int fl_words_index(const char *const *words, const char *text); /* -1 if none */
-extern const char *const fl_words_runs[], *const fl_words_passes[], *const fl_words_sources[],
-                                                                        *const fl_words_decisions[];
+extern const char *const fl_words_runs[],
+    *const fl_words_passes[], *const fl_words_sources[], *const fl_words_decisions[], *const fl_words_measures[];
 
 #endif

@@ -31,6 +31,7 @@ static const struct {
     {FL_U_MM, "mm"},
     {FL_U_M, "m"},
     {FL_U_CM3_REV, "cm³/rev;cm3/rev;cm³/r;cc/rev;ml/rev;mL/rev"},
+    {FL_U_CM3, "cm³;cm3;cm^3;CM3;ccm;cc;ml;mL"},
     {FL_U_R_MIN, "r/min;rev/min;rpm;RPM;1/min;min⁻¹;min-1;min\u22121"},
     {FL_U_HZ, "Hz;hz"},
     {FL_U_V, "V;v"},

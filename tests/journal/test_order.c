@@ -2,6 +2,8 @@
  * SPDX-License-Identifier: GPL-3.0-or-later */
 #include "bench.h"
 
+#include <math.h>
+
 static fl_status give(fl_session *s, fl_event event, fl_error *err) {
 	event.sequence = s->last_sequence + 1;
 	return fl_session_apply(s, &event, err);
@@ -206,6 +208,129 @@ static void taking_a_point_back_drops_what_made_it_indicative(void **state) {
 	fl_session_free(&s);
 }
 
+/* ---- extra measurements, findings, function checks ---- */
+
+#define INJECTION(run)                                                                                \
+	E(MEASURE, [FL_F_RUN] = run, [FL_F_ID] = "injection", [FL_F_TYPED] = "11.66", [FL_F_UNIT] = "mA", \
+	  [FL_F_VALUE] = "11.66", [FL_F_APPLIED_TYPED] = "150", [FL_F_APPLIED_UNIT] = "mbar", [FL_F_APPLIED_PA] = "15000")
+#define MEASURE(what, unit, value, ...)                                                             \
+	E(MEASURE, [FL_F_RUN] = "as-found", [FL_F_ID] = what, [FL_F_TYPED] = value, [FL_F_UNIT] = unit, \
+	  [FL_F_VALUE] = value, __VA_ARGS__)
+#define VOLUME(seconds) MEASURE("volume", "cm³", "500", [FL_F_OVER_TYPED] = seconds " s", [FL_F_OVER_S] = seconds)
+
+static void extra_measurements_belong_to_the_state(void **state) {
+	(void)state;
+	fl_session s;
+	prepare(&s);
+	refuse(&s, FL_E_STATE, "after the as-found run is closed", INJECTION("as-found"));
+	take(&s, RUN("as-found"));
+	take(&s, READ("as-found", "1", "7.06"));
+	refuse(&s, FL_E_STATE, "after the as-found run is closed", INJECTION("as-found"));
+	take(&s, CLOSE_RUN("as-found"));
+	refuse(&s, FL_E_STATE, "in its as-found state now, not as-left", INJECTION("as-left"));
+	take(&s, INJECTION("as-found"));
+	take(&s, VOLUME("502"));
+	assert_int_equal(s.measurement_count, 2);
+	assert_int_equal(s.measurements[0].what, FL_MEASURE_INJECTION);
+	check_near("applied", 15000.0, s.measurements[0].applied_pa, 0.0);
+	check_near("time", 502.0, s.measurements[1].over_s, 0.0);
+	assert_true(isnan(s.measurements[1].temp_c));
+	take(&s, DECIDE("adjust"));
+	take(&s, ADJUST);
+	refuse(&s, FL_E_STATE, "in its as-left state now, not as-found", INJECTION("as-found"));
+	refuse(&s, FL_E_STATE, "cannot be taken back", UNDO("13"));
+	take(&s, INJECTION("as-left"));
+	refuse(&s, FL_E_STATE, "cannot be taken back", UNDO("16")); /* the adjustment that it was made after */
+	take(&s, UNDO("17"));
+	assert_true(s.measurements[2].undone);
+	take(&s, UNDO("16"));
+	fl_session_free(&s);
+}
+
+static void extra_measurements_are_whole(void **state) {
+	(void)state;
+	fl_session s;
+	to_closed_as_found(&s);
+	refuse(&s, FL_E_VALUE, "nothing that is measured", MEASURE("colour", "mA", "1", [FL_F_TARGET] = NULL));
+	refuse(&s, FL_E_VALUE, "lacks a part", MEASURE("volume", "cm³", "500", [FL_F_TARGET] = NULL));
+	refuse(
+	    &s, FL_E_VALUE, "lacks a part",
+	    MEASURE("volume", "cm³",
+	            "500", [FL_F_OVER_TYPED] = "1 s", [FL_F_OVER_S] = "1", [FL_F_TEMP_TYPED] = "40", [FL_F_TEMP_C] = "40"));
+	refuse(&s, FL_E_VALUE, "above 0", VOLUME("0"));
+	refuse(&s, FL_E_VALUE, "not measured in bar", MEASURE("speed", "bar", "40", [FL_F_TARGET] = NULL));
+	refuse(&s, FL_E_STATE, "not in the record", MEASURE("speed", "r/min", "40", [FL_F_ITEM] = "TA-2"));
+	take(&s, MEASURE("speed", "r/min", "40", [FL_F_TARGET] = NULL));
+	take(&s, MEASURE("temperature", "°C", "40.1", [FL_F_TEMP_TYPED] = "40", [FL_F_TEMP_C] = "40"));
+	take(&s, MEASURE("density", "kg/m³", "900", [FL_F_TARGET] = NULL));
+	take(&s, MEASURE("spanned-out", "%", "2.1", [FL_F_TARGET] = NULL));
+	fl_session_free(&s);
+}
+
+#define FINDING(answer) \
+	E(FINDING, [FL_F_ID] = "mix-up:1:bottle", [FL_F_ANSWER] = answer, [FL_F_REASON] = "looked", [FL_F_BY] = "A. Holm")
+
+static void findings_are_answered_before_the_decision(void **state) {
+	(void)state;
+	fl_session s;
+	prepare(&s);
+	refuse(&s, FL_E_STATE, "before the as-found run is closed", FINDING("no"));
+	fl_session_free(&s);
+	to_closed_as_found(&s);
+	refuse(&s, FL_E_VALUE, "yes or no", FINDING("perhaps"));
+	take(&s, FINDING("yes"));
+	refuse(&s, FL_E_STATE, "answered already", FINDING("no"));
+	refuse(&s, FL_E_STATE, "no adjustment on mixed-up readings (mix-up:1:bottle)", DECIDE("adjust"));
+	assert_int_equal(fl_session_last_undoable(&s), 13);
+	take(&s, UNDO("13"));
+	assert_null(fl_session_finding(&s, "mix-up:1:bottle"));
+	take(&s, FINDING("no"));
+	assert_false(fl_session_finding(&s, "mix-up:1:bottle")->yes);
+	take(&s, DECIDE("adjust"));
+	refuse(&s, FL_E_STATE, "before the decision",
+	       E(FINDING, [FL_F_ID] = "other", [FL_F_ANSWER] = "no", [FL_F_REASON] = "late", [FL_F_BY] = "A"));
+	refuse(&s, FL_E_STATE, "cannot be taken back", UNDO("15")); /* decided on it */
+	fl_session_free(&s);
+}
+
+#define CHECKED(...) E(CHECK, [FL_F_ID] = "alarm-high", __VA_ARGS__)
+
+static void functions_are_checked_after_the_runs(void **state) {
+	(void)state;
+	fl_session s;
+	to_closed_as_found(&s);
+	refuse(&s, FL_E_STATE, "after the runs", CHECKED([FL_F_ANSWER] = "yes"));
+	take(&s, DECIDE("leave"));
+	refuse(&s, FL_E_VALUE, "one of these", CHECKED([FL_F_TARGET] = NULL));
+	refuse(&s, FL_E_VALUE, "one of these", CHECKED([FL_F_ANSWER] = "yes", [FL_F_REASON] = "no air"));
+	refuse(&s, FL_E_VALUE, "one of these", CHECKED([FL_F_TYPED] = "18", [FL_F_VALUE] = "18"));
+	refuse(&s, FL_E_VALUE, "yes or no", CHECKED([FL_F_ANSWER] = "maybe"));
+	take(&s, CHECKED([FL_F_TYPED] = "18,2", [FL_F_VALUE] = "18.2", [FL_F_UNIT] = "mm²/s"));
+	refuse(&s, FL_E_STATE, "stands in the record already", CHECKED([FL_F_ANSWER] = "yes"));
+	refuse(&s, FL_E_STATE, "cannot be taken back", UNDO("13")); /* the decision */
+	take(&s, UNDO("14"));
+	take(&s, CHECKED([FL_F_REASON] = "the alarm panel is out of order"));
+	assert_string_equal(fl_session_check_answer(&s, "alarm-high")->reason, "the alarm panel is out of order");
+	take(&s, CLOSE);
+	refuse(&s, FL_E_STATE, "closed", E(CHECK, [FL_F_ID] = "other", [FL_F_ANSWER] = "yes"));
+	fl_session_free(&s);
+}
+
+static void functions_wait_for_the_as_left_run(void **state) {
+	(void)state;
+	fl_session s;
+	to_closed_as_found(&s);
+	take(&s, DECIDE("adjust"));
+	take(&s, ADJUST);
+	refuse(&s, FL_E_STATE, "after the runs", CHECKED([FL_F_ANSWER] = "yes"));
+	take(&s, RUN("as-left"));
+	take(&s, READ("as-left", "1", "7.02"));
+	refuse(&s, FL_E_STATE, "after the runs", CHECKED([FL_F_ANSWER] = "yes"));
+	take(&s, CLOSE_RUN("as-left"));
+	take(&s, CHECKED([FL_F_ANSWER] = "yes"));
+	fl_session_free(&s);
+}
+
 int main(void) {
 	const struct CMUnitTest tests[] = {
 	    cmocka_unit_test(opening_comes_first_and_once),
@@ -216,6 +341,11 @@ int main(void) {
 	    cmocka_unit_test(readings_are_marked_never_changed),
 	    cmocka_unit_test(failure_signals_are_no_data),
 	    cmocka_unit_test(taking_a_point_back_drops_what_made_it_indicative),
+	    cmocka_unit_test(extra_measurements_belong_to_the_state),
+	    cmocka_unit_test(extra_measurements_are_whole),
+	    cmocka_unit_test(findings_are_answered_before_the_decision),
+	    cmocka_unit_test(functions_are_checked_after_the_runs),
+	    cmocka_unit_test(functions_wait_for_the_as_left_run),
 	};
 	return cmocka_run_group_tests(tests, NULL, NULL);
 }
