@@ -76,6 +76,7 @@ typedef struct fl_instrument {
 	fl_band adjust_limit;
 	double hysteresis_limit_pct_span;                             /* NAN: the procedure's */
 	double set_point, set_point_tolerance, alarm_low, alarm_high; /* dial units; NAN where not stated */
+	int interval_months; /* agreed between calibrations; 0 if none */
 	fl_place place;
 	const char *text;
 } fl_instrument;

@@ -3,6 +3,7 @@
  * SPDX-License-Identifier: GPL-3.0-or-later
  */
 #include <math.h>
+#include <stdio.h>
 #include <string.h>
 
 #include "read.h"
@@ -30,6 +31,7 @@ static const char *const fields[] = {"tag",
                                      "set point tolerance",
                                      "alarm low",
                                      "alarm high",
+                                     "calibration interval",
                                      NULL};
 
 /* ---- plate and scale ------------------------------------------------------------------------------------------------
@@ -228,11 +230,31 @@ static fl_status read_plant(const fl_node *map, fl_instrument *item, fl_error *e
 	return FL_OK;
 }
 
+/* "12 months", "2 years"; a bare number would leave open of what. */
+static fl_status read_interval(const fl_node *map, fl_instrument *item, fl_error *err) {
+	const fl_node *node = fl_node_get(map, "calibration interval");
+	int count = 0, end = 0;
+	item->interval_months = 0;
+	if (!node)
+		return FL_OK;
+	const char *text = node->kind == FL_NODE_SCALAR ? node->text : "";
+	if (sscanf(text, "%3d month%n", &count, &end) == 1 && end > 0)
+		item->interval_months = count;
+	else if (sscanf(text, "%2d year%n", &count, &end) == 1 && end > 0)
+		item->interval_months = 12 * count;
+	end += end > 0 && text[end] == 's';
+	if (end == 0 || text[end] || item->interval_months < 1 || item->interval_months > 120)
+		return fl_fail_at(err, FL_E_VALUE, fl_stock_place(map, "calibration interval"),
+		                  "write it in months or years, \"12 months\", from 1 month to 10 years");
+	return FL_OK;
+}
+
 fl_status fl_stock_read_instrument(fl_arena *arena, const fl_node *map, fl_instrument *out, fl_error *err) {
 	TRY(fl_node_only(map, fields, err));
 	TRY(read_plate(map, out, err));
 	TRY(read_scale(map, &out->scale, err));
 	TRY(read_hydraulics(map, out, err));
 	TRY(read_limits(arena, map, out, err));
+	TRY(read_interval(map, out, err));
 	return read_plant(map, out, err);
 }
