@@ -141,6 +141,18 @@ fl_status fl_journal_read(const fl_io *io, const char *path, fl_session *session
 	return status;
 }
 
+fl_status fl_journal_replay(const char *bytes, size_t length, const char *name, fl_hasher *hasher, fl_session *session,
+                            char head[FL_DIGEST_HEX_SIZE], fl_error *err) {
+	fl_session fresh = {0};
+	replayed what = {0};
+	fl_status status = replay(hasher, bytes, length, name, &fresh, head, &what, err);
+	if (status >= 0)
+		*session = fresh;
+	else
+		fl_session_free(&fresh);
+	return status;
+}
+
 /* The line of that number, with its LF; NULL where there are not so many. */
 static const char *end_of_line(const char *bytes, size_t length, int number) {
 	const char *at = bytes;

@@ -390,6 +390,7 @@ void fl_session_take(fl_session *s, const fl_event *e) {
 	case FL_V_CLOSE:
 		s->closed = true;
 		s->closed_by = f[FL_F_BY];
+		s->closed_at = e->at;
 		break;
 	case FL_V_ISSUE:
 		take_issue(s, e);
