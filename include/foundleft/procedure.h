@@ -107,6 +107,31 @@ typedef enum fl_line_choice {
 	FL_LINE_GENERAL   /* the generalized one always */
 } fl_line_choice;
 
+/* What a function check finds out. */
+typedef enum fl_check_kind {
+	FL_CHECK_CONFIRM,   /* yes or no; yes is in order */
+	FL_CHECK_AMOUNT,    /* a number with unit that has to lie within limits: a delay, a stroke */
+	FL_CHECK_INDICATION /* what the instrument indicates, in the unit of its dial or of its output: an alarm's trip */
+} fl_check_kind;
+
+/* Where the expected indication stands: in the record of the instrument. */
+typedef enum fl_check_expects { FL_EXPECT_ALARM_LOW, FL_EXPECT_ALARM_HIGH, FL_EXPECT_SET_POINT } fl_check_expects;
+const char *fl_procedure_expects_word(fl_check_expects expects); /* "low alarm", "high alarm", "set point" */
+
+/* A function of the loop that is tried after the runs, before the loop is restored. Each may be left out with a
+ * reason. */
+typedef struct fl_function_check {
+	const char *id, *ask, *caution; /* as of a question; ids unique among them all */
+	const char *name;               /* what it is called on the certificate: "high viscosity alarm" */
+	fl_check_kind kind;
+	fl_unit unit;             /* amount */
+	double expected;          /* amount, in `unit`; NAN where only limits are given */
+	double low, high;         /* amount: in order within, ends included; infinite where open */
+	fl_check_expects expects; /* indication */
+	double limit_pct_span;    /* indication: half width about the expected place */
+	bool true_viscosity;      /* indication: which true viscosity it stands for is stated, with its uncertainty */
+} fl_function_check;
+
 /* In which part a person signs. */
 typedef enum fl_part { FL_PART_PERFORMED, FL_PART_REVIEWED, FL_PART_AUTHORISED, FL_PARTS } fl_part;
 const char *fl_part_word(fl_part part); /* "performed", "reviewed", "authorised" */
@@ -156,8 +181,11 @@ typedef struct fl_procedure {
 	int condition_count;
 	const fl_question *restore; /* at the end */
 	int restore_count;
-	unsigned signatures; /* bits 1 << fl_part: without these a certificate does not count as issued */
-	const char *text;    /* the file's bytes as read (valid UTF-8): goes into the journal */
+	const fl_function_check *checks; /* after the runs, before restoring */
+	int check_count;
+	bool opinions_on_certificate; /* opinions and interpretations, marked as such, stand on it; true if not stated */
+	unsigned signatures;          /* bits 1 << fl_part: without these a certificate does not count as issued */
+	const char *text;             /* the file's bytes as read (valid UTF-8): goes into the journal */
 } fl_procedure;
 
 /* Reads a template from memory. `file` is used in errors. On success *out is complete and to be freed. */

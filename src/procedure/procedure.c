@@ -50,7 +50,9 @@ static const char *const fields[] = {
     "further uncertainty",
     "gates",
     "conditions",
+    "function checks",
     "restore",
+    "opinions on certificate",
     "signatures",
     NULL,
 };
@@ -533,7 +535,10 @@ static fl_status read_procedure(const fl_node *root, fl_procedure *p, fl_error *
 	TRY(read_extra_terms(root, p, err));
 	TRY(read_statement(root, p, err));
 	TRY(read_signatures(root, p, err));
-	return fl_procedure_read_questions(root, p, err);
+	p->opinions_on_certificate = true;
+	TRY(fl_node_bool(root, "opinions on certificate", false, &p->opinions_on_certificate, err));
+	TRY(fl_procedure_read_questions(root, p, err));
+	return fl_procedure_read_checks(root, p, err);
 }
 
 fl_status fl_procedure_parse(const char *text, const char *file, fl_procedure *out, fl_error *err) {

@@ -15,23 +15,23 @@ bool fl_procedure_is_id(const char *text) {
 	return length >= 1 && length <= 60 && strspn(text, letters) == length;
 }
 
-static fl_status refuse_field(const fl_node *map, const char *key, const char *why, fl_error *err) {
+fl_status fl_procedure_refuse_field(const fl_node *map, const char *key, const char *why, fl_error *err) {
 	const fl_node *value = fl_node_get(map, key);
 	return value ? fl_fail_at(err, FL_E_VALUE, fl_node_place(value), "%s: leave this field out", why) : FL_OK;
 }
 
-static fl_status read_unit(const fl_node *map, fl_question *question, fl_error *err) {
+fl_status fl_procedure_read_unit(const fl_node *map, fl_unit *unit, fl_error *err) {
 	const char *text = NULL;
 	fl_error inner = {0};
 	TRY(fl_node_text(map, "unit", true, &text, err));
-	fl_status status = fl_unit_parse(text, &question->unit, &inner);
+	fl_status status = fl_unit_parse(text, unit, &inner);
 	return status == FL_OK ? FL_OK
 	                       : fl_fail_at(err, status, fl_node_place(fl_node_get(map, "unit")), "%s", inner.message);
 }
 
 /* "0 to 60 °C" in the question's own unit. */
-static fl_status read_limits(const fl_node *map, const char *key, fl_unit unit, double *low, double *high,
-                             fl_error *err) {
+fl_status fl_procedure_read_limits(const fl_node *map, const char *key, fl_unit unit, double *low, double *high,
+                                   fl_error *err) {
 	fl_unit found = unit;
 	*low = -INFINITY;
 	*high = INFINITY;
@@ -43,9 +43,11 @@ static fl_status read_limits(const fl_node *map, const char *key, fl_unit unit, 
 }
 
 static fl_status read_amount(const fl_node *map, fl_question *question, fl_error *err) {
-	TRY(read_unit(map, question, err));
-	TRY(read_limits(map, "possible", question->unit, &question->possible_low, &question->possible_high, err));
-	TRY(read_limits(map, "plausible", question->unit, &question->plausible_low, &question->plausible_high, err));
+	TRY(fl_procedure_read_unit(map, &question->unit, err));
+	TRY(fl_procedure_read_limits(map, "possible", question->unit, &question->possible_low, &question->possible_high,
+	                             err));
+	TRY(fl_procedure_read_limits(map, "plausible", question->unit, &question->plausible_low, &question->plausible_high,
+	                             err));
 	if (!fl_node_get(map, "plausible")) {
 		question->plausible_low = question->possible_low;
 		question->plausible_high = question->possible_high;
@@ -65,10 +67,10 @@ static fl_status read_kind(const fl_node *map, fl_question *question, fl_error *
 		TRY(read_amount(map, question, err));
 	else
 		for (int i = 0; i < 3; i++)
-			TRY(refuse_field(map, (const char *const[]){"unit", "possible", "plausible"}[i],
-			                 "only an answer that is an amount has this", err));
+			TRY(fl_procedure_refuse_field(map, (const char *const[]){"unit", "possible", "plausible"}[i],
+			                              "only an answer that is an amount has this", err));
 	if (question->kind != FL_ASK_CONFIRM)
-		TRY(refuse_field(map, "may decline", "only a yes or no can be declined", err));
+		TRY(fl_procedure_refuse_field(map, "may decline", "only a yes or no can be declined", err));
 	return FL_OK;
 }
 
