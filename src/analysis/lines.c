@@ -17,16 +17,14 @@ typedef struct places {
 
 /* A combined point stands on the line where its rising pass stood: each oil was approached there first, and the two
  * passes differ by hundredths of a kelvin, which moves no error. */
-static double line_position(const fl_run_result *run, const fl_point_result *combined) {
+double fl_analysis_line_position(const fl_run_result *run, const fl_point_result *combined) {
 	for (size_t i = 0; i < run->point_count; i++)
 		if (run->points[i].point == combined->point && run->points[i].pass == FL_PASS_RISING)
 			return run->points[i].x;
 	return combined->x;
 }
 
-/* Where the scale begins well above zero viscosity, the output at rest is below the signal's measuring range and says
- * nothing about the instrument. */
-static bool has_place(const work *w, const fl_point_result *point) {
+bool fl_analysis_in_line(const work *w, const fl_point_result *point) {
 	return point->point != FL_POINT_ZERO || point->ideal_output >= w->reference.range->measuring_low;
 }
 
@@ -38,9 +36,9 @@ static fl_status collect(const work *w, const fl_run_result *run, bool with_zero
 		return fl_fail(err, FL_E_MEMORY, "out of memory for %zu points", run->combined_count);
 	for (size_t i = 0; i < run->combined_count; i++) {
 		const fl_point_result *point = &run->combined[i];
-		if (!has_place(w, point) || (!with_zero && point->point == FL_POINT_ZERO))
+		if (!fl_analysis_in_line(w, point) || (!with_zero && point->point == FL_POINT_ZERO))
 			continue;
-		out->x[out->n] = line_position(run, point);
+		out->x[out->n] = fl_analysis_line_position(run, point);
 		out->e[out->n++] = point->error_span;
 	}
 	return FL_OK;
@@ -50,7 +48,7 @@ static void take_stopped_zero(work *w, fl_run_result *run) {
 	const fl_point_result *zero = run->combined_count ? &run->combined[0] : NULL;
 	if (!zero || zero->point != FL_POINT_ZERO) {
 		fl_analysis_say(w->arena, &w->not_determined, "stopped zero not determined: it was not read");
-	} else if (!has_place(w, zero)) {
+	} else if (!fl_analysis_in_line(w, zero)) {
 		fl_analysis_say(w->arena, &w->not_determined,
 		                "stopped zero not determined: the scale begins above zero viscosity, and the output at rest "
 		                "lies below its signal");

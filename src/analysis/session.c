@@ -76,6 +76,8 @@ static fl_status compute_run(work *w, fl_run_result *run, fl_error *err) {
 	if (status >= 0)
 		status = fl_analysis_lines(w, run, err);
 	if (status >= 0)
+		status = fl_analysis_general(w, run, err);
+	if (status >= 0)
 		status = fl_analysis_verdicts(w, run, err);
 	if (status >= 0)
 		status = fl_analysis_flows(w, run, err);
@@ -150,6 +152,7 @@ static fl_status compute(work *w, fl_error *err) {
 			return status;
 	}
 	carry_over(w);
+	fl_analysis_say_correlation(w);
 	fl_analysis_trace(w);
 	return hand_out(w, err);
 }

@@ -52,6 +52,22 @@ fl_status fl_analysis_budgets(const work *w, fl_run_result *run, fl_error *err) 
 /* lines.c: zeros, lines and linearity. */
 fl_status fl_analysis_lines(work *w, fl_run_result *run, fl_error *err) FL_MUST_USE;
 
+/* Whether a point takes part in the lines: where the scale begins well above zero viscosity, the output at rest is
+ * below the signal's measuring range and says nothing about the instrument. And where on the scale it stands there. */
+bool fl_analysis_in_line(const work *w, const fl_point_result *point);
+double fl_analysis_line_position(const fl_run_result *run, const fl_point_result *combined);
+
+/* covariance.c: what acts on the ideal output, on the output found, or on either. */
+typedef enum budget_side { SIDE_BOTH, SIDE_IDEAL, SIDE_OUTPUT } budget_side;
+bool fl_analysis_acts_on_ideal(const fl_budget_line *line);
+/* Of the errors of two points of one run (of one with itself: its variance), fraction of span squared. */
+double fl_analysis_covariance(const fl_point_result *a, const fl_point_result *b, budget_side side);
+fl_status fl_analysis_covariances(const work *w, fl_run_result *run, fl_error *err) FL_MUST_USE;
+void fl_analysis_say_correlation(work *w);
+
+/* general.c: after fl_analysis_lines and the budgets. */
+fl_status fl_analysis_general(work *w, fl_run_result *run, fl_error *err) FL_MUST_USE;
+
 /* decide.c: tolerance and verdict of each point, then of the run. */
 fl_status fl_analysis_verdicts(work *w, fl_run_result *run, fl_error *err) FL_MUST_USE;
 

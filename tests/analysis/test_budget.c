@@ -249,8 +249,9 @@ static void misfit_of_the_oil_rules_if_larger(void **state) {
 static void extra_terms(void **state) {
 	(void)state;
 	static bench b;
-	static const fl_extra_term terms[] = {{"ambient temperature", 0.12, 0.0, FL_DIST_RECTANGULAR, FL_BAND_PERCENT_SPAN},
-	                                      {"pump speed", 0.3, 0.0, FL_DIST_TRIANGULAR, FL_BAND_PERCENT_READING}};
+	static const fl_extra_term terms[] = {
+	    {"ambient temperature", 0.12, 0.0, FL_DIST_RECTANGULAR, FL_BAND_PERCENT_SPAN, false, NULL},
+	    {"pump speed", 0.3, 0.0, FL_DIST_TRIANGULAR, FL_BAND_PERCENT_READING, false, NULL}};
 	bench_begin_pressure(&b);
 	b.procedure.extra = terms;
 	b.procedure.extra_count = 2;

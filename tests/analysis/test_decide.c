@@ -52,7 +52,8 @@ static void uncertainty_above_tolerance(void **state) {
 /* A transmitter that reads `excess_ma` too much at five places; no equipment, so U is next to
  * nothing unless another term is put in its place. */
 static void fill(bench *b, double excess_ma) {
-	static const fl_extra_term next_to_nothing = {"next to nothing", 1e-9, 2.0, FL_DIST_NORMAL, FL_BAND_PERCENT_SPAN};
+	static const fl_extra_term next_to_nothing = {"next to nothing",    1e-9,  2.0, FL_DIST_NORMAL,
+	                                              FL_BAND_PERCENT_SPAN, false, NULL};
 	bench_begin_pressure(b);
 	b->procedure.extra = &next_to_nothing;
 	b->procedure.extra_count = 1;
@@ -84,7 +85,7 @@ static void exactly_at_the_limit(void **state) {
 
 /* One term of u = 0.2 % makes U 0.4 % (k = 2): states change at 1.6, 2.0 and 2.4 %. */
 static void add_u(bench *b, fl_extra_term *term) {
-	*term = (fl_extra_term){"line pressure", 0.4, 2.0, FL_DIST_NORMAL, FL_BAND_PERCENT_SPAN};
+	*term = (fl_extra_term){"line pressure", 0.4, 2.0, FL_DIST_NORMAL, FL_BAND_PERCENT_SPAN, false, NULL};
 	b->procedure.extra = term;
 	b->procedure.extra_count = 1;
 	b->procedure.rule = FL_RULE_FOUR_STATES;
