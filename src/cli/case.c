@@ -5,11 +5,17 @@
 #include <stdio.h>
 #include <string.h>
 
-static fl_status load_parts(const fl_io *io, fl_case *one, fl_error *err) {
-	fl_status status = fl_journal_read(io, one->path, &one->session, one->head, &one->torn, err);
-	if (status < 0)
-		return status;
-	status = fl_session_procedure(&one->session, &one->procedure, err);
+static fl_status set_path(fl_case *one, const char *path, fl_error *err) {
+	*one = (fl_case){0};
+	if (strlen(path) >= sizeof one->path)
+		return fl_fail(err, FL_E_VALUE, "the path is longer than %zu characters", sizeof one->path - 1);
+	snprintf(one->path, sizeof one->path, "%s", path);
+	return FL_OK;
+}
+
+/* All that follows from the session. */
+static fl_status compute(fl_case *one, fl_error *err) {
+	fl_status status = fl_session_procedure(&one->session, &one->procedure, err);
 	if (status < 0)
 		return status;
 	status = fl_session_stock(&one->session, &one->stock, err);
@@ -22,11 +28,23 @@ static fl_status load_parts(const fl_io *io, fl_case *one, fl_error *err) {
 }
 
 fl_status fl_case_load(const fl_io *io, const char *path, fl_case *out, fl_error *err) {
-	*out = (fl_case){0};
-	if (strlen(path) >= sizeof out->path)
-		return fl_fail(err, FL_E_VALUE, "the path is longer than %zu characters", sizeof out->path - 1);
-	snprintf(out->path, sizeof out->path, "%s", path);
-	fl_status status = load_parts(io, out, err);
+	fl_status status = set_path(out, path, err);
+	if (status >= 0)
+		status = fl_journal_read(io, path, &out->session, out->head, &out->torn, err);
+	if (status >= 0)
+		status = compute(out, err);
+	if (status < 0)
+		fl_case_free(out);
+	return status;
+}
+
+fl_status fl_case_load_to(const fl_io *io, const char *path, int sequence, fl_arena *arena, char **bytes,
+                          size_t *length, fl_case *out, fl_error *err) {
+	fl_status status = set_path(out, path, err);
+	if (status >= 0)
+		status = fl_journal_read_to(io, path, sequence, &out->session, out->head, arena, bytes, length, err);
+	if (status >= 0)
+		status = compute(out, err);
 	if (status < 0)
 		fl_case_free(out);
 	return status;

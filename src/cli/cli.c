@@ -8,11 +8,15 @@
 #include <time.h>
 #include <unistd.h>
 
-#define BIT(option) (1U << (option))
+#define BIT(option) (UINT64_C(1) << (option))
 #define PLACES (BIT(FL_OPT_HOME) | BIT(FL_OPT_STOCK))
 #define ISSUE                                                                                 \
 	(BIT(FL_OPT_NUMBER) | BIT(FL_OPT_DATE) | BIT(FL_OPT_AUTHORISED_BY) | BIT(FL_OPT_ISSUER) | \
-	 BIT(FL_OPT_ISSUER_ADDRESS) | BIT(FL_OPT_OUT) | BIT(FL_OPT_TEXT))
+	 BIT(FL_OPT_ISSUER_ADDRESS) | BIT(FL_OPT_OUT) | BIT(FL_OPT_TEXT) | BIT(FL_OPT_AMENDS) | BIT(FL_OPT_REASON))
+#define SIGN (BIT(FL_OPT_SIGNER) | BIT(FL_OPT_AS) | BIT(FL_OPT_PASSPHRASE_FD))
+#define KEY                                                                                               \
+	(BIT(FL_OPT_PASSPHRASE_FD) | BIT(FL_OPT_PERSON) | BIT(FL_OPT_ORGANISATION) | BIT(FL_OPT_ROLE_TITLE) | \
+	 BIT(FL_OPT_RSA) | BIT(FL_OPT_SELF_SIGNED) | BIT(FL_OPT_DAYS) | BIT(FL_OPT_REQUEST))
 
 /* One line a command: adding one is one line here, its page in foundleft.1 and its word in completion.bash. */
 static const fl_command COMMANDS[] = {
@@ -40,13 +44,25 @@ static const fl_command COMMANDS[] = {
     {"assess", "JOURNAL", "compute errors, linearity, hysteresis, uncertainty, decision",
      "Prints tables and the error picture, or one JSON object with --json.", 1, 1,
      BIT(FL_OPT_HOME) | BIT(FL_OPT_JSON) | BIT(FL_OPT_WIDTH) | BIT(FL_OPT_STRICT), fl_command_assess},
-    {"certify", "JOURNAL", "issue the certificate as PDF/A",
-     "The same journal, date and number give the same bytes. A certificate that exists with other bytes is never "
-     "overwritten.",
-     1, 1, PLACES | ISSUE, fl_command_certify},
-    {"check", "FILE...", "verify journals, stock files and procedures",
-     "Says of each file what it is and whether every line fits; names the first place that does not.", 1, 1000,
-     BIT(FL_OPT_HOME), fl_command_check},
+    {"certify", "JOURNAL", "issue the certificate as PDF/A, signed with --signer",
+     "The issue is an entry of the journal; the same number gives the same bytes again. A certificate that exists is "
+     "never overwritten, only added to by signatures. Another certificate of the same session must say with --amends "
+     "and --reason which one it replaces and why.",
+     1, 1, PLACES | ISSUE | SIGN, fl_command_certify},
+    {"countersign", "CERTIFICATE", "add a second person's signature to a certificate",
+     "Another person than the performer, by name and by certificate; the first signature stays valid. The journal is "
+     "looked for beside the certificate and among the sessions.",
+     1, 1, BIT(FL_OPT_HOME) | BIT(FL_OPT_JOURNAL) | SIGN, fl_command_countersign},
+    {"keys", "make|take|import|list|show [ID] [FILE]", "make and keep the keys that people sign with",
+     "make ID: a new key, with --request for an authority or --self-signed. take ID FILE: the certificate that the "
+     "authority issued. import ID FILE: key and certificate out of a PKCS#12 file. show ID: the certificate, to hand "
+     "on. "
+     "Keys are encrypted under a passphrase, which is asked for on the terminal.",
+     1, 3, BIT(FL_OPT_HOME) | KEY, fl_command_keys},
+    {"check", "FILE...", "verify certificates, journals with their seals, stock files, procedures",
+     "Says of each file what it is, who vouches for it and whether every byte fits: a line for each thing checked, and "
+     "a verdict.",
+     1, 1000, BIT(FL_OPT_HOME) | BIT(FL_OPT_JOURNAL), fl_command_check},
     {"list", "[procedures|stock|sessions]", "show what there is, with due dates and open sessions", "", 0, 1, PLACES,
      fl_command_list},
 };
@@ -123,8 +139,8 @@ static void print_overview(FILE *out) {
 	      "uncertainty and decision, certificate.\n\nusage: foundleft COMMAND [OPTION...] [ARGUMENT...]\n\n",
 	      out);
 	for (size_t i = 0; i < COMMAND_COUNT; i++)
-		fprintf(out, "  %-8s %s\n", COMMANDS[i].name, COMMANDS[i].summary);
-	fputs("  help     this text, or `foundleft help COMMAND`\n  version  the program's version\n\n"
+		fprintf(out, "  %-11s %s\n", COMMANDS[i].name, COMMANDS[i].summary);
+	fputs("  help        this text, or `foundleft help COMMAND`\n  version     the program's version\n\n"
 	      "A first look: foundleft list, then foundleft begin. The manual: man foundleft.\n"
 	      "Hot fuel, pressure, rotating and electrical parts can injure: local rules and licensed\n"
 	      "practice come first; this program only reminds.\n",

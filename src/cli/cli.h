@@ -13,39 +13,51 @@
 /* Exit codes, documented in foundleft.1; derived from the status in fl_cli_exit_code. */
 typedef enum fl_exit {
 	FL_EXIT_FINE = 0,
-	FL_EXIT_NOT_PASS = 1,  /* --strict: the verdict is not "pass" */
-	FL_EXIT_USAGE = 2,     /* the command was used wrongly */
-	FL_EXIT_INPUT = 3,     /* a file or an answer is wrong: the line says where and what to do */
+	FL_EXIT_NOT_PASS =
+	    1,             /* --strict: the verdict is not "pass"; check: unchanged, but not vouched for or not complete */
+	FL_EXIT_USAGE = 2, /* the command was used wrongly */
+	FL_EXIT_INPUT = 3, /* a file or an answer is wrong: the line says where and what to do */
 	FL_EXIT_NOT_FOUND = 4, /* a file, session, instrument or procedure is not there */
 	FL_EXIT_STATE = 5,     /* not possible now: exists already, in use, closed */
 	FL_EXIT_IO = 6,        /* reading or writing failed, disk full, read-only */
-	FL_EXIT_TAMPERED = 7,  /* the digest chain does not fit */
+	FL_EXIT_TAMPERED = 7,  /* the digest chain or a signature does not fit, or something was added */
 	FL_EXIT_INTERNAL = 8   /* out of memory, or a fault of the program */
 } fl_exit;
 
 #define FL_PATH_SIZE 512
 
 /* Every option that some command takes; the table in cli.c says which takes which. */
-#define FL_OPTION_LIST(X)                                                                                      \
-	X(FL_OPT_HOME, "home", "DIR", "folder of stock, sessions and own procedures (FOUNDLEFT_HOME)")             \
-	X(FL_OPT_STOCK, "stock", "DIR", "folder of the stock files instead of HOME/stock")                         \
-	X(FL_OPT_PROCEDURE, "procedure", "ID", "procedure to follow, or the path of a template")                   \
-	X(FL_OPT_INSTRUMENT, "instrument", "TAG", "instrument to calibrate")                                       \
-	X(FL_OPT_JOURNAL, "journal", "FILE", "write the journal here instead of HOME/sessions")                    \
-	X(FL_OPT_AS_FOUND, "as-found", "NAME", "rows of the session column that are the as-found run")             \
-	X(FL_OPT_AS_LEFT, "as-left", "NAME", "rows of the session column that are the as-left run")                \
-	X(FL_OPT_PERFORMED_BY, "performed-by", "NAME", "who took the readings")                                    \
-	X(FL_OPT_REASON, "reason", "TEXT", "why the instrument was adjusted or left alone")                        \
-	X(FL_OPT_JSON, "json", NULL, "one JSON object on standard output")                                         \
-	X(FL_OPT_WIDTH, "width", "COLUMNS", "width of tables and pictures (default: the terminal's, at most 100)") \
-	X(FL_OPT_STRICT, "strict", NULL, "exit with 1 unless the last run's verdict is pass")                      \
-	X(FL_OPT_NUMBER, "number", "TEXT", "certificate number (default: the session's name)")                     \
-	X(FL_OPT_DATE, "date", "YYYY-MM-DD", "date of issue (default: today)")                                     \
-	X(FL_OPT_AUTHORISED_BY, "authorised-by", "NAME", "who authorises the certificate")                         \
-	X(FL_OPT_ISSUER, "issuer", "TEXT", "who issues, instead of bench.yaml")                                    \
-	X(FL_OPT_ISSUER_ADDRESS, "issuer-address", "TEXT", "address of the issuer, instead of bench.yaml")         \
-	X(FL_OPT_OUT, "out", "FILE", "write the certificate here instead of beside the journal")                   \
-	X(FL_OPT_TEXT, "text", NULL, "print the certificate's content as text, write no PDF")
+#define FL_OPTION_LIST(X)                                                                                       \
+	X(FL_OPT_HOME, "home", "DIR", "folder of stock, sessions and own procedures (FOUNDLEFT_HOME)")              \
+	X(FL_OPT_STOCK, "stock", "DIR", "folder of the stock files instead of HOME/stock")                          \
+	X(FL_OPT_PROCEDURE, "procedure", "ID", "procedure to follow, or the path of a template")                    \
+	X(FL_OPT_INSTRUMENT, "instrument", "TAG", "instrument to calibrate")                                        \
+	X(FL_OPT_JOURNAL, "journal", "FILE", "the journal, instead of one under HOME/sessions")                     \
+	X(FL_OPT_AS_FOUND, "as-found", "NAME", "rows of the session column that are the as-found run")              \
+	X(FL_OPT_AS_LEFT, "as-left", "NAME", "rows of the session column that are the as-left run")                 \
+	X(FL_OPT_PERFORMED_BY, "performed-by", "NAME", "who took the readings")                                     \
+	X(FL_OPT_REASON, "reason", "TEXT", "why it was adjusted or left alone; why a certificate is amended")       \
+	X(FL_OPT_JSON, "json", NULL, "one JSON object on standard output")                                          \
+	X(FL_OPT_WIDTH, "width", "COLUMNS", "width of tables and pictures (default: the terminal's, at most 100)")  \
+	X(FL_OPT_STRICT, "strict", NULL, "exit with 1 unless the last run's verdict is pass")                       \
+	X(FL_OPT_NUMBER, "number", "TEXT", "certificate number (default: the session's name)")                      \
+	X(FL_OPT_DATE, "date", "YYYY-MM-DD", "date of issue (default: today)")                                      \
+	X(FL_OPT_AUTHORISED_BY, "authorised-by", "NAME", "who authorises the certificate")                          \
+	X(FL_OPT_ISSUER, "issuer", "TEXT", "who issues, instead of bench.yaml")                                     \
+	X(FL_OPT_ISSUER_ADDRESS, "issuer-address", "TEXT", "address of the issuer, instead of bench.yaml")          \
+	X(FL_OPT_OUT, "out", "FILE", "write the certificate here instead of beside the journal")                    \
+	X(FL_OPT_TEXT, "text", NULL, "print the certificate's content as text, write no PDF")                       \
+	X(FL_OPT_AMENDS, "amends", "NUMBER", "certificate that this one replaces; --reason says why")               \
+	X(FL_OPT_SIGNER, "signer", "ID", "sign with this key; see foundleft keys")                                  \
+	X(FL_OPT_AS, "as", "PART", "in which part: performed, reviewed or authorised")                              \
+	X(FL_OPT_PASSPHRASE_FD, "passphrase-fd", "N", "read the passphrase from this file descriptor, a line each") \
+	X(FL_OPT_PERSON, "person", "NAME", "who the key belongs to")                                                \
+	X(FL_OPT_ORGANISATION, "organisation", "NAME", "the person's organisation")                                 \
+	X(FL_OPT_ROLE_TITLE, "role-title", "TEXT", "the person's role in it")                                       \
+	X(FL_OPT_RSA, "rsa", NULL, "an RSA key of 3072 bit instead of an elliptic one (P-256)")                     \
+	X(FL_OPT_SELF_SIGNED, "self-signed", NULL, "certify the key by itself")                                     \
+	X(FL_OPT_DAYS, "days", "N", "how long a self-signed certificate holds (default: 730)")                      \
+	X(FL_OPT_REQUEST, "request", NULL, "print a certificate request for an authority")
 
 typedef enum fl_option {
 #define FL_OPTION_ENUM(name, word, argument, help) name,
@@ -73,7 +85,7 @@ typedef struct fl_command {
 	const char *summary;
 	const char *more; /* a short paragraph for `help NAME` */
 	int least, most;  /* arguments */
-	unsigned options; /* bits of fl_option */
+	uint64_t options; /* bits of fl_option */
 	fl_status (*run)(fl_cli *cli, fl_exit *code, fl_error *err);
 } fl_command;
 
@@ -114,6 +126,8 @@ fl_status fl_command_replay(fl_cli *cli, fl_exit *code, fl_error *err);
 fl_status fl_command_import(fl_cli *cli, fl_exit *code, fl_error *err);
 fl_status fl_command_assess(fl_cli *cli, fl_exit *code, fl_error *err);
 fl_status fl_command_certify(fl_cli *cli, fl_exit *code, fl_error *err);
+fl_status fl_command_countersign(fl_cli *cli, fl_exit *code, fl_error *err);
+fl_status fl_command_keys(fl_cli *cli, fl_exit *code, fl_error *err);
 fl_status fl_command_check(fl_cli *cli, fl_exit *code, fl_error *err);
 fl_status fl_command_list(fl_cli *cli, fl_exit *code, fl_error *err);
 

@@ -4,7 +4,7 @@ _foundleft() {
 	local word=${COMP_WORDS[COMP_CWORD]} previous=${COMP_WORDS[COMP_CWORD - 1]} command=${COMP_WORDS[1]}
 	COMPREPLY=()
 	if [ "$COMP_CWORD" -eq 1 ]; then
-		mapfile -t COMPREPLY < <(compgen -W "begin resume replay import assess certify check list help version" -- "$word")
+		mapfile -t COMPREPLY < <(compgen -W "begin resume replay import assess certify countersign keys check list help version" -- "$word")
 		return
 	fi
 	case $previous in
@@ -12,12 +12,20 @@ _foundleft() {
 		mapfile -t COMPREPLY < <(compgen -W "$(foundleft list procedures 2>/dev/null | awk 'NR > 1 { print $1 }')" -- "$word")
 		return
 		;;
+	--signer)
+		mapfile -t COMPREPLY < <(compgen -W "$(foundleft keys list 2>/dev/null | grep -o '^[^ ]*$')" -- "$word")
+		return
+		;;
+	--as)
+		mapfile -t COMPREPLY < <(compgen -W "performed reviewed authorised" -- "$word")
+		return
+		;;
 	--home | --stock)
 		mapfile -t COMPREPLY < <(compgen -d -- "$word")
 		return
 		;;
 	help)
-		mapfile -t COMPREPLY < <(compgen -W "begin resume replay import assess certify check list" -- "$word")
+		mapfile -t COMPREPLY < <(compgen -W "begin resume replay import assess certify countersign keys check list" -- "$word")
 		return
 		;;
 	esac
@@ -29,6 +37,9 @@ _foundleft() {
 		case $command in
 		resume | assess | certify)
 			mapfile -t COMPREPLY < <(compgen -W "$(foundleft list sessions 2>/dev/null | awk 'NR > 1 { print $1 }')" -- "$word")
+			;;
+		keys)
+			[ "$COMP_CWORD" -eq 2 ] && mapfile -t COMPREPLY < <(compgen -W "make take import list show" -- "$word")
 			;;
 		list)
 			mapfile -t COMPREPLY < <(compgen -W "procedures stock sessions" -- "$word")
