@@ -57,6 +57,20 @@ typedef struct fl_sign_places {
 fl_status fl_certificate_pdf_places(const fl_sheet *sheet, const fl_io *io, const fl_faces *faces,
                                     unsigned char **bytes, size_t *length, fl_sign_places *places,
                                     fl_error *err) FL_MUST_USE;
+/* One part of a collection. */
+typedef struct fl_pack_part {
+	const fl_sheet *sheet; /* NULL: only a title in the outline, over the parts of level 1 that follow */
+	const char *title;     /* in the outline */
+	int level;             /* 0, or 1 */
+	size_t page;           /* set: its first page, from 1 */
+} fl_pack_part;
+/* Sets several sheets as one document with an outline, pages counted through. The first says of the whole what the
+ * document says of itself. */
+fl_status fl_certificate_pack_pdf(fl_pack_part *parts, size_t count, const fl_io *io, const fl_faces *faces,
+                                  unsigned char **bytes, size_t *length, fl_error *err) FL_MUST_USE;
+/* Says on every page of a certificate that it is a copy from the record, and in place of signatures where they stand.
+ */
+void fl_certificate_mark_copy(fl_sheet *sheet, const char *mark, const char *where);
 /* The certificate's face for the visible blocks; all memory is the arena's. */
 fl_status fl_certificate_face(const fl_io *io, const fl_faces *faces, fl_arena *arena, fl_seal_face *out,
                               fl_error *err) FL_MUST_USE;

@@ -109,14 +109,14 @@ static void explain_run(fl_writing *w, fl_chart *chart, const fl_run_result *run
 	bool filled = run->kind == FL_RUN_AS_LEFT;
 	const char *name = fl_run_word(run->kind);
 	fl_chart_legend(w->sheet, chart,
-	                (fl_legend){fl_sheet_printf(w->sheet, "%s, rising", name),
-	                            FL_LEGEND_POINT,
-	                            {.mark = FL_MARK_UP, .filled = filled}});
+	                (fl_legend){.text = fl_sheet_printf(w->sheet, "%s, rising", name),
+	                            .kind = FL_LEGEND_POINT,
+	                            .sample = {.mark = FL_MARK_UP, .filled = filled}});
 	if (falling)
 		fl_chart_legend(w->sheet, chart,
-		                (fl_legend){fl_sheet_printf(w->sheet, "%s, falling", name),
-		                            FL_LEGEND_POINT,
-		                            {.mark = FL_MARK_DOWN, .filled = filled}});
+		                (fl_legend){.text = fl_sheet_printf(w->sheet, "%s, falling", name),
+		                            .kind = FL_LEGEND_POINT,
+		                            .sample = {.mark = FL_MARK_DOWN, .filled = filled}});
 }
 
 static void explain(fl_writing *w, fl_chart *chart, const fl_run_result *found, const fl_run_result *left) {
@@ -132,9 +132,9 @@ static void explain(fl_writing *w, fl_chart *chart, const fl_run_result *found, 
 	}
 	if (any_struck(found) || any_struck(left))
 		fl_chart_legend(w->sheet, chart,
-		                (fl_legend){"single reading, struck",
-		                            FL_LEGEND_POINT,
-		                            {.mark = FL_MARK_UP, .filled = false, .crossed = true}});
+		                (fl_legend){.text = "single reading, struck",
+		                            .kind = FL_LEGEND_POINT,
+		                            .sample = {.mark = FL_MARK_UP, .filled = false, .crossed = true}});
 }
 
 void fl_write_chart(fl_writing *w) {

@@ -186,16 +186,16 @@ static HPDF_Dict add_font(HPDF_Doc pdf, fl_press *press, const fl_typeface *type
 
 /* ---- pages ----------------------------------------------------------------- */
 
-static void add_page(HPDF_Doc pdf, const fl_text *content, HPDF_Dict fonts[FL_WEIGHTS]) {
+static HPDF_Page add_page(HPDF_Doc pdf, const fl_text *content, HPDF_Dict fonts[FL_WEIGHTS]) {
 	HPDF_Page page = HPDF_AddPage(pdf);
 	if (!page)
-		return;
+		return NULL;
 	HPDF_Page_SetWidth(page, (HPDF_REAL)FL_PAGE_WIDTH);
 	HPDF_Page_SetHeight(page, (HPDF_REAL)FL_PAGE_HEIGHT);
 	HPDF_Dict resources = HPDF_Page_GetInheritableItem(page, "Resources", HPDF_OCLASS_DICT);
 	HPDF_Dict used = HPDF_Dict_New(pdf->mmgr);
 	if (!resources || !used || HPDF_Dict_Add(resources, "Font", used) != HPDF_OK)
-		return;
+		return NULL;
 	for (int i = 0; i < FL_WEIGHTS; i++) {
 		char key[16];
 		snprintf(key, sizeof key, "F%d", i + 1);
@@ -203,6 +203,7 @@ static void add_page(HPDF_Doc pdf, const fl_text *content, HPDF_Dict fonts[FL_WE
 	}
 	HPDF_PageAttr attr = page->attr;
 	HPDF_Stream_Write(attr->stream, (HPDF_BYTE *)content->data, (HPDF_UINT)content->length);
+	return page;
 }
 
 /* ---- what the document says of itself -------------------------------------- */
@@ -266,8 +267,8 @@ static void write_xmp(const fl_sheet *sheet, const char *title, fl_text *out) {
 	fl_text_add(out, "</rdf:Description>\n</rdf:RDF>\n</x:xmpmeta>\n<?xpacket end=\"w\"?>\n");
 }
 
-/* UTF-16BE with its mark, as an information dictionary holds text. False when memory is out. */
-static bool put_text(HPDF_Doc pdf, fl_press *press, const char *key, const char *text) {
+/* UTF-16BE with its mark, as a dictionary holds text that is read. False when memory is out. */
+static bool put_text(HPDF_Doc pdf, fl_press *press, HPDF_Dict into, const char *key, const char *text) {
 	size_t length = strlen(text);
 	unsigned char *wide = fl_arena_alloc(&press->arena, 2 * length + 4, 1);
 	if (!wide)
@@ -286,7 +287,7 @@ static bool put_text(HPDF_Doc pdf, fl_press *press, const char *key, const char 
 		wide[at++] = (unsigned char)(point >> 8);
 		wide[at++] = (unsigned char)point;
 	}
-	return HPDF_Dict_Add(pdf->info, key, HPDF_Binary_New(pdf->mmgr, wide, at)) == HPDF_OK;
+	return HPDF_Dict_Add(into, key, HPDF_Binary_New(pdf->mmgr, wide, at)) == HPDF_OK;
 }
 
 /* The information dictionary and the XMP that says the same. False when memory is out. */
@@ -294,9 +295,11 @@ static bool add_information(HPDF_Doc pdf, fl_press *press, const char *title) {
 	const fl_sheet *sheet = press->sheet;
 	char time[40];
 	pdf_time(sheet, time);
-	if (!put_text(pdf, press, "Title", title) || !put_text(pdf, press, "Author", sheet->author) ||
-	    !put_text(pdf, press, "Subject", sheet->subject) || !put_text(pdf, press, "Creator", sheet->program) ||
-	    !put_text(pdf, press, "Producer", sheet->program))
+	HPDF_Dict info = pdf->info;
+	if (!put_text(pdf, press, info, "Title", title) || !put_text(pdf, press, info, "Author", sheet->author) ||
+	    !put_text(pdf, press, info, "Subject", sheet->subject) ||
+	    !put_text(pdf, press, info, "Creator", sheet->program) ||
+	    !put_text(pdf, press, info, "Producer", sheet->program))
 		return false;
 	HPDF_Dict_Add(pdf->info, "CreationDate", HPDF_String_New(pdf->mmgr, time, NULL));
 	HPDF_Dict_Add(pdf->info, "ModDate", HPDF_String_New(pdf->mmgr, time, NULL));
@@ -341,6 +344,71 @@ static void add_identity(HPDF_Doc pdf, const fl_press *press) {
 		HPDF_Array_Add(ids, HPDF_Binary_New(pdf->mmgr, identity, sizeof identity));
 }
 
+/* ---- the outline ------------------------------------------------------------ */
+
+/* ISO 32000-1, 12.3.3: entries linked both ways and to the one above; each goes to the top of its page by a GoTo
+ * action, which ISO 19005-1, 6.6.1 allows. */
+static bool fill_bookmark(HPDF_Doc pdf, fl_press *press, HPDF_Dict entry, const fl_bookmark *mark, HPDF_Page page) {
+	HPDF_Dict action = HPDF_Dict_New(pdf->mmgr);
+	if (!action || HPDF_Dict_Add(entry, "A", action) != HPDF_OK)
+		return false;
+	HPDF_Dict_AddName(action, "S", "GoTo");
+	HPDF_Array place = add_array(pdf, action, "D");
+	if (!place || !page)
+		return false;
+	HPDF_Array_Add(place, page);
+	HPDF_Array_AddName(place, "Fit");
+	return put_text(pdf, press, entry, "Title", mark->title);
+}
+
+/* Links the bookmarks of one level that belong to `above`, from `from` up to `to`. */
+static void link_level(HPDF_Dict above, HPDF_Dict *entries, const fl_bookmark *marks, size_t from, size_t to,
+                       int level) {
+	HPDF_Dict last = NULL;
+	HPDF_INT32 count = 0;
+	for (size_t i = from; i < to; i++) {
+		if (marks[i].level != level)
+			continue;
+		HPDF_Dict_Add(entries[i], "Parent", above);
+		if (last) {
+			HPDF_Dict_Add(entries[i], "Prev", last);
+			HPDF_Dict_Add(last, "Next", entries[i]);
+		} else {
+			HPDF_Dict_Add(above, "First", entries[i]);
+		}
+		last = entries[i];
+		count++;
+		size_t end = i + 1;
+		while (level == 0 && end < to && marks[end].level > 0)
+			end++;
+		if (end > i + 1)
+			link_level(entries[i], entries, marks, i + 1, end, 1);
+	}
+	if (last)
+		HPDF_Dict_Add(above, "Last", last);
+	HPDF_Dict_AddNumber(above, "Count", count);
+}
+
+static bool add_outline(HPDF_Doc pdf, fl_press *press, HPDF_Page *pages) {
+	size_t count = press->bookmark_count;
+	if (count == 0)
+		return true;
+	HPDF_Dict outline = add_dict(pdf, "Outlines");
+	HPDF_Dict *entries = fl_arena_alloc(&press->arena, count, sizeof *entries);
+	if (!outline || !entries || HPDF_Dict_Add(pdf->catalog, "Outlines", outline) != HPDF_OK)
+		return false;
+	for (size_t i = 0; i < count; i++) {
+		size_t page = press->bookmarks[i].page;
+		entries[i] = HPDF_Dict_New(pdf->mmgr);
+		if (!entries[i] || HPDF_Xref_Add(pdf->xref, entries[i]) != HPDF_OK || page < 1 || page > press->page_count ||
+		    !fill_bookmark(pdf, press, entries[i], &press->bookmarks[i], pages[page - 1]))
+			return false;
+	}
+	link_level(outline, entries, press->bookmarks, 0, count, 0);
+	HPDF_Dict_AddName(pdf->catalog, "PageMode", "UseOutlines");
+	return true;
+}
+
 /* ---- all of it ------------------------------------------------------------- */
 
 static fl_status build(HPDF_Doc pdf, fl_press *press, fl_error *err) {
@@ -352,11 +420,12 @@ static fl_status build(HPDF_Doc pdf, fl_press *press, fl_error *err) {
 		if (!fonts[i])
 			return fl_fail(err, FL_E_MEMORY, "out of memory while writing the certificate's faces");
 	}
-	for (size_t i = 0; i < press->page_count; i++)
-		add_page(pdf, &press->pages[i], fonts);
+	HPDF_Page *pages = fl_arena_alloc(&press->arena, press->page_count, sizeof *pages);
+	for (size_t i = 0; pages && i < press->page_count; i++)
+		pages[i] = add_page(pdf, &press->pages[i], fonts);
 	const fl_sheet *sheet = press->sheet;
 	char *title = fl_arena_printf(&press->arena, "%s %s", sheet->title, sheet->number);
-	if (!title || !add_information(pdf, press, title))
+	if (!pages || !title || !add_information(pdf, press, title) || !add_outline(pdf, press, pages))
 		return fl_fail(err, FL_E_MEMORY, "out of memory while writing the certificate");
 	add_output_intent(pdf, press);
 	add_identity(pdf, press);

@@ -69,17 +69,33 @@ static fl_status check_unset_texts(const fl_sheet *sheet, fl_error *err) {
 	return FL_OK;
 }
 
-fl_status fl_certificate_pdf_places(const fl_sheet *sheet, const fl_io *io, const fl_faces *faces,
-                                    unsigned char **bytes, size_t *length, fl_sign_places *places, fl_error *err) {
+/* Bookmarks only where there is more than one part. */
+static fl_status bookmarks_of(fl_press *press, const fl_pack_part *parts, size_t count, fl_error *err) {
+	if (count < 2)
+		return FL_OK;
+	fl_bookmark *marks = fl_arena_alloc(&press->arena, count, sizeof *marks);
+	if (!marks)
+		return fl_fail(err, FL_E_MEMORY, "out of memory while setting the certificate");
+	for (size_t i = 0; i < count; i++)
+		marks[i] = (fl_bookmark){parts[i].title, parts[i].level, parts[i].page};
+	press->bookmarks = marks;
+	press->bookmark_count = count;
+	return FL_OK;
+}
+
+static fl_status set_document(fl_pack_part *parts, size_t count, const fl_io *io, const fl_faces *faces,
+                              unsigned char **bytes, size_t *length, fl_sign_places *places, fl_error *err) {
 	fl_error own = {0};
-	fl_press press = {.sheet = sheet, .err = err ? err : &own};
-	fl_status status = check_unset_texts(sheet, err);
+	fl_press press = {.sheet = parts[0].sheet, .err = err ? err : &own};
+	fl_status status = check_unset_texts(parts[0].sheet, err);
 	if (status == FL_OK)
 		status = load_all(&press, io, faces->folder, err);
 	if (status == FL_OK) {
-		fl_set_sheet(&press);
+		fl_set_parts(&press, parts, count);
 		status = check_pages(&press, err);
 	}
+	if (status == FL_OK)
+		status = bookmarks_of(&press, parts, count, err);
 	if (status == FL_OK)
 		status = fl_press_bytes(&press, bytes, length, err);
 	for (size_t i = 0; i < press.page_count; i++)
@@ -87,6 +103,20 @@ fl_status fl_certificate_pdf_places(const fl_sheet *sheet, const fl_io *io, cons
 	*places = press.places;
 	fl_arena_free(&press.arena);
 	return status;
+}
+
+fl_status fl_certificate_pdf_places(const fl_sheet *sheet, const fl_io *io, const fl_faces *faces,
+                                    unsigned char **bytes, size_t *length, fl_sign_places *places, fl_error *err) {
+	fl_pack_part one = {.sheet = sheet};
+	return set_document(&one, 1, io, faces, bytes, length, places, err);
+}
+
+fl_status fl_certificate_pack_pdf(fl_pack_part *parts, size_t count, const fl_io *io, const fl_faces *faces,
+                                  unsigned char **bytes, size_t *length, fl_error *err) {
+	fl_sign_places places;
+	if (count == 0 || !parts[0].sheet)
+		return fl_fail(err, FL_E_VALUE, "a collection begins with a sheet");
+	return set_document(parts, count, io, faces, bytes, length, &places, err);
 }
 
 fl_status fl_certificate_pdf(const fl_sheet *sheet, const fl_io *io, const fl_faces *faces, unsigned char **bytes,

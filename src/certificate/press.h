@@ -39,8 +39,17 @@ typedef struct fl_typeface {
 	size_t count, glyph_capacity, point_capacity;
 } fl_typeface;
 
+/* An entry of the outline. */
+typedef struct fl_bookmark {
+	const char *title;
+	int level;   /* 0, or 1 under the one of level 0 before it */
+	size_t page; /* from 1 */
+} fl_bookmark;
+
 typedef struct fl_press {
-	const fl_sheet *sheet;
+	const fl_sheet *sheet; /* the one being set; the first of several when the document is written */
+	const fl_bookmark *bookmarks;
+	size_t bookmark_count;
 	fl_arena arena;
 	fl_typeface faces[FL_WEIGHTS];
 	unsigned char *profile; /* colour profile */
@@ -85,6 +94,8 @@ size_t fl_press_lines(fl_press *press, fl_weight weight, double size, const char
 
 /* ---- set_*.c: blocks */
 void fl_set_sheet(fl_press *press);
+/* The same of several one after another, pages counted through; says in `page` where each begins. */
+void fl_set_parts(fl_press *press, fl_pack_part *parts, size_t count);
 void fl_set_table(fl_press *press, const fl_block *block);
 double fl_table_least(fl_press *press, const fl_block *block); /* head and first rows: what must stay together */
 void fl_set_chart(fl_press *press, const fl_chart *chart);

@@ -50,6 +50,13 @@ static void choose_scale(fl_frame *frame) {
 		low = fmin(low, chart->points[i].y - chart->points[i].bar);
 		high = fmax(high, chart->points[i].y + chart->points[i].bar);
 	}
+	for (size_t i = 0; i < chart->line_count; i++) {
+		const fl_plot_line *line = &chart->lines[i];
+		if (line->stroke == FL_STROKE_FINE || line->stroke == FL_STROKE_EVENT)
+			continue;
+		low = fmin(low, fmin(line->y1, line->y2));
+		high = fmax(high, fmax(line->y1, line->y2));
+	}
 	double nearest = fmax(high, -low);
 	for (size_t i = 0; i < chart->edge_count; i++) {
 		double outer = chart->edges[i].outer;
@@ -65,6 +72,8 @@ static void choose_scale(fl_frame *frame) {
 	frame->y_low = floor((low - margin) / (frame->y_step / 2)) * (frame->y_step / 2);
 	frame->y_high = ceil((high + margin) / (frame->y_step / 2)) * (frame->y_step / 2);
 	frame->x_step = round_step(chart->x_high - chart->x_low, 10);
+	if (chart->whole_steps)
+		frame->x_step = fmax(1.0, frame->x_step);
 }
 
 static double clipped_y(const fl_frame *frame, double y) {
@@ -190,6 +199,39 @@ static void draw_bar(fl_press *press, double x, double low, double high) {
 	fl_ink_line(press, x - 1.6, high, x + 1.6, high, 0.5, 0.25);
 }
 
+static void set_stroke(fl_press *press, fl_stroke stroke) {
+	static const double widths[] = {0.8, 0.8, 0.45, 0.5}, greys[] = {FL_BLACK, FL_BLACK, FL_SOFT, FL_SOFT};
+	static const char *const dashes[] = {"[] 0 d", "[4 2.4] 0 d", "[] 0 d", "[1 1.8] 0 d"};
+	fl_ink_grey(press, greys[stroke], true);
+	fl_ink_number(press, widths[stroke]);
+	fl_ink_op(press, "w");
+	fl_ink_op(press, dashes[stroke]);
+}
+
+static void draw_lines(const fl_frame *frame) {
+	fl_press *press = frame->press;
+	if (frame->chart->line_count == 0)
+		return;
+	const double box[4][2] = {{frame->left, frame->bottom},
+	                          {frame->right, frame->bottom},
+	                          {frame->right, frame->top},
+	                          {frame->left, frame->top}};
+	fl_ink_op(press, "q");
+	fl_ink_path(press, box, 4);
+	fl_ink_op(press, "h W n");
+	for (size_t i = 0; i < frame->chart->line_count; i++) {
+		const fl_plot_line *line = &frame->chart->lines[i];
+		bool upright = line->stroke == FL_STROKE_EVENT;
+		const double ends[2][2] = {
+		    {page_x(frame, line->x1), upright ? frame->bottom : page_y(frame, line->y1)},
+		    {page_x(frame, upright ? line->x1 : line->x2), upright ? frame->top : page_y(frame, line->y2)}};
+		set_stroke(press, line->stroke);
+		fl_ink_path(press, ends, 2);
+		fl_ink_op(press, "S");
+	}
+	fl_ink_op(press, "Q");
+}
+
 static void draw_points(const fl_frame *frame) {
 	for (size_t i = 0; i < frame->chart->point_count; i++) {
 		const fl_plot_point *point = &frame->chart->points[i];
@@ -222,6 +264,17 @@ static void draw_sample(const fl_frame *frame, const fl_legend *entry, double x,
 	case FL_LEGEND_BAR:
 		draw_bar(press, x, y - 4, y + 4);
 		break;
+	case FL_LEGEND_LINE: {
+		bool upright = entry->stroke == FL_STROKE_EVENT;
+		const double ends[2][2] = {{upright ? x : x - 7, upright ? y - 5 : y},
+		                           {upright ? x : x + 7, upright ? y + 5 : y}};
+		fl_ink_op(press, "q");
+		set_stroke(press, entry->stroke);
+		fl_ink_path(press, ends, 2);
+		fl_ink_op(press, "S");
+		fl_ink_op(press, "Q");
+		break;
+	}
 	case FL_LEGEND_BAND:
 	case FL_LEGEND_GUARD:
 		fl_ink_grey(press, 0.925, false);
@@ -276,6 +329,7 @@ void fl_set_chart(fl_press *press, const fl_chart *chart) {
 	choose_scale(&frame);
 	draw_band(&frame);
 	draw_axes(&frame);
+	draw_lines(&frame);
 	draw_points(&frame);
 	press->y -= HEIGHT;
 	press->y -= set_legend(&frame, press->y, true) + 12;

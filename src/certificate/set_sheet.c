@@ -344,13 +344,13 @@ static void set_running(fl_press *press, const char *text, double y) {
 		             FL_LEFT + fl_press_width(press, FL_REGULAR, SMALL, lines[0].start, lines[0].length), y, "…");
 }
 
-/* Mark, running head and foot of the page under way, which is page `page` of `count`. */
-static void set_margins(fl_press *press, size_t page, size_t count) {
+/* Mark, running head and foot of the page under way, which is page `page` of `count`; `first` of its sheet. */
+static void set_margins(fl_press *press, size_t page, bool first, size_t count) {
 	const fl_sheet *sheet = press->sheet;
 	char place[48];
 	snprintf(place, sizeof place, "page %zu of %zu", page, count);
 	double head = FL_PAGE_HEIGHT - 38, foot = 34;
-	if (page > 1) {
+	if (!first) {
 		set_running(press, sheet->running, head);
 		fl_ink_line(press, FL_LEFT, head - 5, FL_RIGHT, head - 5, 0.35, FL_RULE);
 	}
@@ -373,16 +373,36 @@ static void set_margins(fl_press *press, size_t page, size_t count) {
 	fl_ink_words_right(press, FL_REGULAR, SMALL, FL_BLACK, FL_RIGHT, foot, place);
 }
 
-void fl_set_sheet(fl_press *press) {
+/* Masthead and blocks from the top of a new page. */
+static void set_blocks(fl_press *press) {
 	const fl_sheet *sheet = press->sheet;
 	fl_press_new_page(press);
 	set_masthead(press);
 	for (size_t i = 0; i < sheet->block_count && press->status == FL_OK; i++)
 		set_block(press, &sheet->blocks[i], i + 1 < sheet->block_count ? &sheet->blocks[i + 1] : NULL);
-	size_t count = press->page_count;
-	for (size_t page = 1; page <= count && press->status == FL_OK; page++) {
-		press->page_count = page; /* drawing goes to the last page counted */
-		set_margins(press, page, count);
+}
+
+void fl_set_parts(fl_press *press, fl_pack_part *parts, size_t count) {
+	for (size_t i = 0; i < count && press->status == FL_OK; i++) {
+		parts[i].page = press->page_count + 1;
+		press->sheet = parts[i].sheet;
+		if (press->sheet)
+			set_blocks(press);
 	}
-	press->page_count = count;
+	size_t pages = press->page_count;
+	for (size_t i = count, last = pages; i-- > 0 && press->status == FL_OK;) {
+		press->sheet = parts[i].sheet;
+		for (size_t page = parts[i].page; page <= last && press->status == FL_OK; page++) {
+			press->page_count = page; /* drawing goes to the last page counted */
+			set_margins(press, page, page == parts[i].page, pages);
+		}
+		last = parts[i].page - 1;
+	}
+	press->page_count = pages;
+	press->sheet = parts[0].sheet;
+}
+
+void fl_set_sheet(fl_press *press) {
+	fl_pack_part one = {.sheet = press->sheet};
+	fl_set_parts(press, &one, 1);
 }

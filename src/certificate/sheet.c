@@ -183,7 +183,8 @@ fl_chart *fl_sheet_add_chart(fl_sheet *sheet, const fl_chart *frame) {
 	                    .y_label = fl_sheet_copy(sheet, frame->y_label),
 	                    .alternative = fl_sheet_copy(sheet, frame->alternative),
 	                    .x_low = frame->x_low,
-	                    .x_high = frame->x_high};
+	                    .x_high = frame->x_high,
+	                    .whole_steps = frame->whole_steps};
 	block->chart = chart;
 	return chart;
 }
@@ -206,6 +207,16 @@ void fl_chart_edge(fl_sheet *sheet, fl_chart *chart, fl_plot_edge edge) {
 		return;
 	chart->edges = grown;
 	chart->edges[chart->edge_count++] = edge;
+}
+
+void fl_chart_line(fl_sheet *sheet, fl_chart *chart, fl_plot_line line) {
+	if (!chart)
+		return;
+	fl_plot_line *grown = grow(sheet, chart->lines, chart->line_count, &chart->line_capacity, sizeof *grown);
+	if (!grown)
+		return;
+	chart->lines = grown;
+	chart->lines[chart->line_count++] = line;
 }
 
 void fl_chart_legend(fl_sheet *sheet, fl_chart *chart, fl_legend entry) {

@@ -59,19 +59,35 @@ typedef struct fl_plot_edge {
 	double x, outer, inner; /* tolerance; acceptance limit (outer less the guard band), NAN if none */
 } fl_plot_edge;
 
+typedef enum fl_stroke {
+	FL_STROKE_FULL,
+	FL_STROKE_DASHED,
+	FL_STROKE_FINE, /* does not widen the scale: what leaves the frame is cut off */
+	FL_STROKE_EVENT /* upright through the whole frame at x1 */
+} fl_stroke;
+
+typedef struct fl_plot_line {
+	double x1, y1, x2, y2;
+	fl_stroke stroke;
+} fl_plot_line;
+
 typedef struct fl_legend {
 	const char *text;
-	enum { FL_LEGEND_POINT, FL_LEGEND_BAND, FL_LEGEND_GUARD, FL_LEGEND_BAR } kind;
+	enum { FL_LEGEND_POINT, FL_LEGEND_BAND, FL_LEGEND_GUARD, FL_LEGEND_BAR, FL_LEGEND_LINE } kind;
 	fl_plot_point sample;
+	fl_stroke stroke; /* of a line */
 } fl_legend;
 
 typedef struct fl_chart {
 	const char *x_label, *y_label;
 	double x_low, x_high;
+	bool whole_steps; /* x is divided in whole numbers only: years */
 	fl_plot_point *points;
 	size_t point_count, point_capacity;
 	fl_plot_edge *edges; /* rising x; none: no band */
 	size_t edge_count, edge_capacity;
+	fl_plot_line *lines;
+	size_t line_count, line_capacity;
 	fl_legend *legend;
 	size_t legend_count, legend_capacity;
 	const char *alternative; /* what the picture shows, in words */
@@ -146,6 +162,7 @@ void fl_sheet_row(fl_sheet *sheet, fl_block *table, fl_row_kind kind, const char
 fl_chart *fl_sheet_add_chart(fl_sheet *sheet, const fl_chart *frame);
 void fl_chart_point(fl_sheet *sheet, fl_chart *chart, fl_plot_point point);
 void fl_chart_edge(fl_sheet *sheet, fl_chart *chart, fl_plot_edge edge);
+void fl_chart_line(fl_sheet *sheet, fl_chart *chart, fl_plot_line line);
 void fl_chart_legend(fl_sheet *sheet, fl_chart *chart, fl_legend entry);
 
 #endif

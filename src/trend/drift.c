@@ -108,12 +108,12 @@ static fl_status test_curvature(fl_saw *saw, const fl_stretch *stretch, fl_drift
 
 static fl_status say_drift(fl_saw *saw, fl_drift *d, fl_error *err) {
 	const char *more = d->accelerates ? "; it accelerates" : d->slows ? "; it slows down" : "";
-	return fl_say(
+	return fl_trend_say(
 	    &saw->arena, &d->sentence, err,
 	    "chained drift %s of span a year, standard uncertainty %s %%, over %d intervals%s (as-found values as "
 	    "they stand would say %s)",
-	    fl_word_percent(d->slope, 2).text, fl_word_number(100.0 * d->se, 2).text, d->intervals, more,
-	    fl_word_percent(d->naive_slope, 2).text);
+	    fl_trend_word_percent(d->slope, 2).text, fl_trend_word_number(100.0 * d->se, 2).text, d->intervals, more,
+	    fl_trend_word_percent(d->naive_slope, 2).text);
 }
 
 fl_status fl_trend_drift(fl_saw *saw, fl_drift *out, fl_error *err) {
@@ -125,10 +125,11 @@ fl_status fl_trend_drift(fl_saw *saw, fl_drift *out, fl_error *err) {
 	drift.intervals = stretch.n ? (int)stretch.n - 1 : 0;
 	*out = drift;
 	if (drift.intervals < LEAST_INTERVALS)
-		return fl_say(&saw->arena, &out->sentence, err,
-		              "%d calibration interval%s since the drift last began anew: no line is drawn through fewer than "
-		              "three",
-		              drift.intervals, drift.intervals == 1 ? "" : "s");
+		return fl_trend_say(
+		    &saw->arena, &out->sentence, err,
+		    "%d calibration interval%s since the drift last began anew: no line is drawn through fewer than "
+		    "three",
+		    drift.intervals, drift.intervals == 1 ? "" : "s");
 	status = fl_trend_line(stretch.x, stretch.y, stretch.w, stretch.n, &drift.line, err);
 	if (status < 0)
 		return status;
@@ -208,29 +209,31 @@ static fl_status say_forecast(fl_saw *saw, fl_forecast *f, fl_error *err) {
 	const char *bound =
 	    f->by_bound == FL_NO_DAY ? "not within 20 years" : fl_day_format(f->by_bound, (char[FL_DAY_SIZE]){0});
 	if (!(f->limit > 0.0))
-		return fl_say(&saw->arena, &f->sentence, err,
-		              "the uncertainty is as large as the tolerance: there is no guarded limit to stay within");
+		return fl_trend_say(&saw->arena, &f->sentence, err,
+		                    "the uncertainty is as large as the tolerance: there is no guarded limit to stay within");
 	if (f->by_bound == f->from)
-		return fl_say(&saw->arena, &f->sentence, err,
-		              "the 95 %% bound lies beyond the guarded limit of %s of span from the start: the years do not "
-		              "agree well enough, or the instrument was left near its limit",
-		              fl_word_percent(f->limit, 2).text);
-	return fl_say(&saw->arena, &f->sentence, err, "guarded limit %s of span: by the mean %s, by the 95 %% bound %s",
-	              fl_word_percent(f->limit, 2).text, mean, bound);
+		return fl_trend_say(
+		    &saw->arena, &f->sentence, err,
+		    "the 95 %% bound lies beyond the guarded limit of %s of span from the start: the years do not "
+		    "agree well enough, or the instrument was left near its limit",
+		    fl_trend_word_percent(f->limit, 2).text);
+	return fl_trend_say(&saw->arena, &f->sentence, err,
+	                    "guarded limit %s of span: by the mean %s, by the 95 %% bound %s",
+	                    fl_trend_word_percent(f->limit, 2).text, mean, bound);
 }
 
 fl_status fl_trend_forecast(fl_saw *saw, const fl_drift *drift, fl_forecast *out, fl_error *err) {
 	fl_forecast f = {.from = FL_NO_DAY, .by_mean = FL_NO_DAY, .by_bound = FL_NO_DAY, .start = NAN, .limit = NAN};
 	*out = f;
 	if (!drift->determined)
-		return fl_say(&saw->arena, &out->sentence, err, "no forecast: %s", drift->sentence);
+		return fl_trend_say(&saw->arena, &out->sentence, err, "no forecast: %s", drift->sentence);
 	const fl_tooth *last = &saw->teeth[saw->count - 1];
 	f.from = last->day;
 	f.start = last->as_left;
 	f.limit = fl_drift_limit(saw);
 	if (isnan(f.start) || isnan(f.limit))
-		return fl_say(&saw->arena, &out->sentence, err, "no forecast: %s",
-		              isnan(f.start) ? "the last session has no as-left" : "there is no tolerance for this");
+		return fl_trend_say(&saw->arena, &out->sentence, err, "no forecast: %s",
+		                    isnan(f.start) ? "the last session has no as-left" : "there is no tolerance for this");
 	f.determined = true;
 	f.by_mean = day_after(f.from, mean_touch(f.start, drift->slope, f.limit));
 	f.by_bound = day_after(f.from, fl_drift_touch(&drift->line, f.start, f.limit, FL_FORECAST_YEARS));

@@ -73,8 +73,8 @@ fl_status fl_trend_staircase(const fl_record *records, size_t count, const fl_in
 	if (!worst) {
 		out->determined = true;
 		out->months = policy->first_months;
-		return fl_say(arena, &out->reason, err, "no interval has been completed yet: %d months to begin with",
-		              policy->first_months);
+		return fl_trend_say(arena, &out->reason, err, "no interval has been completed yet: %d months to begin with",
+		                    policy->first_months);
 	}
 	int had = months_before(&records[count - 2], &records[count - 1]);
 	double part = fabs(worst->error_span) / worst->tolerance_span;
@@ -82,9 +82,10 @@ fl_status fl_trend_staircase(const fl_record *records, size_t count, const fl_in
 	const char *note = "", *step = part > 1.0 ? "shortened" : part <= policy->inside ? "lengthened" : "kept";
 	out->determined = true;
 	out->months = hold(had * factor, policy, &note);
-	return fl_say(
-	    arena, &out->reason, err, "found at %s of span, %s %% of the tolerance, after %d months: %s to %d months%s",
-	    fl_word_percent(worst->error_span, 2).text, fl_word_number(100.0 * part, 0).text, had, step, out->months, note);
+	return fl_trend_say(arena, &out->reason, err,
+	                    "found at %s of span, %s %% of the tolerance, after %d months: %s to %d months%s",
+	                    fl_trend_word_percent(worst->error_span, 2).text, fl_trend_word_number(100.0 * part, 0).text,
+	                    had, step, out->months, note);
 }
 
 /* ---- control chart ---------------------------------------------------------------------------------------------- */
@@ -113,7 +114,7 @@ fl_status fl_trend_chart(fl_saw *saw, const fl_drift *drift, const fl_interval_p
 	int months = forecast.by_bound == FL_NO_DAY ? most : months_until(forecast.from, forecast.by_bound, most);
 	out->determined = true;
 	out->months = hold(months, policy, &note);
-	return fl_say(&saw->arena, &out->reason, err, "%s: %d months%s", forecast.sentence, out->months, note);
+	return fl_trend_say(&saw->arena, &out->reason, err, "%s: %d months%s", forecast.sentence, out->months, note);
 }
 
 /* ---- time in use ------------------------------------------------------------------------------------------------ */
@@ -133,13 +134,13 @@ static fl_status propose_hours(fl_saw *saw, const fl_drift_line *line, const fl_
 	out->determined = true;
 	out->months = hold(months, policy, &note);
 	out->hours = isinf(hours) || months > policy->longest_months ? policy->longest_months / 12.0 * pace : hours;
-	return fl_say(
+	return fl_trend_say(
 	    &saw->arena, &out->reason, err,
 	    "%s of span in 1000 h, standard uncertainty %s %%; the 95 %% bound reaches the guarded limit after %s "
 	    "h; at %s h a year %d months%s",
-	    fl_word_percent(1000.0 * line->slope, 3).text, fl_word_number(100000.0 * line->se_slope, 3).text,
-	    isinf(hours) ? "more than 20 years of" : fl_word_number(hours, 0).text, fl_word_number(pace, 0).text,
-	    out->months, note);
+	    fl_trend_word_percent(1000.0 * line->slope, 3).text, fl_trend_word_number(100000.0 * line->se_slope, 3).text,
+	    isinf(hours) ? "more than 20 years of" : fl_trend_word_number(hours, 0).text,
+	    fl_trend_word_number(pace, 0).text, out->months, note);
 }
 
 fl_status fl_trend_hours(fl_saw *saw, const fl_interval_policy *policy, fl_proposal *out, fl_error *err) {
@@ -150,10 +151,11 @@ fl_status fl_trend_hours(fl_saw *saw, const fl_interval_policy *policy, fl_propo
 	if (status < 0)
 		return status;
 	if (stretch.n < LEAST_INTERVALS + 1)
-		return fl_say(&saw->arena, &out->reason, err,
-		              "fewer than three intervals with a reading of the hour counter at both ends");
+		return fl_trend_say(&saw->arena, &out->reason, err,
+		                    "fewer than three intervals with a reading of the hour counter at both ends");
 	if (isnan(fl_drift_limit(saw)) || isnan(saw->teeth[saw->count - 1].as_left))
-		return fl_say(&saw->arena, &out->reason, err, "there is no tolerance for this, or no as-left to count from");
+		return fl_trend_say(&saw->arena, &out->reason, err,
+		                    "there is no tolerance for this, or no as-left to count from");
 	status = fl_trend_line(stretch.x, stretch.y, stretch.w, stretch.n, &line, err);
 	return status < 0 ? status : propose_hours(saw, &line, policy, out, err);
 }

@@ -119,24 +119,26 @@ static fl_status say_lookback(const fl_record *record, const crossings *c, fl_lo
                               fl_error *err) {
 	const char *engine = "";
 	if (l->has_set_point) {
-		fl_status status = fl_say(
-		    arena, &engine, err,
-		    "; while the controller held %s %s the engine got %s on the day it was crossed and %s at "
-		    "the end",
-		    fl_word_number(l->set_point, 1).text, record->dial_unit, fl_word_number(l->days[2].true_value, 2).text,
-		    fl_word_number(l->days[FL_LOOKBACK_DAYS - 1].true_value, 2).text);
+		fl_status status =
+		    fl_trend_say(arena, &engine, err,
+		                 "; while the controller held %s %s the engine got %s on the day it was crossed and %s at "
+		                 "the end",
+		                 fl_trend_word_number(l->set_point, 1).text, record->dial_unit,
+		                 fl_trend_word_number(l->days[2].true_value, 2).text,
+		                 fl_trend_word_number(l->days[FL_LOOKBACK_DAYS - 1].true_value, 2).text);
 		if (status < 0)
 			return status;
 	}
-	return fl_say(arena, &l->sentence, err,
-	              "found at %s of span with a tolerance of %s %%: by a steady drift the limit was passed about %s (not "
-	              "before %s%s, %s%s)%s; a jump could have come on any day from %s to %s",
-	              fl_word_percent(c->found->error_span, 2).text,
-	              fl_word_number(100.0 * c->found->tolerance_span, 2).text, fl_word_day(l->crossed).text,
-	              fl_word_day(l->earliest).text, l->before_from ? ", when it may have been passed already" : "",
-	              l->latest == FL_NO_DAY ? "perhaps not at all within the uncertainty" : "at the latest ",
-	              l->latest == FL_NO_DAY ? "" : fl_word_day(l->latest).text, engine, fl_word_day(l->from).text,
-	              fl_word_day(l->to).text);
+	return fl_trend_say(
+	    arena, &l->sentence, err,
+	    "found at %s of span with a tolerance of %s %%: by a steady drift the limit was passed about %s (not "
+	    "before %s%s, %s%s)%s; a jump could have come on any day from %s to %s",
+	    fl_trend_word_percent(c->found->error_span, 2).text,
+	    fl_trend_word_number(100.0 * c->found->tolerance_span, 2).text, fl_trend_word_day(l->crossed).text,
+	    fl_trend_word_day(l->earliest).text, l->before_from ? ", when it may have been passed already" : "",
+	    l->latest == FL_NO_DAY ? "perhaps not at all within the uncertainty" : "at the latest ",
+	    l->latest == FL_NO_DAY ? "" : fl_trend_word_day(l->latest).text, engine, fl_trend_word_day(l->from).text,
+	    fl_trend_word_day(l->to).text);
 }
 
 fl_status fl_trend_lookback(const fl_record *before, const fl_record *record, fl_arena *arena, fl_lookback *out,
@@ -147,9 +149,9 @@ fl_status fl_trend_lookback(const fl_record *before, const fl_record *record, fl
 	bool known = first_to_leave(before, record, &c, &l.needed);
 	*out = l;
 	if (!l.needed)
-		return fl_say(arena, &out->sentence, err, "nothing was found out of tolerance");
+		return fl_trend_say(arena, &out->sentence, err, "nothing was found out of tolerance");
 	if (!known || (record->work & FL_WORK_BEFORE))
-		return fl_say(
+		return fl_trend_say(
 		    arena, &out->sentence, err,
 		    "found out of tolerance, and no as-left before it to tell since when: every day since the last good "
 		    "result is in doubt");

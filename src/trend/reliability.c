@@ -72,10 +72,10 @@ fl_status fl_trend_reliability(const fl_trial *trials, size_t n, const fl_interv
 	*out = (fl_proposal){.method = FL_INTERVAL_RELIABILITY, .hours = NAN};
 	size_t in = count_in(trials, n, &mean_years);
 	if (in == 0)
-		return fl_say(arena, &out->reason, err,
-		              n ? "all %zu intervals ended out of tolerance: look at the instruments first"
-		                : "%zu intervals of the fleet are known",
-		              n);
+		return fl_trend_say(arena, &out->reason, err,
+		                    n ? "all %zu intervals ended out of tolerance: look at the instruments first"
+		                      : "%zu intervals of the fleet are known",
+		                    n);
 	fl_status status = fl_trend_failure_rate(trials, n, &rate, err);
 	if (status < 0)
 		return status;
@@ -86,13 +86,13 @@ fl_status fl_trend_reliability(const fl_trial *trials, size_t n, const fl_interv
 	bool held_back = low < policy->target_reliability && months > mean_years * 12.0;
 	out->determined = true;
 	out->months = clamp_months(held_back ? mean_years * 12.0 : months, policy);
-	return fl_say(
+	return fl_trend_say(
 	    arena, &out->reason, err,
 	    "%zu of %zu in tolerance after %s months on average (%s %% to %s %% at %s %% confidence); %s %% would stay "
 	    "in tolerance for %s months%s: %d months",
-	    in, n, fl_word_number(mean_years * 12.0, 1).text, fl_word_number(100.0 * low, 0).text,
-	    fl_word_number(100.0 * high, 0).text, fl_word_number(100.0 * policy->confidence, 0).text,
-	    fl_word_number(100.0 * policy->target_reliability, 0).text, fl_word_number(months, 1).text,
+	    in, n, fl_trend_word_number(mean_years * 12.0, 1).text, fl_trend_word_number(100.0 * low, 0).text,
+	    fl_trend_word_number(100.0 * high, 0).text, fl_trend_word_number(100.0 * policy->confidence, 0).text,
+	    fl_trend_word_number(100.0 * policy->target_reliability, 0).text, fl_trend_word_number(months, 1).text,
 	    held_back ? "; too few to lengthen the interval on" : "", out->months);
 }
 

@@ -7,16 +7,17 @@
 
 #include "foundleft/base.h"
 
-typedef struct fl_word {
+typedef struct fl_trend_word {
 	char text[48];
-} fl_word;
+} fl_trend_word;
 
 /* A fraction of span in percent, with its sign: "+2.54 %". */
-fl_word fl_word_percent(double fraction, int decimals);
+fl_trend_word fl_trend_word_percent(double fraction, int decimals);
 /* Without a sign. */
-fl_word fl_word_number(double value, int decimals);
-fl_word fl_word_day(fl_day day);
+fl_trend_word fl_trend_word_number(double value, int decimals);
+fl_trend_word fl_trend_word_day(fl_day day);
 /* A sentence in the arena; FL_E_MEMORY if it is out. */
-fl_status fl_say(fl_arena *arena, const char **out, fl_error *err, const char *format, ...) FL_PRINTF(4, 5) FL_MUST_USE;
+fl_status fl_trend_say(fl_arena *arena, const char **out, fl_error *err, const char *format, ...)
+    FL_PRINTF(4, 5) FL_MUST_USE;
 
 #endif
