@@ -75,17 +75,58 @@ static double band_at(const work *w, const fl_band *band, double x) {
 	return NAN;
 }
 
+/* The zone that x lies in, ends included, by the same slack as a limit; where two touch, the one with the tighter band
+ * there. NULL for none. */
+static const fl_zone *zone_at(const work *w, double x) {
+	const fl_zone *found = NULL;
+	const double slack = 100.0 * rounding_of_tolerance;
+	for (int i = 0; i < w->result->zone_count; i++) {
+		const fl_zone *zone = &w->result->zones[i];
+		if (!(100.0 * x >= zone->from_pct_span - slack && 100.0 * x <= zone->to_pct_span + slack))
+			continue;
+		if (!found || band_at(w, &zone->band, x) < band_at(w, &found->band, x))
+			found = zone;
+	}
+	return found;
+}
+
 /* ---- points ---- */
 
 static bool tur_too_small(const work *w, const fl_point_result *point) {
-	return point->tur < w->procedure->minimum_tur * (1.0 - rounding_of_tolerance);
+	return point->tur < w->result->minimum_tur * (1.0 - rounding_of_tolerance);
+}
+
+/* Half width of what passes by the rule: for four states, what passes without condition. */
+static double acceptance_of(fl_rule rule, double tolerance, double expanded) {
+	bool guarded = rule == FL_RULE_GUARDED || rule == FL_RULE_FOUR_STATES;
+	return rule == FL_RULE_NONE ? NAN : guarded ? tolerance - expanded : tolerance;
+}
+
+/* JCGM 106:2012 7.4 and, with the prior that the procedure states, 9.5. */
+static void take_risks(const work *w, fl_point_result *point) {
+	const fl_result *result = w->result;
+	double T = point->tolerance_span, A = acceptance_of(result->rule, T, point->sum.expanded), uc = point->sum.uc;
+	point->acceptance_span = A;
+	if (isnan(T) || isnan(uc))
+		return;
+	point->risk = 1.0 - fl_numeric_conformance(point->error_span, uc, (fl_interval){-T, T});
+	if (!(result->reliability > 0.0) || !(A > 0.0))
+		return;
+	fl_reliability kind = result->reliability_observed ? FL_RELIABILITY_OBSERVED : FL_RELIABILITY_TRUE;
+	point->prior_u_span = fl_numeric_prior_u(T, result->reliability, uc, kind);
+	point->has_global =
+	    point->prior_u_span > 0.0 && fl_numeric_global_risk(0.0, point->prior_u_span, uc, (fl_interval){-T, T},
+	                                                        (fl_interval){-A, A}, &point->global, NULL) >= 0;
 }
 
 static void decide_point(const work *w, fl_point_result *point) {
-	point->tolerance_span = band_at(w, &w->result->tolerance, point->x);
+	point->zone = zone_at(w, point->x);
+	point->tolerance_span = band_at(w, point->zone ? &point->zone->band : &w->result->tolerance, point->x);
 	point->tur = point->tolerance_span / point->sum.expanded;
+	point->risk = point->acceptance_span = point->prior_u_span = NAN;
+	take_risks(w, point);
 	point->verdict = fl_analysis_decide(w->result->rule, point->error_span, point->sum.expanded, point->tolerance_span);
-	if (tur_too_small(w, point))
+	if (tur_too_small(w, point) && !w->procedure->states_below_tur)
 		point->verdict = FL_VERDICT_NONE;
 }
 
@@ -168,12 +209,25 @@ static const char *reason_of_worst(const work *w, const fl_point_result *worst) 
 	                       rule_name(w->result->rule));
 }
 
+/* In writing, because a reader would otherwise take the verdict for more than it is. */
+static void state_below_tur(work *w, const fl_run_result *run, const fl_point_result *point) {
+	const char *words = fl_arena_printf(
+	    w->arena,
+	    "%s run: conformity is stated although the tolerance at %s is only %s times the expanded uncertainty and %s is "
+	    "the least otherwise: the procedure says so. The risk of a wrong decision is accordingly larger",
+	    fl_run_word(run->kind), fl_analysis_point_name(w, point), fl_analysis_number(w->arena, point->tur, 3),
+	    fl_analysis_number(w->arena, w->result->minimum_tur, 3));
+	if (!w->result->below_tur)
+		w->result->below_tur = words;
+	fl_analysis_say(w->arena, &w->warnings, "%s", words ? words : "?");
+}
+
 static void withhold(const work *w, fl_run_result *run, const fl_point_result *point) {
 	run->verdict = FL_VERDICT_NONE;
 	run->verdict_reason = fl_arena_printf(
 	    w->arena, "no verdict: at %s the tolerance is %s times the expanded uncertainty, and the procedure asks for %s",
 	    fl_analysis_point_name(w, point), fl_analysis_number(w->arena, point->tur, 3),
-	    fl_analysis_number(w->arena, w->procedure->minimum_tur, 3));
+	    fl_analysis_number(w->arena, w->result->minimum_tur, 3));
 }
 
 /* A point of which nothing is known about the uncertainty; NULL if there is none. */
@@ -184,7 +238,7 @@ static const fl_point_result *point_without_uncertainty(const fl_run_result *run
 	return NULL;
 }
 
-static void decide_run(const work *w, fl_run_result *run) {
+static void decide_run(work *w, fl_run_result *run) {
 	run->worst = find_worst(run);
 	const fl_point_result *weakest = weakest_point(run), *unknown = point_without_uncertainty(run);
 	if (w->result->rule == FL_RULE_NONE) {
@@ -194,17 +248,20 @@ static void decide_run(const work *w, fl_run_result *run) {
 	} else if (unknown) {
 		run->verdict_reason = fl_arena_printf(w->arena, "no verdict: nothing is known of the uncertainty at %s",
 		                                      fl_analysis_point_name(w, unknown));
-	} else if (weakest && tur_too_small(w, weakest)) {
+	} else if (weakest && tur_too_small(w, weakest) && !w->procedure->states_below_tur) {
 		withhold(w, run, weakest);
 	} else if (!run->worst || run->worst->verdict == FL_VERDICT_NONE) {
 		run->verdict_reason = "no verdict: the tolerance says nothing at any of the points";
 	} else {
 		run->verdict = run->worst->verdict;
 		run->verdict_reason = reason_of_worst(w, run->worst);
+		if (weakest && tur_too_small(w, weakest))
+			state_below_tur(w, run, weakest);
 	}
 }
 
-/* True if every point lies inside the adjust limit; false where none is stated. */
+/* True if every point lies inside the adjust limit, and inside a zone's tolerance where that is tighter; false where no
+ * limit is stated. */
 static bool inside_adjust_limit(const work *w, const fl_run_result *run) {
 	const fl_band *own = &w->reference.instrument->adjust_limit;
 	bool aside = w->procedure->sets_limits_aside || own->basis == FL_BAND_NONE;
@@ -215,6 +272,8 @@ static bool inside_adjust_limit(const work *w, const fl_run_result *run) {
 		if (isnan(half_width))
 			continue;
 		any = true;
+		if (run->points[i].zone)
+			half_width = fmin(half_width, run->points[i].tolerance_span);
 		if (fl_analysis_decide(FL_RULE_SIMPLE, run->points[i].error_span, 0.0, half_width) == FL_VERDICT_FAIL)
 			return false;
 	}

@@ -33,6 +33,18 @@ static void take_terms(work *w) {
 	bool own = !procedure->sets_limits_aside;
 	result->tolerance_from_instrument = own && instrument->tolerance.basis != FL_BAND_NONE;
 	result->tolerance = result->tolerance_from_instrument ? instrument->tolerance : procedure->tolerance;
+	result->zones = result->tolerance_from_instrument ? instrument->zones : procedure->zones;
+	result->zone_count = result->tolerance_from_instrument ? instrument->zone_count : procedure->zone_count;
+	result->minimum_tur = procedure->minimum_tur;
+	result->reliability = procedure->reliability;
+	result->reliability_observed = procedure->reliability_observed;
+	if (procedure->reliability > 0.0)
+		result->prior_words = fl_arena_printf(w->arena,
+		                                      "Before the calibration, errors of such instruments are taken as normal "
+		                                      "about zero, with %s %% of the %s in "
+		                                      "tolerance",
+		                                      fl_analysis_number(w->arena, 100.0 * procedure->reliability, 4),
+		                                      procedure->reliability_observed ? "values as observed" : "true values");
 	double hysteresis = own ? instrument->hysteresis_limit_pct_span : NAN;
 	result->hysteresis_limit_span = (isnan(hysteresis) ? procedure->hysteresis_limit_pct_span : hysteresis) / 100.0;
 	result->linearity_limit_span = procedure->linearity_limit_pct_span / 100.0;
