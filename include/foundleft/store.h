@@ -233,6 +233,13 @@ typedef fl_status fl_record_visit(void *self, const fl_record *record, const cha
                                   fl_error *err);
 fl_status fl_store_each(fl_store *store, bool with_journal, fl_record_visit *visit, void *self,
                         const fl_store_watch *watch, fl_error *err) FL_MUST_USE;
+/* A share of the entries, so that several handles of one book divide the work: every `parts`-th, from `index`. */
+typedef struct fl_store_part {
+	int index, parts;
+	uint64_t place; /* set before each visit: place of the entry among all, from 1 */
+} fl_store_part;
+fl_status fl_store_each_of(fl_store *store, fl_store_part *part, bool with_journal, fl_record_visit *visit, void *self,
+                           const fl_store_watch *watch, fl_error *err) FL_MUST_USE;
 
 /* ---- verifying -------------------------------------------------------------------------------------------------- */
 

@@ -259,7 +259,14 @@ static fl_status visit_row(fl_store *store, sqlite3_stmt *statement, bool with_j
 typedef struct progress {
 	const fl_store_watch *watch;
 	uint64_t done, total;
+	fl_store_part *part;
 } progress;
+
+/* Is the entry after those done one of this share? */
+static bool is_mine(progress *p) {
+	p->part->place = p->done + 1;
+	return p->done % (uint64_t)p->part->parts == (uint64_t)p->part->index;
+}
 
 static fl_status go_on(progress *p, fl_error *err) {
 	p->done++;
@@ -279,7 +286,8 @@ static fl_status visit_chain(fl_store *store, int64_t origin_row, bool with_jour
 		status = fl_sql_step(store, statement, &row, err);
 		if (status < 0 || !row)
 			break;
-		status = visit_row(store, statement, with_journal, visit, self, err);
+		if (is_mine(p))
+			status = visit_row(store, statement, with_journal, visit, self, err);
 		if (status == FL_OK)
 			status = go_on(p, err);
 	}
@@ -287,14 +295,14 @@ static fl_status visit_chain(fl_store *store, int64_t origin_row, bool with_jour
 	return status;
 }
 
-fl_status fl_store_each(fl_store *store, bool with_journal, fl_record_visit *visit, void *self,
-                        const fl_store_watch *watch, fl_error *err) {
+fl_status fl_store_each_of(fl_store *store, fl_store_part *part, bool with_journal, fl_record_visit *visit, void *self,
+                           const fl_store_watch *watch, fl_error *err) {
 	sqlite3_stmt *statement = NULL;
 	int64_t total = 0;
 	fl_status status = fl_sql_number(store, SQL_COUNT_ENTRIES, &total, 0, err, "");
 	if (status >= 0)
 		status = fl_sql(store, SQL_ORIGINS, &statement, err);
-	progress p = {watch, 0, (uint64_t)total};
+	progress p = {watch, 0, (uint64_t)total, part};
 	for (bool row = true; status == FL_OK;) {
 		status = fl_sql_step(store, statement, &row, err);
 		if (status < 0 || !row)
@@ -304,4 +312,10 @@ fl_status fl_store_each(fl_store *store, bool with_journal, fl_record_visit *vis
 	if (statement)
 		sqlite3_reset(statement);
 	return status;
+}
+
+fl_status fl_store_each(fl_store *store, bool with_journal, fl_record_visit *visit, void *self,
+                        const fl_store_watch *watch, fl_error *err) {
+	fl_store_part all = {.index = 0, .parts = 1};
+	return fl_store_each_of(store, &all, with_journal, visit, self, watch, err);
 }
