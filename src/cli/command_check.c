@@ -46,8 +46,8 @@ static void print_wrapped(const fl_findings *found, const char *lead, const char
 
 static void print_line(const fl_findings *found, fl_check_mark mark, const char *what, const char *sentence) {
 	static const char *const leads[] = {"  good  ", "  note  ", "  BAD   ", "  OPEN  "};
-	char text[400];
-	snprintf(text, sizeof text, "%s: %s", what, sentence);
+	char text[700];
+	snprintf(text, sizeof text, "%.60s: %.600s", what, sentence);
 	print_wrapped(found, leads[mark], text);
 }
 
