@@ -66,6 +66,7 @@ static void write_work(fl_writing *w, fl_block *grid) {
 	fl_sheet_pair(sheet, grid, 2, "Place", place ? place : "not stated");
 	fl_sheet_pair(sheet, grid, 2, "Calibrated", fl_word_day(sheet, w->session->day));
 	fl_sheet_pair(sheet, grid, 2, "Issued", fl_word_day(sheet, w->issue->issued_on));
+	fl_sheet_pair(sheet, grid, 2, "Amends", w->issue->amends);
 	fl_sheet_pairf(sheet, grid, 2, "Procedure", "%s, version %s", w->procedure->id, w->procedure->version);
 	fl_sheet_pair(sheet, grid, 2, "Present", fl_writing_setting(w, "others"));
 }
