@@ -34,6 +34,7 @@ typedef enum fl_step_kind {
 	FL_STEP_CLOSE_RUN,  /* lock the run */
 	FL_STEP_DECISION,   /* adjust, leave, repair */
 	FL_STEP_ADJUSTMENT, /* values before and after */
+	FL_STEP_CHECK,      /* a function check */
 	FL_STEP_RESTORE,    /* restoring the loop */
 	FL_STEP_REMARKS,
 	FL_STEP_CLOSE,
@@ -44,6 +45,7 @@ typedef struct fl_step {
 	fl_step_kind kind;
 	const char *id;              /* setting, gate or restoring step */
 	const fl_question *question; /* where the procedure asks; else NULL */
+	const fl_function_check *check;
 	fl_role role;
 	fl_run_kind run;
 	int cycle;
@@ -58,6 +60,24 @@ fl_step fl_entry_step(const fl_session *session, const fl_procedure *procedure);
 
 typedef fl_utc (*fl_clock)(void *context);
 
+/* What is said at the decision, when the as-found run is locked. The conversation knows nothing of causes: who drives
+ * it computes the result and the opinion, so that nothing can be shown before its time, and the words are the same as
+ * in the assessment. */
+typedef struct fl_advice_question {
+	const char *id; /* of the finding: the answer stands under it in the journal */
+	const char *ask;
+} fl_advice_question;
+
+typedef struct fl_advice {
+	fl_arena arena;                      /* holds it all; freed by the conversation */
+	const char *text;                    /* shown before the decision is asked for */
+	const fl_advice_question *questions; /* answered yes or no with a reason before anything is decided */
+	size_t question_count;
+	const char *refuses_adjust; /* why there is no adjustment now; NULL */
+	const char *against_adjust; /* why it is advised against: asked back; NULL */
+} fl_advice;
+typedef fl_status (*fl_adviser)(void *context, const fl_session *session, fl_advice *out, fl_error *err);
+
 typedef struct fl_entry fl_entry;
 
 /* Who drives the conversation and with what. Everything is borrowed and must outlive the entry. */
@@ -69,6 +89,8 @@ typedef struct fl_entry_setup {
 	fl_clock clock;
 	void *clock_context;
 	int utc_offset_min; /* for times shown to people */
+	fl_adviser advise;  /* NULL: nothing is shown before the decision */
+	void *advise_context;
 } fl_entry_setup;
 
 fl_status fl_entry_new(fl_entry **out, const fl_entry_setup *setup, fl_error *err) FL_MUST_USE;
@@ -78,8 +100,8 @@ void fl_entry_free(fl_entry *entry);
  * question in one line, ending in "> ". Never shows the expected output of a reading that is not committed. */
 void fl_entry_prompt(fl_entry *entry, fl_text *out);
 /* Feeds one line (without newline). What the program answers is appended to `say`. FL_OK: taken, or asked back, or a
- * command (?, undo, strike, watch, remark, list, stop). A refused line gives the status and `err` and changes nothing;
- * the conversation goes on. Only FL_E_IO, FL_E_DISK_FULL, FL_E_READ_ONLY and FL_E_MEMORY end it. */
+ * command (?, undo, strike, watch, remark, list, measure, why, stop). A refused line gives the status and `err` and
+ * changes nothing; the conversation goes on. Only FL_E_IO, FL_E_DISK_FULL, FL_E_READ_ONLY and FL_E_MEMORY end it. */
 fl_status fl_entry_line(fl_entry *entry, const char *line, fl_text *say, fl_error *err) FL_MUST_USE;
 /* True when the session is closed, or the person said `stop`. */
 bool fl_entry_finished(const fl_entry *entry);

@@ -72,4 +72,34 @@ typedef struct fl_reading_result {
 fl_status fl_reference_reading(const fl_reference *reference, const fl_oil *oil, const fl_reading *reading,
                                fl_reading_result *out, fl_error *err) FL_MUST_USE;
 
+/* ---- function checks ---- */
+
+typedef enum fl_function_state {
+	FL_FUNCTION_NOT_TRIED,
+	FL_FUNCTION_IN_ORDER,
+	FL_FUNCTION_NOT_IN_ORDER,
+	FL_FUNCTION_NOT_JUDGED /* found, but the instrument's record states nothing to hold it against */
+} fl_function_state;
+const char *fl_function_word(fl_function_state state); /* "not tried", "in order", "not in order", "not judged" */
+
+/* One function check held against what is expected. Limits are inclusive. */
+typedef struct fl_function_result {
+	const fl_function_check *check;
+	const fl_check_answer *answer; /* NULL where nothing is recorded */
+	fl_function_state state;
+	double found, expected, low, high; /* amount: in the check's unit; indication: dial units. NAN where none */
+	double found_x, expected_x;        /* indication: place on the scale; NAN else */
+	bool has_true;                     /* the viscosity that the indication stands for: filled in by the analysis */
+	double true_value, true_u, true_U; /* dial units; U at the procedure's coverage probability */
+	double true_low, true_high;        /* the interval; not symmetric on a dial in seconds */
+} fl_function_result;
+
+/* Place of a dial value on the scale, NAN where the dial has none; and the dial value of an indication given in the
+ * dial's or the output's unit (through the ideal scale), NAN for another quantity. */
+double fl_reference_x_of_dial(const fl_scale *scale, double dial);
+double fl_reference_dial_of(const fl_scale *scale, double value, fl_unit unit);
+/* `answer` may be NULL. */
+void fl_reference_function(const fl_instrument *instrument, const fl_function_check *check,
+                           const fl_check_answer *answer, fl_function_result *out);
+
 #endif

@@ -308,20 +308,6 @@ static fl_status answer_close_run(fl_entry *entry, const fl_step *step, const ch
 /* ---- decision, adjustment, end
  * -------------------------------------------------------------------------------------------------- */
 
-static fl_status answer_decision(fl_entry *entry, const char *line, fl_error *err) {
-	static const struct {
-		const char *word;
-		fl_decision decision;
-	} words[] = {{"adjust", FL_DECISION_ADJUST}, {"leave", FL_DECISION_LEAVE}, {"repair", FL_DECISION_REPAIR}};
-	for (size_t i = 0; i < sizeof words / sizeof words[0]; i++)
-		if (strcasecmp(line, words[i].word) == 0) {
-			fl_entry_form_open(entry, FL_FORM_DECISION);
-			entry->form.decision = words[i].decision;
-			return FL_OK;
-		}
-	return fl_fail(err, FL_E_VALUE, "answer adjust, leave or repair");
-}
-
 static fl_status answer_adjustment(fl_entry *entry, const char *line, fl_error *err) {
 	if (strcasecmp(line, "done") == 0) {
 		fl_event event = {.verb = FL_V_RUN, .fields[FL_F_RUN] = "as-left"};
@@ -373,7 +359,9 @@ fl_status fl_entry_answer(fl_entry *entry, const char *line, fl_text *say, fl_er
 	case FL_STEP_CLOSE_RUN:
 		return answer_close_run(entry, &step, line, say, err);
 	case FL_STEP_DECISION:
-		return answer_decision(entry, line, err);
+		return fl_entry_decide(entry, line, say, err);
+	case FL_STEP_CHECK:
+		return fl_entry_answer_check(entry, &step, line, say, err);
 	case FL_STEP_ADJUSTMENT:
 		return answer_adjustment(entry, line, err);
 	case FL_STEP_REMARKS:

@@ -31,6 +31,10 @@ static fl_status keep_text(fl_entry *entry, const char *kind, const char *name, 
 	return fl_entry_commit(entry, &event, err);
 }
 
+fl_status fl_entry_keep_equipment(fl_entry *entry, const fl_equipment *item, fl_error *err) {
+	return keep_text(entry, "equipment", item->id, item->text, err);
+}
+
 /* Before the item is named, so that no power cut can leave an item out of date unmarked. */
 fl_status fl_entry_indicative(fl_entry *entry, const char *item, const char *reason, const char *by, fl_error *err) {
 	for (size_t i = 0; i < entry->session->indicative_count; i++)

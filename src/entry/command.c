@@ -33,9 +33,14 @@ static const char *step_help(const fl_step *step) {
 		return "Look at the run with list; strike what is wrong, with its reason. Then type close: it is locked.";
 	case FL_STEP_DECISION:
 		return "adjust: screws or parameters are turned, and an as-left run follows. leave: inside the adjust limit,\n"
-		       "  as-left = as-found. repair: what cannot or must not be adjusted away.";
+		       "  as-left = as-found. repair: what cannot or must not be adjusted away.\n"
+		       "  measure tells causes apart that the readings cannot: measure alone shows what there is. why shows "
+		       "the\n"
+		       "  findings again.";
 	case FL_STEP_ADJUSTMENT:
 		return "One at a time: what it was, its value before, its value after. At least one, then done.";
+	case FL_STEP_CHECK:
+		return "Type what was found. An empty line leaves the check out; the reason is asked then.";
 	case FL_STEP_RESTORE:
 		return "The loop goes back into service step by step. What is not done stays visible on the certificate.";
 	case FL_STEP_REMARKS:
@@ -55,7 +60,8 @@ static fl_status help(fl_entry *entry, const char *rest, fl_text *say, fl_error 
 	fl_text_printf(say,
 	               "  %s\n"
 	               "  At any prompt: ? this help; undo takes the last entry back; strike N sets reading N aside; "
-	               "watch VALUE (or w) notes an output that settles; remark TEXT; list shows the run; stop leaves.\n",
+	               "watch VALUE (or w) notes an output that settles; remark TEXT; list shows the run; measure notes an "
+	               "extra measurement once as-found is locked; stop leaves.\n",
 	               step_help(&step));
 	return FL_OK;
 }
@@ -86,6 +92,17 @@ static const char *describe(const fl_session *s, int sequence, char *out, size_t
 	for (size_t i = 0; i < s->point_count; i++)
 		if (s->points[i].sequence == sequence)
 			snprintf(out, size, "oil of point %zu: %s (%s)", i + 1, s->points[i].oil, s->points[i].lot);
+	for (size_t i = 0; i < s->measurement_count; i++)
+		if (s->measurements[i].sequence == sequence)
+			snprintf(out, size, "the extra measurement [%d]: %s %.60s %s", sequence,
+			         fl_measure_word(s->measurements[i].what), s->measurements[i].typed,
+			         fl_unit_text(s->measurements[i].unit));
+	for (size_t i = 0; i < s->finding_count; i++)
+		if (s->findings[i].sequence == sequence)
+			snprintf(out, size, "the answer to %.80s: %s", s->findings[i].id, s->findings[i].yes ? "yes" : "no");
+	for (size_t i = 0; i < s->check_count; i++)
+		if (s->checks[i].sequence == sequence)
+			snprintf(out, size, "the function check %.80s", s->checks[i].id);
 	for (size_t i = 0; i < s->equipment_count; i++)
 		if (s->equipment[i].sequence == sequence)
 			snprintf(out, size, "%s: %s", fl_stock_role_text(s->equipment[i].role), s->equipment[i].id);
@@ -183,6 +200,15 @@ static fl_status list(fl_entry *entry, const char *rest, fl_text *say, fl_error 
 	return FL_OK;
 }
 
+static fl_status measure(fl_entry *entry, const char *rest, fl_text *say, fl_error *err) {
+	return fl_entry_measure(entry, rest, say, err);
+}
+
+static fl_status why(fl_entry *entry, const char *rest, fl_text *say, fl_error *err) {
+	(void)rest;
+	return fl_entry_why(entry, say, err);
+}
+
 static fl_status stop(fl_entry *entry, const char *rest, fl_text *say, fl_error *err) {
 	(void)rest;
 	(void)err;
@@ -201,7 +227,8 @@ static const struct {
 } commands[] = {
     {"?", ALONE, true, help},         {"stop", ALONE, true, stop},          {"list", ALONE, true, list},
     {"undo", WITH_TEXT, false, undo}, {"strike", WITH_TEXT, false, strike}, {"watch", WITH_TEXT, false, watch},
-    {"w", WITH_TEXT, false, watch},   {"remark", WITH_TEXT, false, remark},
+    {"w", WITH_TEXT, false, watch},   {"remark", WITH_TEXT, false, remark}, {"measure", WITH_TEXT, false, measure},
+    {"why", ALONE, false, why},
 };
 
 bool fl_entry_command(fl_entry *entry, const char *line, fl_text *say, fl_status *status, fl_error *err) {

@@ -28,8 +28,10 @@ fl_status fl_entry_new(fl_entry **out, const fl_entry_setup *setup, fl_error *er
 }
 
 void fl_entry_free(fl_entry *entry) {
-	if (entry)
+	if (entry) {
 		fl_stock_free(&entry->used);
+		fl_arena_free(&entry->advice.arena);
+	}
 	free(entry);
 }
 

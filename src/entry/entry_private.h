@@ -32,6 +32,11 @@ typedef enum fl_form_kind {
 	FL_FORM_TEMPERATURE, /* of the draft */
 	FL_FORM_APPLIED,     /* pressure of the draft */
 	FL_FORM_READING,     /* a question about the draft: yes or no */
+	FL_FORM_MEASURE,     /* an unusual extra measurement: yes or no */
+	FL_FORM_AGAINST,     /* adjusting is advised against: yes or no */
+	FL_FORM_FINDING,     /* reason of the answer to a finding */
+	FL_FORM_UNTRIED,     /* why a function check was not tried */
+	FL_FORM_CHECK,       /* an unusual amount of a function check: yes or no */
 	FL_FORM_COUNT
 } fl_form_kind;
 
@@ -68,6 +73,14 @@ typedef struct fl_draft {
 	fl_doubt doubt;     /* the one that is being asked */
 } fl_draft;
 
+/* An extra measurement under way. */
+typedef struct fl_measure_draft {
+	fl_measure what;
+	fl_decimal numbers[2]; /* the main one, then what goes with it */
+	fl_unit units[2];
+	char equipment[64]; /* id; "" for none named */
+} fl_measure_draft;
+
 struct fl_entry {
 	fl_entry_setup setup;
 	fl_journal *journal;
@@ -78,6 +91,10 @@ struct fl_entry {
 	long shown_place; /* the place on the plan likewise */
 	fl_form form;
 	fl_draft draft;
+	fl_measure_draft measure;
+	fl_advice advice; /* as last computed */
+	bool advised, advice_shown;
+	long advice_age; /* what it was computed from: grows with each measurement and each answer */
 };
 
 /* ---- step.c
@@ -191,11 +208,34 @@ fl_status fl_entry_assign_oil(fl_entry *entry, int point, const fl_oil *oil, fl_
 fl_status fl_entry_indicative(fl_entry *entry, const char *item, const char *reason, const char *by,
                               fl_error *err) FL_MUST_USE;
 fl_status fl_entry_set(fl_entry *entry, const char *id, const char *typed, fl_error *err) FL_MUST_USE;
+/* Keeps the text of measuring equipment in the journal, so that it may be named. */
+fl_status fl_entry_keep_equipment(fl_entry *entry, const fl_equipment *item, fl_error *err) FL_MUST_USE;
 /* For a pressure procedure: points without oil. */
 fl_status fl_entry_plain_points(fl_entry *entry, fl_error *err) FL_MUST_USE;
 /* The lot that is proposed for a point; NULL if none fits. */
 const fl_oil *fl_entry_propose_oil(const fl_entry *entry, int point);
 const fl_equipment *fl_entry_propose_equipment(const fl_entry *entry, fl_role role);
+/* ---- measure.c, advice.c, check.c ------------------------------------------------------------------------------- */
+
+/* "injection 150 mbar 11.66 mA with DP-2": reads it, asks back what is unusual, commits. */
+fl_status fl_entry_measure(fl_entry *entry, const char *rest, fl_text *say, fl_error *err) FL_MUST_USE;
+fl_status fl_entry_measure_commit(fl_entry *entry, fl_text *say, fl_error *err) FL_MUST_USE;
+/* The advice as it stands, computed if need be; NULL where there is nobody to give it, or it failed. */
+const fl_advice *fl_entry_advice(fl_entry *entry);
+/* The first question of the advice that is not answered yet; NULL if none. */
+const fl_advice_question *fl_entry_open_question(fl_entry *entry);
+/* Shows the advice at the decision, once for each time that it changed. */
+void fl_entry_show_advice(fl_entry *entry, fl_text *out);
+/* The command that shows it again. */
+fl_status fl_entry_why(fl_entry *entry, fl_text *say, fl_error *err) FL_MUST_USE;
+fl_status fl_entry_decide(fl_entry *entry, const char *line, fl_text *say, fl_error *err) FL_MUST_USE;
+void fl_entry_ask_check(const fl_entry *entry, const fl_function_check *check, fl_text *out);
+fl_status fl_entry_answer_check(fl_entry *entry, const fl_step *step, const char *line, fl_text *say,
+                                fl_error *err) FL_MUST_USE;
+/* Commits what the form holds: the amount that was asked back, or the reason for not trying. */
+fl_status fl_entry_check_amount(fl_entry *entry, fl_text *say, fl_error *err) FL_MUST_USE;
+fl_status fl_entry_check_untried(fl_entry *entry, fl_text *say, fl_error *err) FL_MUST_USE;
+
 /* True if the line was a command; *status says how it went. */
 bool fl_entry_command(fl_entry *entry, const char *line, fl_text *say, fl_status *status, fl_error *err);
 /* The name of a point: "LK-10 (2511B)", "20 % of span", "stopped zero". */

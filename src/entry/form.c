@@ -22,6 +22,8 @@ static const struct {
     [FL_FORM_MISSING] = {{"Why is as-found not available (empty: ask again)", NULL}, {"a reason", NULL}, true},
     [FL_FORM_DECISION] = {{"Reason (empty: decide again)", NULL}, {"a reason", NULL}, true},
     [FL_FORM_ADJUST] = {{"Value before", "Value after"}, {"the value before", "the value after"}, false},
+    [FL_FORM_FINDING] = {{"Reason (empty: answer again)", NULL}, {"a reason", NULL}, true},
+    [FL_FORM_UNTRIED] = {{"Why is it not tried (empty: answer it)", NULL}, {"a reason", NULL}, true},
     [FL_FORM_TEMPERATURE] = {{"Temperature of the oil, °C (empty: type the reading again)", NULL}, {NULL, NULL}, true},
     [FL_FORM_APPLIED] = {{"Pressure applied (empty: type the reading again)", NULL}, {NULL, NULL}, true},
 };
@@ -93,6 +95,20 @@ static fl_status finish_decision(fl_entry *entry, fl_text *say, fl_error *err) {
 	return FL_OK;
 }
 
+static fl_status finish_finding(fl_entry *entry, fl_text *say, fl_error *err) {
+	bool yes = entry->form.target == 1;
+	fl_event event = {.verb = FL_V_FINDING,
+	                  .fields[FL_F_ID] = entry->form.item,
+	                  .fields[FL_F_ANSWER] = yes ? "yes" : "no",
+	                  .fields[FL_F_REASON] = entry->form.answers[0],
+	                  .fields[FL_F_BY] = fl_entry_performer(entry)};
+	fl_status status = fl_entry_commit(entry, &event, err);
+	if (status >= 0)
+		fl_text_add(say, yes ? "  Noted. The data stay as entered, and nothing is adjusted on them.\n"
+		                     : "  Noted. The data stand as entered.\n");
+	return status;
+}
+
 static fl_status finish_adjust(fl_entry *entry, fl_error *err) {
 	fl_event event = {.verb = FL_V_ADJUST,
 	                  .fields[FL_F_ITEM] = entry->form.item,
@@ -117,6 +133,10 @@ static fl_status finish(fl_entry *entry, fl_text *say, fl_error *err) {
 		return finish_decision(entry, say, err);
 	case FL_FORM_ADJUST:
 		return finish_adjust(entry, err);
+	case FL_FORM_FINDING:
+		return finish_finding(entry, say, err);
+	case FL_FORM_UNTRIED:
+		return fl_entry_check_untried(entry, say, err);
 	default:
 		return fl_fail(err, FL_E_INTERNAL, "a form without an end");
 	}
@@ -161,6 +181,39 @@ static fl_status answer_doubt(fl_entry *entry, const char *line, fl_text *say, f
 	return status;
 }
 
+/* Adjusting against the advice goes on to its reason, and the record says that it was asked. */
+static fl_status confirm_against(fl_entry *entry, fl_error *err) {
+	fl_event question = {.verb = FL_V_QUESTION,
+	                     .fields[FL_F_ABOUT] = "adjusting although it was advised against",
+	                     .fields[FL_F_ANSWER] = "yes"};
+	fl_status status = fl_entry_commit(entry, &question, err);
+	fl_entry_form_open(entry, FL_FORM_DECISION);
+	entry->form.decision = FL_DECISION_ADJUST;
+	return status;
+}
+
+static fl_status answer_unusual(fl_entry *entry, const char *line, fl_text *say, fl_error *err) {
+	int yes = fl_entry_yes(line);
+	fl_form_kind kind = entry->form.kind;
+	if (yes < 0)
+		return fl_fail(err, FL_E_VALUE, "answer yes or no");
+	if (!yes) {
+		fl_entry_form_open(entry, FL_FORM_NONE);
+		fl_text_add(say, "  Not recorded.\n");
+		return FL_OK;
+	}
+	if (kind == FL_FORM_AGAINST)
+		return confirm_against(entry, err);
+	fl_event question = {
+	    .verb = FL_V_QUESTION, .fields[FL_F_ABOUT] = entry->form.answers[1], .fields[FL_F_ANSWER] = "yes"};
+	fl_status status = fl_entry_commit(entry, &question, err);
+	if (status >= 0)
+		status =
+		    kind == FL_FORM_MEASURE ? fl_entry_measure_commit(entry, say, err) : fl_entry_check_amount(entry, say, err);
+	fl_entry_form_open(entry, FL_FORM_NONE);
+	return status;
+}
+
 static fl_status answer_draft(fl_entry *entry, const char *line, fl_text *say, fl_error *err) {
 	fl_error inner = {0};
 	fl_status status = entry->form.kind == FL_FORM_TEMPERATURE ? fl_entry_draft_temperature(entry, line, &inner)
@@ -184,6 +237,8 @@ fl_status fl_entry_form_answer(fl_entry *entry, const char *line, fl_text *say, 
 	}
 	if (form->kind == FL_FORM_READING || form->kind == FL_FORM_AMOUNT)
 		return answer_doubt(entry, line, say, err);
+	if (form->kind == FL_FORM_MEASURE || form->kind == FL_FORM_AGAINST || form->kind == FL_FORM_CHECK)
+		return answer_unusual(entry, line, say, err);
 	if (form->kind == FL_FORM_TEMPERATURE || form->kind == FL_FORM_APPLIED)
 		return answer_draft(entry, line, say, err);
 	fl_status status = fl_entry_check_text(line, FL_PROSE_POINTS, true, forms[form->kind].what[form->slot], err);

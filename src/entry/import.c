@@ -363,6 +363,11 @@ static fl_status import_gate(fl_entry *entry, const fl_step *step, fl_error *err
 	return fl_entry_commit(entry, &event, err);
 }
 
+static fl_status import_check(fl_entry *entry, const fl_step *step, fl_error *err) {
+	fl_event event = {.verb = FL_V_CHECK, .fields[FL_F_ID] = step->id, .fields[FL_F_REASON] = not_recorded};
+	return fl_entry_commit(entry, &event, err);
+}
+
 static fl_status import_as_found(fl_entry *entry, const table *t, fl_error *err) {
 	if (first_row(t, FL_RUN_AS_FOUND)) {
 		fl_event event = {.verb = FL_V_RUN, .fields[FL_F_RUN] = "as-found"};
@@ -415,6 +420,8 @@ static fl_status import_step(fl_entry *entry, const table *t, const fl_step *ste
 	case FL_STEP_GATE:
 	case FL_STEP_RESTORE:
 		return import_gate(entry, step, err);
+	case FL_STEP_CHECK:
+		return import_check(entry, step, err);
 	case FL_STEP_AS_FOUND:
 		return import_as_found(entry, t, err);
 	case FL_STEP_READING:

@@ -22,14 +22,16 @@ typedef enum part {
 	PART_DECISION,
 	PART_ADJUSTMENT,
 	PART_AS_LEFT,
+	PART_CHECKS,
 	PART_RESTORE,
 	PART_END,
 	PART_COUNT
 } part;
 
 static const char *const part_titles[PART_COUNT] = {
-    "Identification", "People",   "Measuring equipment", "Reference oils", "Permit and safety",  "Conditions",
-    "As-found run",   "Decision", "Adjustment",          "As-left run",    "Restoring the loop", "Remarks and end",
+    "Identification",  "People",   "Measuring equipment", "Reference oils", "Permit and safety", "Conditions",
+    "As-found run",    "Decision", "Adjustment",          "As-left run",    "Function checks",   "Restoring the loop",
+    "Remarks and end",
 };
 
 static part part_of(const fl_step *step) {
@@ -51,6 +53,8 @@ static part part_of(const fl_step *step) {
 		return PART_DECISION;
 	case FL_STEP_ADJUSTMENT:
 		return PART_ADJUSTMENT;
+	case FL_STEP_CHECK:
+		return PART_CHECKS;
 	case FL_STEP_RESTORE:
 		return PART_RESTORE;
 	case FL_STEP_REMARKS:
@@ -63,7 +67,8 @@ static part part_of(const fl_step *step) {
 
 static bool has_part(const fl_procedure *p, part which) {
 	return !((which == PART_OILS && p->medium != FL_MEDIUM_OIL) || (which == PART_SAFETY && p->gate_count == 0) ||
-	         (which == PART_CONDITIONS && p->condition_count == 0) || (which == PART_RESTORE && p->restore_count == 0));
+	         (which == PART_CONDITIONS && p->condition_count == 0) || (which == PART_CHECKS && p->check_count == 0) ||
+	         (which == PART_RESTORE && p->restore_count == 0));
 }
 
 static void show_instrument(const fl_entry *entry, fl_text *out) {
@@ -91,6 +96,10 @@ static void show_part_note(const fl_entry *entry, part which, fl_text *out) {
 		fl_text_add(out, "  Nothing is touched or adjusted before this run is closed.\n");
 	if (which == PART_ADJUSTMENT)
 		fl_text_add(out, "  Note every screw and parameter with its value before and after.\n");
+	if (which == PART_CHECKS)
+		fl_text_add(out,
+		            "  Alarms can trip the engine or the heater: tell the watch before each. What is not tried stays "
+		            "visible, with its reason.\n");
 	if (which == PART_AS_LEFT)
 		fl_text_add(out, "  The same plan again, with the instrument as it is left.\n");
 }
@@ -183,6 +192,12 @@ static void ask_reading(fl_entry *entry, const fl_step *step, fl_text *out) {
 	fl_text_printf(out, " (%d of %d done)> ", step->done, step->total);
 }
 
+static void ask_decision(fl_entry *entry, fl_text *out) {
+	fl_entry_show_advice(entry, out);
+	const fl_advice_question *open = fl_entry_open_question(entry);
+	fl_text_printf(out, "%s> ", open ? open->ask : "Decision: adjust, leave or repair");
+}
+
 static void ask_step(fl_entry *entry, const fl_step *step, fl_text *out) {
 	switch (step->kind) {
 	case FL_STEP_SETTING:
@@ -212,7 +227,10 @@ static void ask_step(fl_entry *entry, const fl_step *step, fl_text *out) {
 		               fl_run_word(step->run));
 		break;
 	case FL_STEP_DECISION:
-		fl_text_add(out, "Decision: adjust, leave or repair> ");
+		ask_decision(entry, out);
+		break;
+	case FL_STEP_CHECK:
+		fl_entry_ask_check(entry, step->check, out);
 		break;
 	case FL_STEP_ADJUSTMENT:
 		fl_text_add(out, "What was adjusted (done when that was all)> ");

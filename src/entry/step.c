@@ -3,7 +3,8 @@
  * SPDX-License-Identifier: GPL-3.0-or-later
  *
  * The order of work: identification, people, equipment, oils, permit and safety, conditions, is as-found possible,
- * the as-found run, its closing, the decision, adjustments, the as-left run, its closing, restoring, remarks, end.
+ * the as-found run, its closing, the decision, adjustments, the as-left run, its closing, function checks, restoring,
+ * remarks, end.
  * A run follows the plan: each cycle rises from the stopped zero through the points and falls back to it.
  */
 #include "entry_private.h"
@@ -173,6 +174,16 @@ static bool run_step(const fl_session *s, const fl_procedure *p, fl_run_kind run
 	return true;
 }
 
+/* Where repair comes first the functions are tried when the instrument is back. */
+static bool check_step(const fl_session *s, const fl_procedure *p, fl_step *step) {
+	for (int i = 0; i < p->check_count && s->decision != FL_DECISION_REPAIR; i++)
+		if (!fl_session_check_answer(s, p->checks[i].id)) {
+			*step = (fl_step){.kind = FL_STEP_CHECK, .id = p->checks[i].id, .check = &p->checks[i]};
+			return true;
+		}
+	return false;
+}
+
 fl_step fl_entry_step(const fl_session *s, const fl_procedure *p) {
 	fl_step step = {.kind = FL_STEP_DONE};
 	const fl_session_run *as_found = &s->runs[FL_RUN_AS_FOUND], *as_left = &s->runs[FL_RUN_AS_LEFT];
@@ -190,6 +201,8 @@ fl_step fl_entry_step(const fl_session *s, const fl_procedure *p) {
 	if (s->decision == FL_DECISION_ADJUST && !as_left->begun && !as_left->missing)
 		return (fl_step){.kind = FL_STEP_ADJUSTMENT};
 	if (fl_session_wants_as_left(s) && run_step(s, p, FL_RUN_AS_LEFT, &step))
+		return step;
+	if (check_step(s, p, &step))
 		return step;
 	if (question_step(s, p->restore, p->restore_count, FL_STEP_RESTORE, &step))
 		return step;
