@@ -123,6 +123,20 @@ static fl_status look_in_folder(const fl_cli *cli, const char *folder, const cha
 	return status;
 }
 
+/* The journal of the certificate's own name: among copies beside one another it is the one that is meant. */
+static fl_status look_at_namesake(const fl_cli *cli, const char *certificate, const char *digest,
+                                  char journal[FL_PATH_SIZE], int *sequence, fl_error *err) {
+	size_t length = strlen(certificate);
+	if (length > 4 && strcmp(certificate + length - 4, ".pdf") == 0)
+		length -= 4;
+	if (snprintf(journal, FL_PATH_SIZE, "%.*s.flj", (int)length, certificate) >= FL_PATH_SIZE)
+		return fl_fail(err, FL_E_VALUE, "the path is longer than %d characters", FL_PATH_SIZE - 1);
+	fl_error passed_over = {0};
+	if (look_into(cli, journal, digest, sequence, &passed_over) < 0)
+		*sequence = 0;
+	return FL_OK;
+}
+
 static fl_status folder_of(const char *path, char out[FL_PATH_SIZE], fl_error *err) {
 	const char *slash = strrchr(path, '/');
 	if (strlen(path) >= FL_PATH_SIZE)
@@ -166,6 +180,8 @@ fl_status fl_derive_find(const fl_cli *cli, const char *certificate, const unsig
 		return fl_fail(err, FL_E_NOT_FOUND, "it names no journal: give the right one with --journal FILE");
 	fl_status status = folder_of(certificate, beside, err);
 	if (status >= 0)
+		status = look_at_namesake(cli, certificate, digest, journal, sequence, err);
+	if (status >= 0 && *sequence == 0)
 		status = look_in_folder(cli, beside, digest, journal, sequence, err);
 	if (status >= 0)
 		status = fl_place_join(sessions, cli->home, "sessions", err);
