@@ -16,7 +16,7 @@ static const fl_instrument *instrument_of(const fl_session *session, const fl_st
 	return stock->instrument_count ? &stock->instruments[0] : NULL;
 }
 
-static fl_status find_items(work *w, fl_error *err) {
+fl_status fl_analysis_items(work *w, fl_error *err) {
 	const fl_instrument *instrument = instrument_of(w->session, w->stock);
 	if (!instrument)
 		return fl_fail(err, FL_E_NOT_FOUND, "the session names no instrument");
@@ -154,7 +154,7 @@ static fl_status hand_out(work *w, fl_error *err) {
 }
 
 static fl_status compute(work *w, fl_error *err) {
-	fl_status status = find_items(w, err);
+	fl_status status = fl_analysis_items(w, err);
 	if (status < 0)
 		return status;
 	take_terms(w);

@@ -35,6 +35,9 @@ typedef struct work {
 /* "LK-50 rising", "stopped zero falling", "40 % of span rising and falling". */
 const char *fl_analysis_point_name(const work *w, const fl_point_result *point);
 
+/* session.c: finds instrument and equipment. */
+fl_status fl_analysis_items(work *w, fl_error *err) FL_MUST_USE;
+
 /* readings.c: every reading of a run brought to its reference. */
 fl_status fl_analysis_readings(const work *w, fl_run_kind kind, fl_run_result *run, fl_error *err) FL_MUST_USE;
 /* The oil of a point; NULL for the stopped zero and for a pressure point. */
