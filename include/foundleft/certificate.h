@@ -15,6 +15,7 @@
 #include "foundleft/procedure.h"
 #include "foundleft/seal.h"
 #include "foundleft/stock.h"
+#include "foundleft/trend.h"
 
 /* What the record does not hold: said when the certificate is issued. Borrowed; "" or NULL where absent. */
 typedef struct fl_issue {
@@ -57,6 +58,43 @@ typedef struct fl_sign_places {
 fl_status fl_certificate_pdf_places(const fl_sheet *sheet, const fl_io *io, const fl_faces *faces,
                                     unsigned char **bytes, size_t *length, fl_sign_places *places,
                                     fl_error *err) FL_MUST_USE;
+/* The years of one instrument. Borrowed. */
+typedef struct fl_trend_report {
+	const fl_record *records; /* oldest first, without those that an amendment replaced */
+	size_t count;
+	const fl_proposal *fleet; /* by statistical reliability; NULL if not asked */
+	fl_day made_on;
+	const char *issuer, *issuer_address, *program_version;
+} fl_trend_report;
+/* FL_E_NOT_FOUND without a record. */
+fl_status fl_certificate_trend(const fl_trend_report *report, fl_sheet **out, fl_error *err) FL_MUST_USE;
+
+/* What a survey wants to see first: every instrument, every standard, what is open. Borrowed. */
+typedef struct fl_survey_instrument {
+	const char *tag, *serial, *site, *position; /* "" where not known */
+	const char *number;                         /* of the last certificate, "" if none */
+	const char *verdict;                        /* as it was left */
+	fl_day last, due;                           /* FL_NO_DAY: none */
+	size_t page, trend_page;                    /* where they stand in the collection; 0: not in it */
+} fl_survey_instrument;
+typedef struct fl_survey_standard {
+	const char *kind, *name, *certificate;
+	fl_day last_day; /* on which it may still be used */
+} fl_survey_standard;
+typedef struct fl_survey {
+	const char *ship;
+	const fl_survey_instrument *instruments;
+	size_t instrument_count;
+	const fl_survey_standard *standards;
+	size_t standard_count;
+	const char *const *open; /* sentences */
+	size_t open_count;
+	const char *content; /* digest of the book's content */
+	fl_day made_on;
+	const char *issuer, *issuer_address, *program_version;
+} fl_survey;
+fl_status fl_certificate_survey(const fl_survey *survey, fl_sheet **out, fl_error *err) FL_MUST_USE;
+
 /* One part of a collection. */
 typedef struct fl_pack_part {
 	const fl_sheet *sheet; /* NULL: only a title in the outline, over the parts of level 1 that follow */

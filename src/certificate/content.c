@@ -43,32 +43,11 @@ const char *fl_writing_run_title(fl_run_kind kind) {
 	return kind == FL_RUN_AS_FOUND ? "As-found" : "As-left";
 }
 
-/* Address lines: at newlines, or at "; ". */
-static void write_issuer(fl_writing *w) {
-	fl_sheet *sheet = w->sheet;
-	const char *address = w->issue->issuer_address ? w->issue->issuer_address : "";
-	size_t most = 1;
-	for (const char *c = address; *c; c++)
-		most += *c == '\n' || *c == ';';
-	sheet->issuer = fl_sheet_copy(sheet, fl_word_is_empty(w->issue->issuer) ? "Issuer not stated" : w->issue->issuer);
-	sheet->issuer_lines = fl_arena_alloc(&sheet->arena, most, sizeof *sheet->issuer_lines);
-	if (!sheet->issuer_lines) {
-		sheet->failed = true;
-		return;
-	}
-	while (*address) {
-		size_t length = strcspn(address, "\n;");
-		sheet->issuer_lines[sheet->issuer_line_count++] = fl_sheet_printf(sheet, "%.*s", (int)length, address);
-		address += length;
-		address += strspn(address, "\n; ");
-	}
-}
-
 static void write_title(fl_writing *w) {
 	fl_sheet *sheet = w->sheet;
 	const fl_issue *issue = w->issue;
 	bool pressure = w->procedure->medium == FL_MEDIUM_PRESSURE;
-	write_issuer(w);
+	fl_sheet_issuer(sheet, issue->issuer, issue->issuer_address);
 	sheet->title = "Calibration certificate";
 	sheet->number_label = "Certificate number";
 	sheet->number = fl_sheet_copy(sheet, issue->number);

@@ -55,6 +55,25 @@ const char *fl_sheet_printf(fl_sheet *sheet, const char *format, ...) {
 	return text;
 }
 
+void fl_sheet_issuer(fl_sheet *sheet, const char *issuer, const char *address) {
+	size_t most = 1;
+	address = address ? address : "";
+	for (const char *c = address; *c; c++)
+		most += *c == '\n' || *c == ';';
+	sheet->issuer = fl_sheet_copy(sheet, issuer && *issuer ? issuer : "Issuer not stated");
+	sheet->issuer_lines = fl_arena_alloc(&sheet->arena, most, sizeof *sheet->issuer_lines);
+	if (!sheet->issuer_lines) {
+		sheet->failed = true;
+		return;
+	}
+	while (*address) {
+		size_t length = strcspn(address, "\n;");
+		sheet->issuer_lines[sheet->issuer_line_count++] = fl_sheet_printf(sheet, "%.*s", (int)length, address);
+		address += length;
+		address += strspn(address, "\n; ");
+	}
+}
+
 /* Room for one more element; NULL (and `failed`) when memory is out. */
 static void *grow(fl_sheet *sheet, void *items, size_t count, size_t *capacity, size_t size) {
 	void *grown = fl_arena_grow(&sheet->arena, items, count, capacity, size);

@@ -145,6 +145,9 @@ fl_sheet *fl_sheet_new(void) FL_MUST_USE;
 const char *fl_sheet_copy(fl_sheet *sheet, const char *text);
 const char *fl_sheet_printf(fl_sheet *sheet, const char *format, ...) FL_PRINTF(2, 3);
 
+/* Who issues; address lines part at newlines and at "; ". Both may be NULL. */
+void fl_sheet_issuer(fl_sheet *sheet, const char *issuer, const char *address);
+
 /* Adds a block with text only (heading, statement, text, item, small, end). */
 void fl_sheet_add(fl_sheet *sheet, fl_block_kind kind, const char *text);
 void fl_sheet_addf(fl_sheet *sheet, fl_block_kind kind, const char *format, ...) FL_PRINTF(3, 4);
