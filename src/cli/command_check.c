@@ -124,11 +124,12 @@ static size_t length_of_lines(const char *bytes, size_t length, int number) {
 
 /* Checks a seal against the lines that it was made over: those up to one of the journal's certificates. *line gets the
  * last of them. Where none fits, the report is that of the last one tried. */
-static fl_status check_seal(const fl_case *one, const char *bytes, size_t length, const char *seal, size_t seal_length,
-                            const fl_trust *trust, fl_arena *arena, fl_seal_report *report, int *line, fl_error *err) {
+static fl_status check_seal(const fl_session *session, const char *bytes, size_t length, const char *seal,
+                            size_t seal_length, const fl_trust *trust, fl_arena *arena, fl_seal_report *report,
+                            int *line, fl_error *err) {
 	fl_status status = fl_fail(err, FL_E_TAMPERED, "no certificate was issued of this journal, so nothing was sealed");
-	for (size_t i = one->session.issue_count; i-- > 0;) {
-		*line = one->session.issues[i].sequence;
+	for (size_t i = session->issue_count; i-- > 0;) {
+		*line = session->issues[i].sequence;
 		status = fl_seal_check(bytes, length_of_lines(bytes, length, *line), seal, seal_length, trust, fl_cli_now(),
 		                       arena, report, err);
 		if (status < 0 || report->verdict != FL_SEAL_BROKEN)
@@ -137,8 +138,8 @@ static fl_status check_seal(const fl_case *one, const char *bytes, size_t length
 	return status;
 }
 
-static void check_seal_person(fl_findings *found, const fl_case *one, const fl_seal_signature *signature) {
-	const fl_setting *performer = fl_session_setting(&one->session, "performed-by");
+static void check_person(fl_findings *found, const fl_session *session, const fl_seal_signature *signature) {
+	const fl_setting *performer = fl_session_setting(session, "performed-by");
 	bool named = performer && fl_identity_is_named(&signature->signer, performer->typed);
 	fl_part part = fl_part_find(signature->role);
 	if (!signature->fits || !performer)
@@ -151,50 +152,72 @@ static void check_seal_person(fl_findings *found, const fl_case *one, const fl_s
 		      "the performer signed in another part too");
 }
 
-/* The seals beside a journal: STEM.LINE.PART.fls. *count says how many. */
-static fl_status check_seals(fl_findings *found, const fl_case *one, const fl_trust *trust, int *count, fl_error *err) {
-	fl_arena arena = {0};
-	char **paths, *bytes, folder[FL_PATH_SIZE], stem[FL_PATH_SIZE];
-	size_t seal_count = 0, length;
-	const char *slash = strrchr(one->path, '/');
-	snprintf(folder, sizeof folder, "%.*s", slash ? (int)(slash - one->path) + 1 : 1, slash ? one->path : ".");
-	snprintf(stem, sizeof stem, "%.500s", slash ? slash + 1 : one->path);
-	size_t stem_length = strlen(stem);
-	if (stem_length > 4 && strcmp(stem + stem_length - 4, ".flj") == 0)
-		stem[stem_length - 4] = '\0';
-	*count = 0;
-	fl_status status = fl_place_files(folder, FL_SEAL_SUFFIX, &arena, &paths, &seal_count, err);
-	if (status >= 0 && seal_count > 0)
-		status = fl_file_read(found->cli->io, one->path, FL_JOURNAL_LIMIT, &arena, &bytes, &length, err);
-	for (size_t i = 0; status >= 0 && i < seal_count; i++) {
-		const char *name = strrchr(paths[i], '/') + 1;
-		char *seal, sentence[300];
-		size_t seal_length;
-		int line = 0;
-		fl_seal_report report = {0};
-		fl_error why = {0};
-		if (strncmp(name, stem, strlen(stem)) != 0 || name[strlen(stem)] != '.')
-			continue;
-		status = fl_file_read(found->cli->io, paths[i], 1 << 20, &arena, &seal, &seal_length, err);
-		if (status < 0)
-			break;
-		++*count;
-		if (check_seal(one, bytes, length, seal, seal_length, trust, &arena, &report, &line, &why) < 0) {
-			snprintf(sentence, sizeof sentence, "%.80s: %.200s", name, why.message);
-			breaks(found, "seal", sentence, "a seal of the journal does not hold");
-			continue;
-		}
-		print_report(found, &report, "seal", *count);
-		if (report.verdict != FL_SEAL_BROKEN) {
-			snprintf(sentence, sizeof sentence, "%.80s covers lines 1 to %d of the journal%s", name, line,
-			         line < one->session.last_sequence ? "; what stands behind was added later and is not under it"
-			                                           : "");
-			print_line(found, FL_CHECK_GOOD, "covers", sentence);
-			check_seal_person(found, one, &report.signatures[0]);
-		}
-		weigh(found, &report);
+/* The seals beside a journal. */
+typedef struct fl_seals {
+	fl_findings *found;
+	const char *path; /* of the journal */
+	const fl_session *session;
+	const fl_trust *trust;
+	int only_line; /* 0: all; else those of this line's certificate, and what does not hold */
+	int count;     /* seals reported */
+	fl_arena arena;
+	char *bytes; /* of the journal */
+	size_t length;
+} fl_seals;
+
+static fl_status judge_seal(fl_seals *seals, const char *path, fl_error *err) {
+	const char *name = strrchr(path, '/') + 1;
+	char *bytes, sentence[300];
+	size_t length;
+	int line = 0;
+	fl_seal_report report = {0};
+	fl_error why = {0};
+	fl_status status = fl_file_read(seals->found->cli->io, path, 1 << 20, &seals->arena, &bytes, &length, err);
+	if (status < 0)
+		return status;
+	if (check_seal(seals->session, seals->bytes, seals->length, bytes, length, seals->trust, &seals->arena, &report,
+	               &line, &why) < 0) {
+		seals->count++;
+		snprintf(sentence, sizeof sentence, "%.80s: %.200s", name, why.message);
+		breaks(seals->found, "seal", sentence, "a seal of the journal does not hold");
+		return FL_OK;
 	}
-	fl_arena_free(&arena);
+	if (report.verdict != FL_SEAL_BROKEN && seals->only_line && line != seals->only_line)
+		return FL_OK;
+	print_report(seals->found, &report, "seal", ++seals->count);
+	weigh(seals->found, &report);
+	if (report.verdict == FL_SEAL_BROKEN)
+		return FL_OK;
+	snprintf(sentence, sizeof sentence, "%.80s covers lines 1 to %d of the journal%s", name, line,
+	         line < seals->session->last_sequence ? "; what stands behind was added later and is not under it" : "");
+	print_line(seals->found, FL_CHECK_GOOD, "covers", sentence);
+	check_person(seals->found, seals->session, &report.signatures[0]);
+	return FL_OK;
+}
+
+/* "folder/session.flj": "folder/" (or "."), and "session." */
+static void split_path(const char *path, char folder[FL_PATH_SIZE], char stem[FL_PATH_SIZE]) {
+	const char *slash = strrchr(path, '/');
+	snprintf(folder, FL_PATH_SIZE, "%.*s", slash ? (int)(slash - path) + 1 : 1, slash ? path : ".");
+	snprintf(stem, FL_PATH_SIZE, "%.500s.", slash ? slash + 1 : path);
+	size_t length = strlen(stem);
+	if (length > 5 && strcmp(stem + length - 5, ".flj.") == 0)
+		stem[length - 4] = '\0';
+}
+
+/* Those named STEM.LINE.PART.fls. */
+static fl_status check_seals(fl_seals *seals, fl_error *err) {
+	char **paths, folder[FL_PATH_SIZE], stem[FL_PATH_SIZE];
+	size_t count = 0;
+	split_path(seals->path, folder, stem);
+	fl_status status = fl_place_files(folder, FL_SEAL_SUFFIX, &seals->arena, &paths, &count, err);
+	if (status >= 0 && count > 0)
+		status = fl_file_read(seals->found->cli->io, seals->path, FL_JOURNAL_LIMIT, &seals->arena, &seals->bytes,
+		                      &seals->length, err);
+	for (size_t i = 0; status >= 0 && i < count; i++)
+		if (strncmp(strrchr(paths[i], '/') + 1, stem, strlen(stem)) == 0)
+			status = judge_seal(seals, paths[i], err);
+	fl_arena_free(&seals->arena);
 	return status;
 }
 
@@ -202,7 +225,6 @@ static fl_status check_journal(fl_cli *cli, const char *path, fl_exit *code, fl_
 	fl_case one;
 	char opened[FL_DAY_SIZE];
 	fl_trust *trust = NULL;
-	int seals = 0;
 	fl_findings found = {.cli = cli, .columns = fl_cli_columns(cli)};
 	fl_status status = fl_case_load(cli->io, path, &one, err);
 	if (status < 0)
@@ -215,9 +237,10 @@ static fl_status check_journal(fl_cli *cli, const char *path, fl_exit *code, fl_
 		fprintf(cli->out, "  certificate %s issued on %s\n", one.session.issues[i].number,
 		        fl_day_format(one.session.issues[i].day, opened));
 	status = fl_signing_trust(cli, &trust, NULL, err);
+	fl_seals seals = {.found = &found, .path = path, .session = &one.session, .trust = trust};
 	if (status >= 0)
-		status = check_seals(&found, &one, trust, &seals, err);
-	if (status >= 0 && seals > 0)
+		status = check_seals(&seals, err);
+	if (status >= 0 && seals.count > 0)
 		*code = print_verdict(&found, "GOOD. Every line fits, and everybody who sealed it is vouched for.");
 	else if (status >= 0)
 		fputs("  no seal beside it: the chain shows a change of a line, but not who wrote it\n", cli->out);
@@ -331,7 +354,7 @@ static void check_parts(fl_paper *paper) {
 		const fl_seal_signature *one = &report->signatures[i];
 		fl_part part = fl_part_find(one->role);
 		if (paper->has_record)
-			check_seal_person(&paper->found, &paper->derived.one, one);
+			check_person(&paper->found, &paper->derived.whole, one);
 		if (part != FL_PARTS && one->fits)
 			there |= 1U << part;
 	}
@@ -372,7 +395,6 @@ static fl_status check_certificate(fl_cli *cli, const char *path, fl_exit *code,
 	fl_error why = {0};
 	char *bytes;
 	bool no_trust = false;
-	int seals;
 	fl_status status = fl_file_read(cli->io, path, FILE_MOST, &paper.arena, &bytes, &paper.length, err);
 	if (status >= 0)
 		status = fl_signing_trust(cli, &paper.trust, &no_trust, err);
@@ -387,8 +409,13 @@ static fl_status check_certificate(fl_cli *cli, const char *path, fl_exit *code,
 		check_parts(&paper);
 		if (no_trust)
 			fprintf(cli->out, "  note  trust: there is no folder %s/trust yet: nobody is vouched for\n", cli->home);
+		fl_seals seals = {.found = &paper.found,
+		                  .path = paper.derived.one.path,
+		                  .session = &paper.derived.whole,
+		                  .trust = paper.trust,
+		                  .only_line = paper.derived.sequence};
 		if (paper.has_record)
-			status = check_seals(&paper.found, &paper.derived.one, paper.trust, &seals, err);
+			status = check_seals(&seals, err);
 		*code = print_verdict(&paper.found, "GOOD. Every byte fits, everybody who signed is vouched for, and the "
 		                                    "content is what the record gives.");
 	}

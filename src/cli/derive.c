@@ -37,30 +37,27 @@ fl_status fl_derive_pages(const fl_cli *cli, fl_derived *out, fl_error *err) {
 	return status;
 }
 
-/* What later lines say of the certificate. */
-static fl_status look_ahead(const fl_cli *cli, const char *journal, int sequence, fl_derived *out, fl_error *err) {
-	fl_session session;
+/* All lines: later ones may amend the certificate. */
+static fl_status read_whole(const fl_cli *cli, const char *journal, fl_derived *out, fl_error *err) {
 	char head[FL_DIGEST_HEX_SIZE];
-	fl_status status = fl_journal_read(cli->io, journal, &session, head, NULL, err);
+	fl_status status = fl_journal_read(cli->io, journal, &out->whole, head, NULL, err);
 	if (status < 0)
 		return status;
 	const fl_session_issue *entry = NULL;
-	for (size_t i = 0; i < session.issue_count; i++)
-		if (session.issues[i].sequence == sequence)
-			entry = &session.issues[i];
-	const fl_session_issue *after = entry ? fl_session_amended_by(&session, entry->number) : NULL;
+	for (size_t i = 0; i < out->whole.issue_count; i++)
+		if (out->whole.issues[i].sequence == out->sequence)
+			entry = &out->whole.issues[i];
 	if (!entry)
-		status = fl_fail_at(err, FL_E_NOT_FOUND, (fl_place){.file = journal, .line = sequence},
-		                    "this line issues no certificate");
-	else if (after && !(out->amended_by = fl_arena_strdup(&out->arena, after->number)))
-		status = fl_fail(err, FL_E_MEMORY, "out of memory");
-	fl_session_free(&session);
-	return status;
+		return fl_fail_at(err, FL_E_NOT_FOUND, (fl_place){.file = journal, .line = out->sequence},
+		                  "this line issues no certificate");
+	const fl_session_issue *after = fl_session_amended_by(&out->whole, entry->number);
+	out->amended_by = after ? after->number : NULL;
+	return FL_OK;
 }
 
 fl_status fl_derive(const fl_cli *cli, const char *journal, int sequence, fl_derived *out, fl_error *err) {
 	*out = (fl_derived){.sequence = sequence};
-	fl_status status = look_ahead(cli, journal, sequence, out, err);
+	fl_status status = read_whole(cli, journal, out, err);
 	if (status >= 0)
 		status = fl_case_load_to(cli->io, journal, sequence, &out->arena, &out->journal, &out->journal_length,
 		                         &out->one, err);
@@ -77,6 +74,7 @@ fl_status fl_derive(const fl_cli *cli, const char *journal, int sequence, fl_der
 void fl_derived_free(fl_derived *derived) {
 	free(derived->bytes);
 	fl_case_free(&derived->one);
+	fl_session_free(&derived->whole);
 	fl_arena_free(&derived->arena);
 	*derived = (fl_derived){0};
 }

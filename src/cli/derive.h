@@ -9,7 +9,8 @@
 
 typedef struct fl_derived {
 	fl_arena arena;
-	fl_case one; /* up to and with the line of the issue, or before it where it is being issued */
+	fl_case one;      /* up to and with the line of the issue, or before it where it is being issued */
+	fl_session whole; /* with all lines; empty where it is being issued */
 	fl_issue issue;
 	int sequence;  /* of that line */
 	char *journal; /* bytes of the journal, up to and with that line */
