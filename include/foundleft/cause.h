@@ -98,6 +98,12 @@ typedef struct fl_cause_extra {
 	double gain_since_cleaning;                  /* sum of span corrections since the capillary was cleaned, fraction */
 } fl_cause_extra;
 void fl_cause_extra_begin(fl_cause_extra *extra); /* nothing measured */
+/* Takes what the session holds as extra measurements of that run's state (of dial density and of what was spanned out
+ * those of either state), corrected and with the uncertainty of the equipment that was named. Without: 0.05 % of span
+ * for an injection, 0.5 % for speed and volume, 1 kg/m³, 0.05 K; common practice, no source. The last one counts, of
+ * injections each. `arena` holds them. Leaves fields that are set already. FL_E_MEMORY. */
+fl_status fl_cause_extra_measured(const fl_session *session, const fl_instrument *instrument, const fl_stock *stock,
+                                  fl_run_kind run, fl_arena *arena, fl_cause_extra *extra, fl_error *err) FL_MUST_USE;
 /* Takes what the session recorded as conditions: "pump-speed" (u from the tachometer in use, else 0.5 %), and from
  * "supply-frequency" the speed, where no pump speed was recorded (u 0.5 %). Leaves fields that are set already. */
 void fl_cause_extra_from_session(const fl_session *session, const fl_instrument *instrument, const fl_stock *stock,
@@ -148,7 +154,9 @@ typedef struct fl_finding {
 	const char *advice;   /* what to do; "" for none */
 	const char *reason;   /* why, with the numbers; "" for none */
 	fl_strength strength;
-	double z; /* see fl_strength; NAN where the finding has none */
+	double z;             /* see fl_strength; NAN where the finding has none */
+	bool asks;            /* a mix-up: to be answered with a reason before anything is decided */
+	const char *answered; /* "yes" (it is so), "no" (the readings stand), "" where no answer stands in the session */
 	const fl_cause_number *numbers;
 	size_t number_count;
 } fl_finding;
@@ -247,7 +255,7 @@ typedef struct fl_cause {
 	const char *statement; /* "Opinion and interpretation, not part of the calibration result ..." */
 	fl_finding *findings;
 	size_t finding_count, finding_capacity;
-	bool withheld; /* a mix-up stands open: no cause is named before it is decided */
+	bool withheld; /* a mix-up stands open or is answered with yes: no cause is named */
 	bool stop;     /* no adjustment now */
 	fl_cause_row *rows;
 	size_t row_count;
@@ -264,8 +272,8 @@ typedef struct fl_cause {
 	fl_next_point next;
 } fl_cause;
 
-/* The whole search, over one run of a session. `extra` may be NULL. `stock` is the session's (fl_session_stock);
- * `shelf` the oils to choose the next point from, NULL for the same. */
+/* The whole search, over one run of a session. `extra` may be NULL; what the session holds is taken besides. `stock` is
+ * the session's (fl_session_stock); `shelf` the oils to choose the next point from, NULL for the same. */
 fl_status fl_cause_find(const fl_session *session, const fl_procedure *procedure, const fl_stock *stock,
                         const fl_result *result, fl_run_kind run, const fl_cause_extra *extra, const fl_stock *shelf,
                         fl_cause *out, fl_error *err) FL_MUST_USE;

@@ -29,13 +29,8 @@ static const double usual_speed_u_rel = 0.005;
 
 static double speed_u(const fl_session *session, const fl_stock *stock, double speed_rev_s) {
 	const char *id = fl_session_equipment_id(session, FL_ROLE_TACHOMETER);
-	const fl_equipment *tachometer = id ? fl_stock_equipment(stock, id) : NULL;
-	if (!tachometer || !(tachometer->k > 0.0) || fl_unit_quantity(tachometer->unit) != FL_Q_ROTATION)
-		return usual_speed_u_rel * speed_rev_s;
-	fl_equipment_u parts = fl_stock_equipment_u(tachometer, session->day);
-	double u = sqrt(parts.certificate * parts.certificate + parts.drift_half_width * parts.drift_half_width / 3.0 +
-	                parts.resolution_half_width * parts.resolution_half_width / 3.0);
-	return fmax(fl_to_inside(u, tachometer->unit), 1e-4 * speed_rev_s);
+	double u = fl_cause_equipment_u(id ? fl_stock_equipment(stock, id) : NULL, session->day, FL_Q_ROTATION);
+	return isnan(u) ? usual_speed_u_rel * speed_rev_s : fmax(u, 1e-4 * speed_rev_s);
 }
 
 static double recorded(const fl_session *session, const char *id, fl_quantity quantity) {
@@ -164,6 +159,7 @@ static fl_status find(fl_search *s, fl_error *err) {
 	if (!s->instrument)
 		return fl_fail(err, FL_E_NOT_FOUND, "the session names no instrument");
 	s->range = fl_physics_signal_range(s->instrument->scale.signal);
+	TRY(fl_cause_extra_measured(s->session, s->instrument, s->stock, s->out->run, s->arena, &s->extra, err));
 	fl_cause_extra_from_session(s->session, s->instrument, s->stock, &s->extra);
 	if (!s->run->available) {
 		s->out->available = false;

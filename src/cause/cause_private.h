@@ -127,6 +127,9 @@ typedef struct fl_search {
 	bool memory_failed;
 } fl_search;
 
+/* measured.c: standard uncertainty of an item, inside unit; NAN without item, k, or for another quantity. */
+double fl_cause_equipment_u(const fl_equipment *item, fl_day day, fl_quantity quantity);
+
 fl_status fl_cause_take_rows(fl_search *s, fl_error *err) FL_MUST_USE;
 fl_status fl_cause_take_extra(fl_search *s, fl_error *err) FL_MUST_USE;
 /* noise.c: V. After the rows. */

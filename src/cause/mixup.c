@@ -270,8 +270,8 @@ static void say_mix_up(hunt *h, const char *id, double before, double after, con
 	fl_finding *f = fl_cause_say(s, FL_FINDING_MIX_UP, id, "%s", sentence);
 	fl_cause_advise(
 	    s, f,
-	    "Look at bottle, meter and notes. The data stay as entered: confirm them, or strike the readings and "
-	    "read again, with a reason.",
+	    "Look at bottle, meter and notes. The data stay as entered: say whether it is so, with a reason. If it is, "
+	    "nothing is adjusted, and the readings are taken again in a new session.",
 	    "As entered these readings lie up to %s of span off the line of the others; so they would lie within "
 	    "%s.",
 	    fl_cause_amount(s, before, FL_U_PERCENT, 2), fl_cause_amount(s, after, FL_U_PERCENT, 2));
@@ -535,7 +535,28 @@ static void hunt_by_reading(hunt *h) {
 	say_proposals(h, &all);
 }
 
-void fl_cause_mix_ups(fl_search *s) {
+/* What a person has answered stands. With every one answered by "no" the readings stand as they are. */
+static void take_answers(fl_search *s) {
+	fl_cause *out = s->out;
+	size_t asked = 0, denied = 0;
+	for (size_t i = 0; i < out->finding_count; i++) {
+		fl_finding *f = &out->findings[i];
+		if (f->kind != FL_FINDING_MIX_UP)
+			continue;
+		const fl_finding_answer *answer = fl_session_finding(s->session, f->id);
+		f->asks = true;
+		f->answered = !answer ? "" : answer->yes ? "yes" : "no";
+		asked++;
+		denied += answer && !answer->yes;
+		if (answer)
+			f->advice = fl_cause_text(s, "Answered by %s: %s, %s.", answer->by,
+			                          answer->yes ? "it is so" : "the readings stand as entered", answer->reason);
+	}
+	if (asked && denied == asked)
+		out->withheld = out->stop = false;
+}
+
+static void hunt_mix_ups(fl_search *s) {
 	hunt h = {.s = s};
 	if (s->procedure->medium == FL_MEDIUM_PRESSURE)
 		return;
@@ -556,4 +577,9 @@ void fl_cause_mix_ups(fl_search *s) {
 	if (!s->out->withheld)
 		exchanged_among_few(&h);
 	passes_exchanged(&h);
+}
+
+void fl_cause_mix_ups(fl_search *s) {
+	hunt_mix_ups(s);
+	take_answers(s);
 }

@@ -85,6 +85,7 @@ fl_finding *fl_cause_say(fl_search *s, fl_finding_kind kind, const char *id, con
 	fl_finding *finding = &grown[out->finding_count++];
 	*finding = (fl_finding){.kind = kind, .id = keep(s, id), .sentence = sentence, .advice = "", .reason = ""};
 	finding->z = NAN;
+	finding->answered = "";
 	return finding;
 }
 

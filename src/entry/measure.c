@@ -182,6 +182,13 @@ static fl_status check_state(const fl_entry *entry, const fl_measure_draft *d, f
 	const fl_session_run *as_found = &entry->session->runs[FL_RUN_AS_FOUND];
 	if (!as_found->closed && !as_found->missing)
 		return fl_fail(err, FL_E_STATE, "extra measurements come after the as-found run is closed");
+	const fl_instrument *i = entry->setup.instrument;
+	if ((d->what == FL_MEASURE_SPEED || d->what == FL_MEASURE_VOLUME) && !i->has_geometry)
+		return fl_fail(err, FL_E_STATE,
+		               "the instrument's record has no pump and capillary to hold this against: state them in "
+		               "instruments.yaml");
+	if (d->what == FL_MEASURE_DENSITY && i->scale.dial_unit == FL_DIAL_MPA_S)
+		return fl_fail(err, FL_E_STATE, "a dial in mPa·s assumes no density");
 	if (d->what == FL_MEASURE_INJECTION && isnan(fl_reference_dp_full(entry->setup.instrument)))
 		return fl_fail(
 		    err, FL_E_STATE,
