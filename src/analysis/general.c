@@ -58,11 +58,15 @@ static void line_weights(const line_points *l, size_t i, double *of_intercept, d
 	*of_intercept = 1.0 / n - mean * *of_slope;
 }
 
+/* A deviation of the ideal output moves the point along the line too: by 1 + slope in all. */
 static void take_shared(fl_run_result *run, const line_points *l) {
+	double along = 1.0 + run->line.slope;
 	run->line_shared = (fl_line){.intercept = run->line.intercept, .slope = run->line.slope, .dof = run->line.dof};
 	for (size_t i = 0; i < l->n; i++)
 		for (size_t k = 0; k < l->n; k++) {
-			double z1, g1, z2, g2, c = fl_analysis_covariance(l->points[i], l->points[k], SIDE_BOTH);
+			double z1, g1, z2, g2;
+			double c = along * along * fl_analysis_covariance(l->points[i], l->points[k], SIDE_IDEAL) +
+			           fl_analysis_covariance(l->points[i], l->points[k], SIDE_OUTPUT);
 			line_weights(l, i, &z1, &g1);
 			line_weights(l, k, &z2, &g2);
 			run->line_shared.var_intercept += z1 * z2 * c;
@@ -271,7 +275,7 @@ static bool sum_of_inverse(const work *w, const fl_inverse *scatter, const fl_li
 	return fl_numeric_budget(terms, 2, w->result->coverage_probability, sum, NULL) >= 0;
 }
 
-static bool find_true_value(const work *w, const fl_run_result *run, double shown_x, fl_true_value *out) {
+bool fl_analysis_true_value(const work *w, const fl_run_result *run, double shown_x, fl_true_value *out) {
 	fl_line ordinary = run->line, both = output_line(run);
 	ordinary.slope += 1.0;
 	fl_inverse scatter, all;
@@ -305,7 +309,7 @@ static void take_true_values(const work *w, fl_run_result *run, const line_point
 	for (int i = 0; i < FL_TRUE_VALUES; i++) {
 		fl_true_value value = {.name = marks[i].name, .shown = marks[i].dial};
 		double x = dial_to_x(w, marks[i].dial);
-		if (isnan(x) || !find_true_value(w, run, x, &value))
+		if (isnan(x) || !fl_analysis_true_value(w, run, x, &value))
 			continue;
 		value.outside = x < l->x[0] || x > l->x[l->n - 1];
 		run->true_values[run->true_value_count++] = value;

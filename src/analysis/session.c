@@ -164,6 +164,9 @@ static fl_status compute(work *w, fl_error *err) {
 			return status;
 	}
 	carry_over(w);
+	status = fl_analysis_functions(w, err);
+	if (status < 0)
+		return status;
 	fl_analysis_say_correlation(w);
 	fl_analysis_trace(w);
 	return hand_out(w, err);

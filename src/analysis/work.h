@@ -77,6 +77,12 @@ fl_status fl_analysis_verdicts(work *w, fl_run_result *run, fl_error *err) FL_MU
 /* flow.c: the capillary at each point, and its warnings. */
 fl_status fl_analysis_flows(work *w, fl_run_result *run, fl_error *err) FL_MUST_USE;
 
+/* general.c: the true value when the dial shows the place shown_x; false where the run's line does not give it. */
+bool fl_analysis_true_value(const work *w, const fl_run_result *run, double shown_x, fl_true_value *out);
+
+/* function.c: the function checks. After the runs. */
+fl_status fl_analysis_functions(const work *w, fl_error *err) FL_MUST_USE;
+
 /* trace.c: what stands in the way of traceability. */
 void fl_analysis_trace(work *w);
 

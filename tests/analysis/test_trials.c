@@ -172,13 +172,12 @@ static void shared_deviations_move_all_points_alike(void **state) {
 	b.procedure.extra_count = 1;
 	for (int i = 0; i < 5; i++) {
 		bench_dp(&b, 1, FL_PASS_RISING, i, 4.0 + 4.0 * i, 2500.0 * i);
-		bench_dp(&b, 1, FL_PASS_FALLING, i, 4.016 + 4.0 * i, 2500.0 * i);
 	}
 	bench_assess(&b);
 	fl_run_trials t = try_as_found(&b, &arena, 50000, 0, 2, 11);
 	check_close("u of the zero error", 0.15e-2, figure(&t, "zero error")->by_trials.u, 0.02);
 	check_near("u of the span error", 0.0, figure(&t, "span error")->by_trials.u, 1e-12);
-	check_near("hysteresis", 0.1e-2, figure(&t, "hysteresis")->by_trials.mean, 1e-12);
+	assert_null(figure(&t, "hysteresis")); /* one traverse */
 	fl_arena_free(&arena);
 	bench_end(&b);
 	term.own = true; /* another one at every point: now the span moves too */
@@ -186,6 +185,13 @@ static void shared_deviations_move_all_points_alike(void **state) {
 	t = try_as_found(&b, &arena, 50000, 0, 2, 11);
 	/* u of a slope over x = 0, 1/4 .. 1: u / sqrt(Sxx), Sxx = 0.625 */
 	check_close("u of the span error", 0.15e-2 / sqrt(0.625), figure(&t, "span error")->by_trials.u, 0.02);
+	fl_arena_free(&arena);
+	bench_end(&b);
+	for (int i = 0; i < 5; i++)
+		bench_dp(&b, 1, FL_PASS_FALLING, i, 4.016 + 4.0 * i, 2500.0 * i);
+	bench_assess(&b);
+	t = try_as_found(&b, &arena, 50000, 0, 2, 11);
+	check_near("hysteresis", 0.1e-2, figure(&t, "hysteresis")->by_trials.mean, 1e-12);
 	fl_arena_free(&arena);
 	bench_end(&b);
 }
