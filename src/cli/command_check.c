@@ -272,7 +272,7 @@ static fl_status check_seal_file(fl_cli *cli, const char *path, fl_exit *code, f
 /* ---- certificates ------------------------------------------------------------------------------------------------ */
 
 /* A certificate under check. */
-typedef struct fl_paper {
+typedef struct fl_checked_paper {
 	fl_findings found;
 	fl_arena arena;
 	unsigned char *bytes;
@@ -281,9 +281,9 @@ typedef struct fl_paper {
 	fl_derived derived;
 	bool has_record; /* derived is there */
 	fl_seal_report report;
-} fl_paper;
+} fl_checked_paper;
 
-static void print_title(const fl_paper *paper, const char *path) {
+static void print_title(const fl_checked_paper *paper, const char *path) {
 	char day[FL_DAY_SIZE];
 	const fl_derived *derived = &paper->derived;
 	if (paper->has_record)
@@ -293,7 +293,7 @@ static void print_title(const fl_paper *paper, const char *path) {
 		fprintf(paper->found.cli->out, "%s: PDF\n", path);
 }
 
-static size_t places_of(const fl_paper *paper, fl_seal_place places[FL_PARTS]) {
+static size_t places_of(const fl_checked_paper *paper, fl_seal_place places[FL_PARTS]) {
 	size_t count = 0;
 	for (int part = 0; paper->has_record && part < FL_PARTS; part++)
 		if (paper->derived.places.of[part].width > 0)
@@ -301,7 +301,7 @@ static size_t places_of(const fl_paper *paper, fl_seal_place places[FL_PARTS]) {
 	return count;
 }
 
-static void check_signatures(fl_paper *paper) {
+static void check_signatures(fl_checked_paper *paper) {
 	fl_error why = {0};
 	fl_seal_place places[FL_PARTS];
 	size_t count = places_of(paper, places);
@@ -317,7 +317,7 @@ static void check_signatures(fl_paper *paper) {
 }
 
 /* Is the content the one that the record gives? Another version of the program may set the same record otherwise. */
-static void check_content(fl_paper *paper) {
+static void check_content(fl_checked_paper *paper) {
 	const fl_derived *derived = &paper->derived;
 	size_t base = paper->report.base_length, same = 0;
 	char sentence[300];
@@ -346,7 +346,7 @@ static void check_content(fl_paper *paper) {
 }
 
 /* Who signed in which part, and who is still to. */
-static void check_parts(fl_paper *paper) {
+static void check_parts(fl_checked_paper *paper) {
 	unsigned there = 0;
 	char sentence[300];
 	const fl_seal_report *report = &paper->report;
@@ -371,7 +371,7 @@ static void check_parts(fl_paper *paper) {
 		doubt(&paper->found, "unsigned", "nobody vouches for it: anybody could have made it", "nobody has signed it");
 }
 
-static fl_status find_record(fl_paper *paper, const char *path, fl_error *why) {
+static fl_status find_record(fl_checked_paper *paper, const char *path, fl_error *why) {
 	char journal[FL_PATH_SIZE];
 	int sequence;
 	fl_status status = fl_derive_find(paper->found.cli, path, paper->bytes, paper->length, journal, &sequence, why);
@@ -381,7 +381,7 @@ static fl_status find_record(fl_paper *paper, const char *path, fl_error *why) {
 	return status;
 }
 
-static void say_no_record(fl_paper *paper, const fl_error *why) {
+static void say_no_record(fl_checked_paper *paper, const fl_error *why) {
 	char line[1400], sentence[300];
 	snprintf(sentence, sizeof sentence, "%.290s", fl_error_line(why, line, sizeof line));
 	if (why->status == FL_E_TAMPERED)
@@ -391,7 +391,7 @@ static void say_no_record(fl_paper *paper, const fl_error *why) {
 }
 
 static fl_status check_certificate(fl_cli *cli, const char *path, fl_exit *code, fl_error *err) {
-	fl_paper paper = {.found = {.cli = cli, .columns = fl_cli_columns(cli)}};
+	fl_checked_paper paper = {.found = {.cli = cli, .columns = fl_cli_columns(cli)}};
 	fl_error why = {0};
 	char *bytes;
 	bool no_trust = false;
