@@ -209,8 +209,11 @@ typedef struct fl_result {
 	double hysteresis_limit_span, linearity_limit_span; /* NAN if none */
 	fl_linearity deciding_linearity;
 	double coverage_probability;
-	bool traceable;             /* false: something expired, overdue or missing was used */
-	const char **not_traceable; /* sentences */
+	fl_function_result *functions; /* the procedure's function checks, in its order */
+	size_t function_count;
+	fl_run_kind functions_after; /* the run whose line gives their true viscosities */
+	bool traceable;              /* false: something expired, overdue or missing was used */
+	const char **not_traceable;  /* sentences */
 	size_t not_traceable_count;
 	const char **warnings; /* capillary outside its limits, oil outside its certified span, low TUR ... */
 	size_t warning_count;

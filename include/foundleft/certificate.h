@@ -11,6 +11,7 @@
 
 #include "foundleft/analysis.h"
 #include "foundleft/base.h"
+#include "foundleft/cause.h"
 #include "foundleft/journal.h"
 #include "foundleft/procedure.h"
 #include "foundleft/seal.h"
@@ -28,6 +29,7 @@ typedef struct fl_issue {
 	const char *journal_digest; /* 64 hex; NULL while it is a draft */
 	const char *journal_name;
 	const char *program_version;
+	const fl_cause *causes;             /* [FL_RUN_KINDS], the opinion on each run; NULL for none */
 	const char *amends, *amends_reason; /* number of the certificate that this one replaces, and why */
 } fl_issue;
 

@@ -77,6 +77,8 @@ static void write_all(fl_writing *w) {
 	fl_write_run(w, FL_RUN_AS_FOUND);
 	fl_write_run(w, FL_RUN_AS_LEFT);
 	fl_write_characteristics(w);
+	fl_write_functions(w);
+	fl_write_opinions(w);
 	fl_write_meaning(w);
 	fl_write_standards(w);
 	fl_write_gates(w);

@@ -32,6 +32,8 @@ void fl_write_statements(fl_writing *w);            /* content_result.c: the out
 void fl_write_chart(fl_writing *w);                 /* content_chart.c */
 void fl_write_run(fl_writing *w, fl_run_kind kind); /* content_run.c: the table of one run */
 void fl_write_characteristics(fl_writing *w);       /* content_result.c: zero, span, linearity, hysteresis ... */
+void fl_write_functions(fl_writing *w);             /* content_function.c: alarms, controller, valve ... */
+void fl_write_opinions(fl_writing *w);              /* content_opinion.c: why, marked as opinion */
 void fl_write_adjustments(fl_writing *w);           /* content_record.c */
 void fl_write_standards(fl_writing *w);             /* content_means.c: equipment and oils */
 void fl_write_gates(fl_writing *w);                 /* content_means.c: conditions, permit and safety */

@@ -13,6 +13,25 @@ static fl_status set_path(fl_case *one, const char *path, fl_error *err) {
 	return FL_OK;
 }
 
+/* An opinion that cannot be formed stands in nobody's way: it says why, and the result is the same. */
+static fl_status find_causes(fl_case *one, fl_error *err) {
+	for (fl_run_kind run = FL_RUN_AS_FOUND; run < FL_RUN_KINDS; run++) {
+		fl_error why = {0};
+		fl_cause *cause = &one->causes[run];
+		if (!one->result.runs[run].available || one->result.runs[run].same_as_found)
+			continue;
+		fl_status status =
+		    fl_cause_find(&one->session, &one->procedure, &one->stock, &one->result, run, NULL, NULL, cause, &why);
+		if (status == FL_E_MEMORY)
+			return fl_fail(err, status, "%s", why.message);
+		if (status >= 0)
+			continue;
+		*cause = (fl_cause){.run = run};
+		cause->unavailable_reason = fl_arena_strdup(&cause->arena, why.message);
+	}
+	return FL_OK;
+}
+
 /* All that follows from the session. */
 static fl_status compute(fl_case *one, fl_error *err) {
 	fl_status status = fl_session_procedure(&one->session, &one->procedure, err);
@@ -24,7 +43,8 @@ static fl_status compute(fl_case *one, fl_error *err) {
 	if (one->stock.instrument_count == 0)
 		return fl_fail_at(err, FL_E_VALUE, (fl_place){.file = one->path}, "the journal names no instrument");
 	one->instrument = &one->stock.instruments[0];
-	return fl_analysis_session(&one->session, &one->procedure, &one->stock, &one->result, err);
+	status = fl_analysis_session(&one->session, &one->procedure, &one->stock, &one->result, err);
+	return status < 0 ? status : find_causes(one, err);
 }
 
 fl_status fl_case_load(const fl_io *io, const char *path, fl_case *out, fl_error *err) {
@@ -51,6 +71,8 @@ fl_status fl_case_load_to(const fl_io *io, const char *path, int sequence, fl_ar
 }
 
 void fl_case_free(fl_case *one) {
+	for (int run = 0; run < FL_RUN_KINDS; run++)
+		fl_cause_free(&one->causes[run]);
 	fl_result_free(&one->result);
 	fl_stock_free(&one->stock);
 	fl_procedure_free(&one->procedure);

@@ -5,6 +5,7 @@
 
 #include "foundleft/analysis.h"
 #include "foundleft/base.h"
+#include "foundleft/cause.h"
 #include "foundleft/journal.h"
 #include "foundleft/procedure.h"
 #include "foundleft/stock.h"
@@ -18,6 +19,7 @@ typedef struct fl_case {
 	fl_stock stock;
 	const fl_instrument *instrument;
 	fl_result result;
+	fl_cause causes[FL_RUN_KINDS]; /* opinion: why each run is as it is; not available where there is nothing to say */
 } fl_case;
 
 /* Reads and verifies the journal, replays it, and computes the result. On failure nothing needs freeing. */

@@ -267,8 +267,7 @@ static fl_status certificate_path(const fl_cli *cli, const fl_derived *derived, 
 static fl_status print_text(const fl_cli *cli, const fl_case *one, const fl_issue *issue, fl_error *err) {
 	fl_sheet *sheet = NULL;
 	fl_text text = {0};
-	fl_status status =
-	    fl_certificate_content(&one->session, &one->procedure, &one->stock, &one->result, issue, &sheet, err);
+	fl_status status = fl_derive_sheet(one, issue, &sheet, err);
 	if (status >= 0) {
 		fl_sheet_text(sheet, &text);
 		fputs(text.data ? text.data : "", cli->out);

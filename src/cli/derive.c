@@ -22,14 +22,19 @@ fl_issue fl_derive_issue(const fl_session *session, const fl_session_issue *entr
 	                  .amends_reason = entry->reason};
 }
 
+fl_status fl_derive_sheet(const fl_case *one, const fl_issue *issue, fl_sheet **out, fl_error *err) {
+	fl_issue whole = *issue;
+	whole.causes = one->causes;
+	return fl_certificate_content(&one->session, &one->procedure, &one->stock, &one->result, &whole, out, err);
+}
+
 fl_status fl_derive_pages(const fl_cli *cli, fl_derived *out, fl_error *err) {
 	char folder[FL_PATH_SIZE];
 	fl_sheet *sheet = NULL;
 	const fl_case *one = &out->one;
 	fl_status status = fl_place_join(folder, cli->data, "faces", err);
 	if (status >= 0)
-		status =
-		    fl_certificate_content(&one->session, &one->procedure, &one->stock, &one->result, &out->issue, &sheet, err);
+		status = fl_derive_sheet(one, &out->issue, &sheet, err);
 	if (status >= 0)
 		status = fl_certificate_pdf_places(sheet, cli->io, &(fl_faces){folder}, &out->bytes, &out->length, &out->places,
 		                                   err);

@@ -27,6 +27,8 @@ fl_status fl_derive(const fl_cli *cli, const char *journal, int sequence, fl_der
 fl_status fl_derive_pages(const fl_cli *cli, fl_derived *out, fl_error *err) FL_MUST_USE;
 /* The issue as the certificate stage wants it; borrows the entry. */
 fl_issue fl_derive_issue(const fl_session *session, const fl_session_issue *entry, const char *digest);
+/* The content of the certificate, opinions included. */
+fl_status fl_derive_sheet(const fl_case *one, const fl_issue *issue, fl_sheet **out, fl_error *err) FL_MUST_USE;
 void fl_derived_free(fl_derived *derived);
 
 /* Finds the journal of a certificate: --journal, else by the digest that it names, beside it and under HOME/sessions.
