@@ -132,8 +132,24 @@ static fl_status refuse_early(const fl_signing *signing, const fl_session *sessi
 	               fl_utc_format(signing->at, now), fl_utc_format(session->last_at, last));
 }
 
+/* The seal would refuse it too, but only after the certificate was issued. */
+static fl_status refuse_invalid(const fl_signing *signing, fl_error *err) {
+	const fl_identity *who = fl_signer_identity(signing->signer);
+	char day[FL_DAY_SIZE];
+	if (signing->at > who->valid_until)
+		return fl_fail(err, FL_E_STATE, "the certificate of %s expired on %s; get a new one, or check the clock",
+		               who->name, fl_day_format(fl_day_of(who->valid_until), day));
+	if (signing->at < who->valid_from)
+		return fl_fail(err, FL_E_STATE, "the certificate of %s is valid from %s only; check the clock", who->name,
+		               fl_day_format(fl_day_of(who->valid_from), day));
+	return FL_OK;
+}
+
 fl_status fl_signing_allowed(const fl_signing *signing, const fl_derived *derived, fl_error *err) {
 	const fl_identity *who = fl_signer_identity(signing->signer);
+	fl_status status = refuse_invalid(signing, err);
+	if (status < 0)
+		return status;
 	const fl_setting *performer = fl_session_setting(&derived->one.session, "performed-by");
 	const char *name = performer ? performer->typed : "";
 	bool is_performer = fl_identity_is_named(who, name);
