@@ -266,8 +266,8 @@ static void draw_sample(const fl_frame *frame, const fl_legend *entry, double x,
 		break;
 	case FL_LEGEND_LINE: {
 		bool upright = entry->stroke == FL_STROKE_EVENT;
-		const double ends[2][2] = {{upright ? x : x - 7, upright ? y - 5 : y},
-		                           {upright ? x : x + 7, upright ? y + 5 : y}};
+		const double ends[2][2] = {{upright ? x : x - 5, upright ? y - 5 : y},
+		                           {upright ? x : x + 6, upright ? y + 5 : y}};
 		fl_ink_op(press, "q");
 		set_stroke(press, entry->stroke);
 		fl_ink_path(press, ends, 2);

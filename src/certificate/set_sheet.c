@@ -282,6 +282,8 @@ static void set_block(fl_press *press, const fl_block *block, const fl_block *ne
 		if (next && next->kind == FL_BLOCK_SIGNATURES)
 			fl_press_need(press, lines_height(press, STYLE_SMALL, block->text, FL_MEASURE) +
 			                         signatures_height(press, next, signature_width(next)) + 27);
+		else if (next && next->kind == FL_BLOCK_END) /* the end mark is not left alone overleaf */
+			fl_press_need(press, lines_height(press, STYLE_SMALL, block->text, FL_MEASURE) + 27);
 		set_text(press, STYLE_SMALL, block->lead, block->text, FL_LEFT, FL_MEASURE);
 		press->y -= 2.5;
 		break;

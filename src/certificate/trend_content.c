@@ -152,7 +152,8 @@ static void write_statements(fl_years *y) {
 		fl_sheet_add(y->sheet, FL_BLOCK_STATEMENT, "No point was read in the last session: nothing can be followed.");
 		return;
 	}
-	fl_sheet_addf(y->sheet, FL_BLOCK_STATEMENT, "%s: %s", q->name, fl_word_sentence(y->sheet, q->forecast.sentence));
+	fl_sheet_add(y->sheet, FL_BLOCK_STATEMENT,
+	             fl_word_sentence(y->sheet, fl_sheet_printf(y->sheet, "%s: %s", q->name, q->forecast.sentence)));
 	if (q->drift.determined)
 		fl_sheet_add(y->sheet, FL_BLOCK_TEXT, fl_word_sentence(y->sheet, q->drift.sentence));
 	if (q->drift.accelerates)
@@ -166,14 +167,11 @@ static void write_meaning(fl_years *y) {
 	                 "As-found of a session minus as-left of the one before, added up: what the instrument would show "
 	                 "had nobody turned its screws. It begins anew where the capillary was cleaned, a part was "
 	                 "exchanged, or something was done between two sessions.");
-	fl_sheet_add_led(y->sheet, FL_BLOCK_SMALL, "Guarded limit.",
-	                 "The tolerance less the expanded uncertainty of the last session. By the mean: where the straight "
-	                 "line from the last as-left reaches it. By the 95 %% bound: where the two-sided prediction "
-	                 "interval for one further reading first touches it. No line is drawn through fewer than three "
-	                 "intervals.");
-	fl_sheet_add_led(y->sheet, FL_BLOCK_SMALL, "Source.",
-	                 "Computed from the record book's entries; the certificates named in the history rule. All errors "
-	                 "are in percent of the output span.");
+	fl_sheet_add_led(
+	    y->sheet, FL_BLOCK_SMALL, "Guarded limit.",
+	    "Tolerance less the expanded uncertainty of the last session. By the mean: where the straight line "
+	    "from the last as-left reaches it; by the 95 %% bound: where the prediction interval of one further "
+	    "reading does. Fewer than three intervals give no line. The certificates named above rule.");
 }
 
 /* ---- all of it --------------------------------------------------------------------------------------------------- */

@@ -102,6 +102,9 @@ void fl_years_drift(fl_years *y) {
 	for (size_t i = 0; i < y->quantities; i++) {
 		const fl_quantity_years *q = &y->of[i];
 		bool has = q->drift.determined;
+		const fl_tooth *tooth = &q->saw.teeth[q->saw.count - 1];
+		if (isnan(tooth->as_found) && isnan(tooth->as_left))
+			continue; /* not determined in the last session */
 		const char *cells[] = {q->name,
 		                       fl_sheet_printf(sheet, "%d", q->drift.intervals),
 		                       has ? fl_years_percent(y, q->drift.slope, 3) : FL_ABSENT,
@@ -147,8 +150,8 @@ void fl_years_interval(fl_years *y) {
 		add_proposal(y, table, y->report->fleet);
 	fl_sheet_add(
 	    sheet, FL_BLOCK_SMALL,
-	    "Proposals, not decisions: whoever answers for the instrument agrees the interval, by its use and what "
-	    "a wrong reading would cost. Due dates count from the day of the calibration.");
+	    "Proposals, not decisions: whoever answers for the instrument agrees the interval. Due dates count from the "
+	    "calibration's day.");
 }
 
 /* ---- look-back --------------------------------------------------------------------------------------------------- */
@@ -157,6 +160,8 @@ static const char *day_meaning(const fl_lookback *l, int i) {
 	static const char *const meanings[FL_LOOKBACK_DAYS] = {"calibrated and left", "not before, by the uncertainties",
 	                                                       "by the values", "not after, by the uncertainties",
 	                                                       "found out of tolerance"};
+	if (i == 0 && l->before_from)
+		return "calibrated and left; within the uncertainties beyond it already";
 	return i == 3 && l->latest == FL_NO_DAY ? "the crossing itself is not certain" : meanings[i];
 }
 
@@ -169,6 +174,8 @@ static void lookback_days(fl_years *y, const fl_lookback *l) {
 		return;
 	fl_block *table = fl_sheet_add_table(y->sheet, columns, 4);
 	for (int i = 0; i < FL_LOOKBACK_DAYS; i++) {
+		if (i == 1 && l->earliest <= l->from)
+			continue; /* the first row says it */
 		const char *cells[] = {fl_word_day(y->sheet, l->days[i].day), day_meaning(l, i),
 		                       fl_years_percent(y, l->days[i].error_at_set_point, 2),
 		                       fl_word_number(y->sheet, l->days[i].true_value, 2)};

@@ -1,6 +1,6 @@
 # What the tests of the certificate need beside their sources: the faces, and a program that writes sample certificates.
 # GPL-3.0-or-later.
-foreach(program test_certificate_pdf test_certificate_memory)
+foreach(program test_certificate_pdf test_certificate_memory test_certificate_years)
 	if(TARGET ${program})
 		target_compile_definitions(${program} PRIVATE FACES_FOLDER="${FOUNDLEFT_FACES}")
 		add_dependencies(${program} foundleft_faces)
