@@ -64,6 +64,7 @@ typedef struct fl_equipment {
 } fl_equipment;
 
 typedef struct fl_instrument {
+	fl_day since; /* this description holds from this day on; FL_NO_DAY: from the first */
 	const char *tag, *serial, *site, *owner, *position, *maker_plate; /* "" where not given */
 	fl_scale scale;
 	bool has_geometry;
@@ -76,7 +77,7 @@ typedef struct fl_instrument {
 	fl_band adjust_limit;
 	double hysteresis_limit_pct_span;                             /* NAN: the procedure's */
 	double set_point, set_point_tolerance, alarm_low, alarm_high; /* dial units; NAN where not stated */
-	int interval_months; /* agreed between calibrations; 0 if none */
+	int interval_months;                                          /* agreed between calibrations; 0 if none */
 	fl_place place;
 	const char *text;
 } fl_instrument;
@@ -94,7 +95,9 @@ typedef struct fl_stock {
 /* Reads the text of a stock file (top key `oils`, `equipment` or `instruments`; several may stand in one file) and
  * adds its items. Checks each item and refuses with place and field: no k, swapped viscosity columns (mu = nu rho),
  * viscosity not falling with temperature, a lot that is not the certificate's, geometry that cannot give the stated
- * full-scale pressure within 15 %, unknown unit, a dial in mm2/s without dial density, doubled items. */
+ * full-scale pressure within 15 %, unknown unit, a dial in mm2/s without dial density, doubled items. A lot, an id or a
+ * tag may stand several times, each with another day (certified on, calibrated on, since): its certificates over time.
+ */
 fl_status fl_stock_parse(fl_stock *stock, const char *text, const char *file, fl_error *err) FL_MUST_USE;
 fl_status fl_stock_load(fl_stock *stock, const fl_io *io, const char *path, fl_error *err) FL_MUST_USE;
 /* Adds one item from its excerpt, as the journal keeps it. */
@@ -103,10 +106,14 @@ fl_status fl_stock_parse_equipment(fl_stock *stock, const char *excerpt, const c
 fl_status fl_stock_parse_instrument(fl_stock *stock, const char *excerpt, const char *name, fl_error *err) FL_MUST_USE;
 void fl_stock_free(fl_stock *stock);
 
-/* NULL if there is none. Borrowed until the next item of that kind is added. */
+/* The newest of that name. NULL if there is none. Borrowed until the next item of that kind is added. */
 const fl_oil *fl_stock_oil(const fl_stock *stock, const char *lot);
 const fl_equipment *fl_stock_equipment(const fl_stock *stock, const char *id);
 const fl_instrument *fl_stock_instrument(const fl_stock *stock, const char *tag);
+
+/* Keeps of each lot, id and tag only what counts on `day`: the newest that had begun by then, or the oldest where none
+ * had, so that its being too new is told. Pointers to items are void then. */
+void fl_stock_keep(fl_stock *stock, fl_day day);
 
 /* Is it in date on `day`? An expired oil or overdue equipment gives FL_E_VALUE with a sentence that names item,
  * date and place; a day before it was certified likewise. */

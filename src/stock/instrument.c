@@ -9,6 +9,7 @@
 #include "read.h"
 
 static const char *const fields[] = {"tag",
+                                     "since",
                                      "serial",
                                      "site",
                                      "owner",
@@ -41,6 +42,8 @@ static fl_status read_plate(const fl_node *map, fl_instrument *item, fl_error *e
 	item->site = item->owner = item->position = item->maker_plate = "";
 	TRY(fl_node_text(map, "tag", true, &item->tag, err));
 	TRY(fl_node_text(map, "serial", true, &item->serial, err));
+	item->since = FL_NO_DAY;
+	TRY(fl_node_day(map, "since", false, &item->since, err));
 	TRY(fl_node_text(map, "site", false, &item->site, err));
 	TRY(fl_node_text(map, "owner", false, &item->owner, err));
 	TRY(fl_node_text(map, "position", false, &item->position, err));

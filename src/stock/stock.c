@@ -58,12 +58,26 @@ static fl_status doubled(const fl_node *map, const char *key, const char *what, 
 	                  what, name, first.file, first.line);
 }
 
+/* A further certificate of the same thing has another day and the same name or role. */
+static fl_status check_oil_versions(const fl_stock *stock, const fl_node *map, const fl_oil *oil, fl_error *err) {
+	for (size_t i = 0; i < stock->oil_count; i++) {
+		const fl_oil *other = &stock->oils[i];
+		if (strcmp(other->lot, oil->lot) != 0)
+			continue;
+		if (other->certified_on == oil->certified_on)
+			return doubled(map, "lot", "lot", oil->lot, other->place, err);
+		if (strcmp(other->name, oil->name) != 0)
+			return fl_fail_at(err, FL_E_VALUE, fl_stock_place(map, "name"),
+			                  "lot %s is %s in its other certificate (%s, line %d): a lot is one oil", oil->lot,
+			                  other->name, other->place.file, other->place.line);
+	}
+	return FL_OK;
+}
+
 static fl_status add_oil(fl_stock *stock, const char *source, const fl_node *map, fl_error *err) {
 	fl_oil oil = {.place = fl_node_place(map), .text = fl_document_excerpt(&stock->arena, source, map)};
 	TRY(fl_stock_read_oil(&stock->arena, map, &oil, err));
-	const fl_oil *same = fl_stock_oil(stock, oil.lot);
-	if (same)
-		return doubled(map, "lot", "lot", oil.lot, same->place, err);
+	TRY(check_oil_versions(stock, map, &oil, err));
 	fl_oil *grown = fl_arena_grow(&stock->arena, stock->oils, stock->oil_count, &stock->oil_capacity, sizeof *grown);
 	if (!grown || !oil.text)
 		return out_of_memory(err);
@@ -72,12 +86,26 @@ static fl_status add_oil(fl_stock *stock, const char *source, const fl_node *map
 	return FL_OK;
 }
 
+static fl_status check_equipment_versions(const fl_stock *stock, const fl_node *map, const fl_equipment *item,
+                                          fl_error *err) {
+	for (size_t i = 0; i < stock->equipment_count; i++) {
+		const fl_equipment *other = &stock->equipment[i];
+		if (strcmp(other->id, item->id) != 0)
+			continue;
+		if (other->calibrated_on == item->calibrated_on)
+			return doubled(map, "id", "equipment", item->id, other->place, err);
+		if (other->role != item->role)
+			return fl_fail_at(err, FL_E_VALUE, fl_stock_place(map, "role"),
+			                  "%s is a %s in its other certificate (%s, line %d): give the other one an id of its own",
+			                  item->id, fl_stock_role_text(other->role), other->place.file, other->place.line);
+	}
+	return FL_OK;
+}
+
 static fl_status add_equipment(fl_stock *stock, const char *source, const fl_node *map, fl_error *err) {
 	fl_equipment item = {.place = fl_node_place(map), .text = fl_document_excerpt(&stock->arena, source, map)};
 	TRY(fl_stock_read_equipment(&stock->arena, map, &item, err));
-	const fl_equipment *same = fl_stock_equipment(stock, item.id);
-	if (same)
-		return doubled(map, "id", "equipment", item.id, same->place, err);
+	TRY(check_equipment_versions(stock, map, &item, err));
 	fl_equipment *grown = fl_arena_grow(&stock->arena, stock->equipment, stock->equipment_count,
 	                                    &stock->equipment_capacity, sizeof *grown);
 	if (!grown || !item.text)
@@ -91,9 +119,10 @@ static fl_status add_equipment(fl_stock *stock, const char *source, const fl_nod
 static fl_status check_sisters(const fl_stock *stock, const fl_node *map, const fl_instrument *item, fl_error *err) {
 	for (size_t i = 0; i < stock->instrument_count; i++) {
 		const fl_instrument *other = &stock->instruments[i];
-		if (strcmp(other->tag, item->tag) == 0)
+		bool same = strcmp(other->tag, item->tag) == 0;
+		if (same && other->since == item->since)
 			return doubled(map, "tag", "instrument", item->tag, other->place, err);
-		if (strcmp(other->serial, item->serial) == 0)
+		if (!same && strcmp(other->serial, item->serial) == 0)
 			return fl_fail_at(err, FL_E_EXISTS, fl_stock_place(map, "serial"),
 			                  "serial %s belongs to instrument %s already: look at both maker's plates", item->serial,
 			                  other->tag);
@@ -184,22 +213,77 @@ void fl_stock_free(fl_stock *stock) {
  * ----------------------------------------------------------------------------------------------------------- */
 
 const fl_oil *fl_stock_oil(const fl_stock *stock, const char *lot) {
+	const fl_oil *newest = NULL;
 	for (size_t i = 0; i < stock->oil_count; i++)
-		if (strcmp(stock->oils[i].lot, lot) == 0)
-			return &stock->oils[i];
-	return NULL;
+		if (strcmp(stock->oils[i].lot, lot) == 0 && (!newest || stock->oils[i].certified_on > newest->certified_on))
+			newest = &stock->oils[i];
+	return newest;
 }
 
 const fl_equipment *fl_stock_equipment(const fl_stock *stock, const char *id) {
+	const fl_equipment *newest = NULL;
 	for (size_t i = 0; i < stock->equipment_count; i++)
-		if (strcmp(stock->equipment[i].id, id) == 0)
-			return &stock->equipment[i];
-	return NULL;
+		if (strcmp(stock->equipment[i].id, id) == 0 &&
+		    (!newest || stock->equipment[i].calibrated_on > newest->calibrated_on))
+			newest = &stock->equipment[i];
+	return newest;
 }
 
 const fl_instrument *fl_stock_instrument(const fl_stock *stock, const char *tag) {
+	const fl_instrument *newest = NULL;
 	for (size_t i = 0; i < stock->instrument_count; i++)
-		if (strcmp(stock->instruments[i].tag, tag) == 0)
-			return &stock->instruments[i];
-	return NULL;
+		if (strcmp(stock->instruments[i].tag, tag) == 0 && (!newest || stock->instruments[i].since > newest->since))
+			newest = &stock->instruments[i];
+	return newest;
+}
+
+/* ---- certificates over time -------------------------------------------------------------------------------------- */
+
+/* Does version `a` count before `b` on the day? Of those begun the newest, else the oldest. */
+static bool counts_before(fl_day a, fl_day b, fl_day day) {
+	if ((a <= day) != (b <= day))
+		return a <= day;
+	return a <= day ? a > b : a < b;
+}
+
+static bool oil_counts(const fl_stock *stock, const fl_oil *oil, fl_day day) {
+	for (size_t i = 0; i < stock->oil_count; i++)
+		if (strcmp(stock->oils[i].lot, oil->lot) == 0 &&
+		    counts_before(stock->oils[i].certified_on, oil->certified_on, day))
+			return false;
+	return true;
+}
+
+static bool equipment_counts(const fl_stock *stock, const fl_equipment *item, fl_day day) {
+	for (size_t i = 0; i < stock->equipment_count; i++)
+		if (strcmp(stock->equipment[i].id, item->id) == 0 &&
+		    counts_before(stock->equipment[i].calibrated_on, item->calibrated_on, day))
+			return false;
+	return true;
+}
+
+static bool instrument_counts(const fl_stock *stock, const fl_instrument *item, fl_day day) {
+	for (size_t i = 0; i < stock->instrument_count; i++)
+		if (strcmp(stock->instruments[i].tag, item->tag) == 0 &&
+		    counts_before(stock->instruments[i].since, item->since, day))
+			return false;
+	return true;
+}
+
+/* Drops the items of one kind that do not count, keeping the order of the rest. An item is judged among those not yet
+ * dropped: whichever goes first, the one that counts stays. */
+#define KEEP(items, count, counts)                                            \
+	for (size_t i = 0; i < (count);) {                                        \
+		if (counts(stock, &(items)[i], day)) {                                \
+			i++;                                                              \
+			continue;                                                         \
+		}                                                                     \
+		(count)--;                                                            \
+		memmove(&(items)[i], &(items)[i + 1], ((count)-i) * sizeof *(items)); \
+	}
+
+void fl_stock_keep(fl_stock *stock, fl_day day) {
+	KEEP(stock->oils, stock->oil_count, oil_counts)
+	KEEP(stock->equipment, stock->equipment_count, equipment_counts)
+	KEEP(stock->instruments, stock->instrument_count, instrument_counts)
 }
