@@ -3,6 +3,7 @@
 #include <stdlib.h>
 #include <string.h>
 
+#include "advise.h"
 #include "case.h"
 #include "cli.h"
 #include "foundleft/entry.h"
@@ -20,6 +21,7 @@ typedef struct bench {
 	int64_t pace_s;  /* replay: it goes on by this after each line */
 	bool is_declared;
 	char path[FL_PATH_SIZE];
+	fl_adviser_context adviser;
 } bench;
 
 static void bench_free(bench *b) {
@@ -74,8 +76,17 @@ static fl_status record_offset(bench *b, int offset_min, fl_error *err) {
 	return fl_journal_commit(&b->journal, &event, err);
 }
 
+/* Of the certificates of one thing only what counts on the session's day is there to choose from. */
+static fl_status settle_stock(bench *b, fl_day day, fl_error *err) {
+	const char *tag = b->instrument->tag;
+	fl_stock_keep(&b->stock, day);
+	return find_instrument(b, tag, err);
+}
+
 static fl_status open_session(const fl_cli *cli, bench *b, fl_source source, fl_day day, fl_error *err) {
-	fl_status status = fl_place_new_journal(cli, day, b->instrument->tag, b->path, err);
+	fl_status status = settle_stock(b, day, err);
+	if (status >= 0)
+		status = fl_place_new_journal(cli, day, b->instrument->tag, b->path, err);
 	if (status < 0)
 		return status;
 	fl_utc now = bench_clock(b);
@@ -87,13 +98,16 @@ static fl_status open_session(const fl_cli *cli, bench *b, fl_source source, fl_
 	return record_offset(b, b->is_declared ? 0 : fl_cli_utc_offset_min(now), err);
 }
 
-static fl_entry_setup setup_of(bench *b) {
+static fl_entry_setup setup_of(const fl_cli *cli, bench *b) {
+	b->adviser = (fl_adviser_context){.shelf = &b->stock, .columns = fl_cli_columns(cli)};
 	return (fl_entry_setup){.journal = &b->journal,
 	                        .procedure = &b->procedure,
 	                        .instrument = b->instrument,
 	                        .stock = &b->stock,
 	                        .clock = bench_clock,
 	                        .clock_context = b,
+	                        .advise = fl_cli_advise,
+	                        .advise_context = &b->adviser,
 	                        .utc_offset_min = b->is_declared ? 0 : fl_cli_utc_offset_min(bench_clock(b))};
 }
 
@@ -128,7 +142,7 @@ static void show_refusal(const fl_cli *cli, fl_error *err) {
 }
 
 static fl_status converse(fl_cli *cli, bench *b, fl_talk *talk, fl_error *err) {
-	fl_entry_setup setup = setup_of(b);
+	fl_entry_setup setup = setup_of(cli, b);
 	fl_status status = fl_entry_new(&b->entry, &setup, err);
 	fl_text text = {0};
 	const char *line;
@@ -303,6 +317,8 @@ fl_status fl_command_resume(fl_cli *cli, fl_exit *code, fl_error *err) {
 		status = fl_journal_resume(&b.journal, cli->io, b.path, fl_cli_now(), err);
 	b.journal_open = status >= 0;
 	if (status >= 0)
+		fl_stock_keep(&b.stock, b.journal.session.day);
+	if (status >= 0)
 		status = record_resume(&b, err);
 	if (status >= 0)
 		status = fl_session_procedure(&b.journal.session, &b.procedure, err);
@@ -348,7 +364,7 @@ static fl_status start_entry(replay *r, fl_error *err) {
 	fl_status status = open_session(r->cli, b, FL_SOURCE_REPLAY, r->day, err);
 	if (status < 0)
 		return status;
-	fl_entry_setup setup = setup_of(b);
+	fl_entry_setup setup = setup_of(r->cli, b);
 	return fl_entry_new(&b->entry, &setup, err);
 }
 
@@ -475,7 +491,7 @@ static fl_status import_rows(fl_cli *cli, bench *b, const char *csv, const char 
 	if (status >= 0)
 		status = open_session(cli, b, FL_SOURCE_IMPORT, day, err);
 	if (status >= 0) {
-		fl_entry_setup setup = setup_of(b);
+		fl_entry_setup setup = setup_of(cli, b);
 		status = fl_entry_import(&setup, csv, file, &options, &say, err);
 	}
 	if (say.length)
