@@ -277,6 +277,15 @@ typedef struct fl_cause {
 fl_status fl_cause_find(const fl_session *session, const fl_procedure *procedure, const fl_stock *stock,
                         const fl_result *result, fl_run_kind run, const fl_cause_extra *extra, const fl_stock *shelf,
                         fl_cause *out, fl_error *err) FL_MUST_USE;
+/* What the opinion proposes to decide, and why; everything is borrowed from `cause`. */
+typedef struct fl_course {
+	fl_decision decision;      /* FL_DECISION_NONE: something is to be found out, or answered, first */
+	const fl_finding *because; /* NULL where it rests on the adjust limit alone */
+	const char *reason;        /* a sentence */
+	bool rules_out_adjusting;  /* an adjustment now would hide a fault that is none of its own */
+} fl_course;
+/* `run` is the run of the search. False where there is nothing to propose from. */
+bool fl_cause_course(const fl_cause *cause, const fl_run_result *run, fl_course *out);
 void fl_cause_free(fl_cause *cause);
 const fl_finding *fl_cause_finding(const fl_cause *cause, fl_finding_kind kind); /* the first; NULL if none */
 

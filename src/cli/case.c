@@ -20,8 +20,8 @@ static fl_status find_causes(fl_case *one, fl_error *err) {
 		fl_cause *cause = &one->causes[run];
 		if (!one->result.runs[run].available || one->result.runs[run].same_as_found)
 			continue;
-		fl_status status =
-		    fl_cause_find(&one->session, &one->procedure, &one->stock, &one->result, run, NULL, NULL, cause, &why);
+		fl_status status = fl_cause_find(&one->session, &one->procedure, &one->stock, &one->result, run, NULL,
+		                                 one->shelf, cause, &why);
 		if (status == FL_E_MEMORY)
 			return fl_fail(err, status, "%s", why.message);
 		if (status >= 0)
@@ -70,12 +70,21 @@ fl_status fl_case_load_to(const fl_io *io, const char *path, int sequence, fl_ar
 	return status;
 }
 
+fl_status fl_case_of(const fl_session *session, const fl_stock *shelf, fl_case *out, fl_error *err) {
+	*out = (fl_case){.session = *session, .shelf = shelf, .borrowed = true};
+	fl_status status = compute(out, err);
+	if (status < 0)
+		fl_case_free(out);
+	return status;
+}
+
 void fl_case_free(fl_case *one) {
 	for (int run = 0; run < FL_RUN_KINDS; run++)
 		fl_cause_free(&one->causes[run]);
 	fl_result_free(&one->result);
 	fl_stock_free(&one->stock);
 	fl_procedure_free(&one->procedure);
-	fl_session_free(&one->session);
+	if (!one->borrowed)
+		fl_session_free(&one->session);
 	*one = (fl_case){0};
 }

@@ -18,6 +18,8 @@ typedef struct fl_case {
 	fl_procedure procedure;
 	fl_stock stock;
 	const fl_instrument *instrument;
+	const fl_stock *shelf; /* oils to choose a further point from; NULL: the session's */
+	bool borrowed;         /* the session is another's */
 	fl_result result;
 	fl_cause causes[FL_RUN_KINDS]; /* opinion: why each run is as it is; not available where there is nothing to say */
 } fl_case;
@@ -27,6 +29,8 @@ fl_status fl_case_load(const fl_io *io, const char *path, fl_case *out, fl_error
 /* The same of the journal as it stood with its line `sequence`; *bytes are the lines up to and with it, in `arena`. */
 fl_status fl_case_load_to(const fl_io *io, const char *path, int sequence, fl_arena *arena, char **bytes,
                           size_t *length, fl_case *out, fl_error *err) FL_MUST_USE;
+/* Of a session under way, which stays its owner's; `shelf` the oils that further points could be taken with. */
+fl_status fl_case_of(const fl_session *session, const fl_stock *shelf, fl_case *out, fl_error *err) FL_MUST_USE;
 void fl_case_free(fl_case *one);
 
 #endif

@@ -7,6 +7,12 @@
 
 /* The whole assessment as text, at most `columns` wide (at least 60), readable without colour. Pure. */
 void fl_report_text(const fl_case *one, int columns, fl_text *out);
+/* The findings on why the runs are as they are, marked as opinion; nothing where there is nothing to say. */
+void fl_report_why(const fl_case *one, int columns, fl_text *out);
+/* The function checks; nothing where the procedure has none. */
+void fl_report_functions(const fl_case *one, int columns, fl_text *out);
+/* What is shown at the decision: the as-found result in short, the findings, the proposal. */
+void fl_report_so_far(const fl_case *one, int columns, fl_text *out);
 /* One point explained is for a later issue; the error picture alone, as fl_report_text draws it. */
 void fl_report_picture(const fl_case *one, int columns, fl_text *out);
 /* The result as one JSON object, keys in a stable order, numbers shortest round-trip; documented in docs/json.md. */

@@ -529,16 +529,25 @@ static void print_legend(const report_page *page) {
 	fl_text_add(page->out, "\n");
 }
 
+void fl_report_so_far(const fl_case *one, int columns, fl_text *out) {
+	const report_page page = {one, columns < 60 ? 60 : columns, out};
+	print_decision(&page, &one->result.runs[FL_RUN_AS_FOUND]);
+	fl_text_add(out, "\n");
+	fl_report_why(one, page.columns, out);
+}
+
 void fl_report_text(const fl_case *one, int columns, fl_text *out) {
 	const report_page page = {one, columns < 60 ? 60 : columns, out};
 	const fl_result *result = &one->result;
 	print_title(&page);
 	print_traceability(&page);
 	print_decisions(&page);
+	fl_report_why(one, page.columns, out);
 	print_facts(&page);
 	sentences(&page, "Warnings", result->warnings, result->warning_count);
 	for (int kind = 0; kind < FL_RUN_KINDS; kind++)
 		print_run(&page, &result->runs[kind]);
+	fl_report_functions(one, page.columns, out);
 	if (result->runs[FL_RUN_AS_FOUND].available || result->runs[FL_RUN_AS_LEFT].available)
 		print_legend(&page);
 	fl_report_picture(one, page.columns, out);
