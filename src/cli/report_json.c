@@ -9,6 +9,7 @@
 #include "json.h"
 #include "report.h"
 #include "report_parts.h"
+#include "report_why_json.h"
 
 #define FORMAT "foundleft-assessment-1"
 #define PERCENT FL_JSON_PERCENT
@@ -70,6 +71,7 @@ static void write_session(fl_json *to, const fl_case *one) {
 		fl_json_end(to, '}');
 	}
 	fl_json_end(to, ']');
+	fl_report_measurements_json(to, session);
 	fl_json_begin(to, "remarks", '[');
 	for (size_t i = 0; i < session->remark_count; i++)
 		fl_json_string(to, NULL, session->remarks[i].typed);
@@ -393,6 +395,7 @@ static void write_run(fl_json *to, const fl_case *one, const fl_run_result *run,
 	fl_json_boolean(to, "inside_adjust_limit", run->available && run->inside_adjust_limit);
 	write_figures(to, one, run);
 	fl_json_strings(to, "not_determined", run->not_determined, run->not_determined_count);
+	fl_report_cause_json(to, one, kind);
 	fl_json_integer(to, "struck_count", (long long)run->struck_count);
 	write_points(to, one, run);
 	fl_json_end(to, '}');
@@ -411,6 +414,7 @@ fl_status fl_report_json(const fl_case *one, fl_text *out, fl_error *err) {
 	for (int kind = 0; kind < FL_RUN_KINDS; kind++)
 		write_run(&to, one, &one->result.runs[kind], (fl_run_kind)kind);
 	fl_json_end(&to, ']');
+	fl_report_functions_json(&to, one);
 	fl_json_end(&to, '}');
 	fl_text_add(out, "\n");
 	if (out->failed)
