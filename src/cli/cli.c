@@ -3,6 +3,7 @@
 #include "cli.h"
 
 #include <getopt.h>
+#include <stdlib.h>
 #include <string.h>
 #include <sys/ioctl.h>
 #include <time.h>
@@ -43,7 +44,9 @@ static const fl_command COMMANDS[] = {
      fl_command_import},
     {"assess", "JOURNAL", "compute errors, linearity, hysteresis, uncertainty, decision",
      "Prints tables and the error picture, or one JSON object with --json.", 1, 1,
-     BIT(FL_OPT_HOME) | BIT(FL_OPT_JSON) | BIT(FL_OPT_WIDTH) | BIT(FL_OPT_STRICT), fl_command_assess},
+     BIT(FL_OPT_HOME) | BIT(FL_OPT_JSON) | BIT(FL_OPT_WIDTH) | BIT(FL_OPT_STRICT) | BIT(FL_OPT_BUDGET) |
+         BIT(FL_OPT_EXPLAIN) | BIT(FL_OPT_TRIALS) | BIT(FL_OPT_SEED) | BIT(FL_OPT_THREADS),
+     fl_command_assess},
     {"certify", "JOURNAL", "issue the certificate as PDF/A, signed with --signer",
      "The issue is an entry of the journal; the same number gives the same bytes again. A certificate that exists is "
      "never overwritten, only added to by signatures. Another certificate of the same session must say with --amends "
@@ -63,6 +66,29 @@ static const fl_command COMMANDS[] = {
      "Says of each file what it is, who vouches for it and whether every byte fits: a line for each thing checked, and "
      "a verdict.",
      1, 1000, BIT(FL_OPT_HOME) | BIT(FL_OPT_JOURNAL), fl_command_check},
+    {"history", "TAG [SERIAL]", "the years of one instrument: sessions, drift, forecast, intervals",
+     "Reads the record book. Drift is chained (as-found minus the as-left before), so that adjustments do not hide it; "
+     "fewer than three intervals give no line. --follow chooses what the picture shows.",
+     1, 2, BIT(FL_OPT_HOME) | BIT(FL_OPT_JSON) | BIT(FL_OPT_WIDTH) | BIT(FL_OPT_FOLLOW) | BIT(FL_OPT_FLEET),
+     fl_command_history},
+    {"due", "", "what is due for calibration, soonest first",
+     "Counted from the day of the calibration, by the interval that the instrument's stock states; the month's "
+     "last day where it has no such day.",
+     0, 0, BIT(FL_OPT_HOME) | BIT(FL_OPT_JSON) | BIT(FL_OPT_WIDTH) | BIT(FL_OPT_ON), fl_command_due},
+    {"lookback", "TAG [SERIAL]", "an instrument was found out of tolerance: since when, and what it did",
+     "A report to be signed with a disposition: the days between which the limit was crossed, the true viscosity that "
+     "the engine got, the records affected.",
+     1, 2, BIT(FL_OPT_HOME) | BIT(FL_OPT_JSON) | BIT(FL_OPT_WIDTH) | BIT(FL_OPT_RECORD), fl_command_lookback},
+    {"book", "WORD [ARGUMENT...]", "the record book: put in, check, copy, bundle, export, trace",
+     "found NAME begins one. add JOURNAL... puts closed sessions in, each once. check verifies all and recomputes "
+     "every result. backup FILE copies it while in use. restore FILE makes it anew from a backup; needs --prefix. "
+     "export csv or json writes every record. bundle FILE writes the ship's records for an office, take FILE "
+     "takes them in. trace LOT-OR-ID lists what a lot or measuring equipment fed. numbers lists those given out "
+     "and never used.",
+     1, 10001,
+     BIT(FL_OPT_HOME) | BIT(FL_OPT_PREFIX) | BIT(FL_OPT_SINCE) | BIT(FL_OPT_UNTIL) | BIT(FL_OPT_ACCEPT) |
+         BIT(FL_OPT_OUT),
+     fl_command_book},
     {"list", "[procedures|stock|sessions]", "show what there is, with due dates and open sessions", "", 0, 1, PLACES,
      fl_command_list},
 };
@@ -125,6 +151,19 @@ int fl_cli_columns(const fl_cli *cli) {
 	if (cli->terminal && ioctl(STDOUT_FILENO, TIOCGWINSZ, &size) == 0 && size.ws_col > 0)
 		columns = size.ws_col;
 	return columns < 60 ? 60 : columns > 100 ? 100 : columns;
+}
+
+fl_status fl_cli_width(const fl_cli *cli, int *columns, fl_error *err) {
+	*columns = fl_cli_columns(cli);
+	const char *text = cli->values[FL_OPT_WIDTH];
+	if (text == NULL)
+		return FL_OK;
+	char *rest;
+	long value = strtol(text, &rest, 10);
+	if (rest == text || *rest || value < 60 || value > 200)
+		return fl_fail(err, FL_E_USAGE, "--width takes a number of columns from 60 to 200, not `%s`", text);
+	*columns = (int)value;
+	return FL_OK;
 }
 
 void fl_cli_left_out(const fl_cli *cli, const fl_error *err) {

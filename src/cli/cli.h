@@ -40,6 +40,11 @@ typedef enum fl_exit {
 	X(FL_OPT_JSON, "json", NULL, "one JSON object on standard output")                                          \
 	X(FL_OPT_WIDTH, "width", "COLUMNS", "width of tables and pictures (default: the terminal's, at most 100)")  \
 	X(FL_OPT_STRICT, "strict", NULL, "exit with 1 unless the last run's verdict is pass")                       \
+	X(FL_OPT_BUDGET, "budget", NULL, "the uncertainty budget of every point as a table")                        \
+	X(FL_OPT_EXPLAIN, "explain", "POINT", "every number of a point: an oil, a lot or zero, a direction behind") \
+	X(FL_OPT_TRIALS, "trials", "N|auto", "propagate by Monte Carlo: N trials, or until two digits are stable")  \
+	X(FL_OPT_SEED, "seed", "S", "of the trials (default: from the journal's digest)")                           \
+	X(FL_OPT_THREADS, "threads", "T", "for the trials (default: every core); changes no digit")                 \
 	X(FL_OPT_NUMBER, "number", "TEXT", "certificate number (default: the session's name)")                      \
 	X(FL_OPT_DATE, "date", "YYYY-MM-DD", "date of issue (default: today)")                                      \
 	X(FL_OPT_AUTHORISED_BY, "authorised-by", "NAME", "who authorises the certificate")                          \
@@ -57,7 +62,15 @@ typedef enum fl_exit {
 	X(FL_OPT_RSA, "rsa", NULL, "an RSA key of 3072 bit instead of an elliptic one (P-256)")                     \
 	X(FL_OPT_SELF_SIGNED, "self-signed", NULL, "certify the key by itself")                                     \
 	X(FL_OPT_DAYS, "days", "N", "how long a self-signed certificate holds (default: 730)")                      \
-	X(FL_OPT_REQUEST, "request", NULL, "print a certificate request for an authority")
+	X(FL_OPT_REQUEST, "request", NULL, "print a certificate request for an authority")                         \
+	X(FL_OPT_FOLLOW, "follow", "WHAT", "zero, span, stopped zero, or the oil of a point")                      \
+	X(FL_OPT_FLEET, "fleet", NULL, "read all instruments too, for the reliability of the fleet")               \
+	X(FL_OPT_ON, "on", "YYYY-MM-DD", "the day to count from (default: today)")                                 \
+	X(FL_OPT_RECORD, "record", "NUMBER", "the record to look back from (default: the last that failed)")       \
+	X(FL_OPT_PREFIX, "prefix", "LETTERS", "what the book's numbers begin with, such as QH")                    \
+	X(FL_OPT_SINCE, "since", "YYYY-MM-DD", "from this day on (default: all)")                                  \
+	X(FL_OPT_UNTIL, "until", "YYYY-MM-DD", "up to and with this day (default: all)")                           \
+	X(FL_OPT_ACCEPT, "accept", "ORIGIN", "take in a ship never seen before, whose origin begins with this")
 
 typedef enum fl_option {
 #define FL_OPTION_ENUM(name, word, argument, help) name,
@@ -96,6 +109,8 @@ fl_utc fl_cli_now(void);
 /* Offset of local time from UTC at `utc`, minutes. */
 int fl_cli_utc_offset_min(fl_utc utc);
 int fl_cli_columns(const fl_cli *cli);
+/* --width, or else fl_cli_columns. */
+fl_status fl_cli_width(const fl_cli *cli, int *columns, fl_error *err) FL_MUST_USE;
 /* Tells on standard error that a file was passed over, and why. */
 void fl_cli_left_out(const fl_cli *cli, const fl_error *err);
 
@@ -129,6 +144,10 @@ fl_status fl_command_certify(fl_cli *cli, fl_exit *code, fl_error *err);
 fl_status fl_command_countersign(fl_cli *cli, fl_exit *code, fl_error *err);
 fl_status fl_command_keys(fl_cli *cli, fl_exit *code, fl_error *err);
 fl_status fl_command_check(fl_cli *cli, fl_exit *code, fl_error *err);
+fl_status fl_command_history(fl_cli *cli, fl_exit *code, fl_error *err);
+fl_status fl_command_due(fl_cli *cli, fl_exit *code, fl_error *err);
+fl_status fl_command_lookback(fl_cli *cli, fl_exit *code, fl_error *err);
+fl_status fl_command_book(fl_cli *cli, fl_exit *code, fl_error *err);
 fl_status fl_command_list(fl_cli *cli, fl_exit *code, fl_error *err);
 
 #endif

@@ -3,6 +3,7 @@
 #include <stdlib.h>
 #include <string.h>
 
+#include "book.h"
 #include "derive.h"
 #include "foundleft/document.h"
 #include "signing.h"
@@ -290,8 +291,10 @@ static fl_status put_out(const fl_cli *cli, fl_signing *signing, const fl_derive
 		status = fl_file_write(cli->io, path, derived->bytes, derived->length, false, err);
 	if (status >= 0 && !signing && kept.length == derived->length)
 		say_missing(cli, derived);
-	if (status >= 0)
+	if (status >= 0) {
 		fprintf(cli->out, "certificate: %s\n", path);
+		fl_book_after_certificate(cli, derived->one.path, derived->issue.number, signing ? "signed" : "issued", path);
+	}
 	fl_arena_free(&kept.arena);
 	return status;
 }
@@ -406,6 +409,8 @@ fl_status fl_command_countersign(fl_cli *cli, fl_exit *code, fl_error *err) {
 			status = fl_signing_allowed(&signing, &derived, err);
 			if (status >= 0)
 				status = sign_both(cli, &signing, &derived, path, &kept, err);
+			if (status >= 0)
+				fl_book_after_certificate(cli, derived.one.path, derived.issue.number, "countersigned", path);
 			fl_signing_end(&signing);
 		}
 		fl_derived_free(&derived);

@@ -9,6 +9,7 @@
 #include <stdlib.h>
 #include <string.h>
 
+#include "book.h"
 #include "derive.h"
 #include "foundleft/document.h"
 #include "report_parts.h"
@@ -489,15 +490,31 @@ static bool is_anything(const char *path, const unsigned char *head, size_t leng
 	return true;
 }
 
+static bool is_book(const char *path, const unsigned char *head, size_t length) {
+	(void)path;
+	return fl_book_is_book((const char *)head, length);
+}
+
+static bool is_bundle(const char *path, const unsigned char *head, size_t length) {
+	(void)path;
+	return fl_book_is_bundle((const char *)head, length);
+}
+
+static fl_status check_book(fl_cli *cli, const char *path, fl_exit *code, fl_error *err) {
+	return fl_book_check(cli, path, code, err);
+}
+
+static fl_status check_bundle(fl_cli *cli, const char *path, fl_exit *code, fl_error *err) {
+	return fl_bundle_check(cli, path, code, err);
+}
+
 /* The first row that fits counts. */
 static const struct {
 	bool (*is)(const char *path, const unsigned char *head, size_t length);
 	fl_status (*check)(fl_cli *cli, const char *path, fl_exit *code, fl_error *err);
 } KINDS[] = {
-    {is_pdf, check_certificate},
-    {is_seal, check_seal_file},
-    {is_yaml, check_yaml},
-    {is_anything, check_journal},
+    {is_pdf, check_certificate}, {is_seal, check_seal_file}, {is_yaml, check_yaml},
+    {is_book, check_book},       {is_bundle, check_bundle},  {is_anything, check_journal},
 };
 
 static size_t read_head(const char *path, unsigned char head[HEAD_SIZE]) {

@@ -4,6 +4,7 @@
 #include <string.h>
 
 #include "advise.h"
+#include "book.h"
 #include "case.h"
 #include "cli.h"
 #include "foundleft/entry.h"
@@ -112,12 +113,14 @@ static fl_entry_setup setup_of(const fl_cli *cli, bench *b) {
 }
 
 static void say_what_next(const fl_cli *cli, const bench *b) {
-	if (b->journal.session.closed)
+	if (b->journal.session.closed) {
+		fl_book_after_close(cli, b->path);
 		fprintf(cli->out, "The session is closed: %s\nNext: foundleft assess %s, then foundleft certify %s\n", b->path,
 		        b->path, b->path);
-	else
+	} else {
 		fprintf(cli->out, "The session stays open; everything entered is kept. Go on with: foundleft resume %s\n",
 		        b->path);
+	}
 }
 
 /* ---- the blocking loop --------------------------------------------------------------------------------------- */
