@@ -81,6 +81,7 @@ fl_status fl_case_of(const fl_session *session, const fl_stock *shelf, fl_case *
 void fl_case_free(fl_case *one) {
 	for (int run = 0; run < FL_RUN_KINDS; run++)
 		fl_cause_free(&one->causes[run]);
+	fl_arena_free(&one->beyond.arena);
 	fl_result_free(&one->result);
 	fl_stock_free(&one->stock);
 	fl_procedure_free(&one->procedure);

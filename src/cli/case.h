@@ -10,6 +10,17 @@
 #include "foundleft/procedure.h"
 #include "foundleft/stock.h"
 
+/* What was asked for beyond the result. */
+typedef struct fl_beyond {
+	fl_arena arena;
+	bool budgets;              /* a table for every point */
+	const char *explain;       /* the point to explain in the text; NULL for none */
+	fl_explanation *explained; /* of every point, for JSON, or of the ones asked for */
+	size_t explained_count, explained_capacity;
+	fl_run_trials trials[FL_RUN_KINDS];
+	int digits; /* asked of the trials; 0: a number of them */
+} fl_beyond;
+
 typedef struct fl_case {
 	char path[512];
 	char head[FL_DIGEST_HEX_SIZE]; /* the journal's digest */
@@ -22,6 +33,7 @@ typedef struct fl_case {
 	bool borrowed;         /* the session is another's */
 	fl_result result;
 	fl_cause causes[FL_RUN_KINDS]; /* opinion: why each run is as it is; not available where there is nothing to say */
+	fl_beyond beyond;
 } fl_case;
 
 /* Reads and verifies the journal, replays it, and computes the result. On failure nothing needs freeing. */

@@ -5,6 +5,7 @@
 
 #include "case.h"
 #include "cli.h"
+#include "depth.h"
 #include "report.h"
 
 /* ---- assess ---------------------------------------------------------------------------------------------------- */
@@ -41,9 +42,10 @@ fl_status fl_command_assess(fl_cli *cli, fl_exit *code, fl_error *err) {
 	status = fl_case_load(cli->io, path, &one, err);
 	if (status < 0)
 		return status;
-	if (cli->values[FL_OPT_JSON])
+	status = fl_depth(cli, &one, err);
+	if (status >= 0 && cli->values[FL_OPT_JSON])
 		status = fl_report_json(&one, &text, err);
-	else
+	else if (status >= 0)
 		fl_report_text(&one, columns, &text);
 	if (status >= 0 && text.failed)
 		status = fl_fail(err, FL_E_MEMORY, "out of memory");

@@ -8,6 +8,7 @@
 
 #include "json.h"
 #include "report.h"
+#include "report_json_depth.h"
 #include "report_parts.h"
 #include "report_why_json.h"
 
@@ -120,6 +121,18 @@ static void write_band(fl_json *to, const char *name, const fl_band *band) {
 	fl_json_end(to, '}');
 }
 
+static void write_zones(fl_json *to, const fl_result *result) {
+	fl_json_begin(to, "tolerance_zones", '[');
+	for (int i = 0; i < result->zone_count; i++) {
+		fl_json_begin(to, NULL, '{');
+		fl_json_number(to, "from_pct_span", result->zones[i].from_pct_span);
+		fl_json_number(to, "to_pct_span", result->zones[i].to_pct_span);
+		write_band(to, "band", &result->zones[i].band);
+		fl_json_end(to, '}');
+	}
+	fl_json_end(to, ']');
+}
+
 static void write_terms(fl_json *to, const fl_result *result) {
 	fl_json_string(to, "rule", rule_word(result->rule));
 	fl_json_string(to, "rule_words", fl_procedure_rule_words(result->rule));
@@ -128,6 +141,15 @@ static void write_terms(fl_json *to, const fl_result *result) {
 	               result->tolerance.basis == FL_BAND_NONE ? NULL
 	               : result->tolerance_from_instrument     ? "instrument"
 	                                                       : "procedure");
+	write_zones(to, result);
+	fl_json_number(to, "minimum_tolerance_to_uncertainty", result->minimum_tur);
+	fl_json_word(to, "conformity_below_minimum", result->below_tur);
+	fl_json_number(to, "in_tolerance_reliability", result->reliability > 0.0 ? result->reliability : (double)NAN);
+	fl_json_word(to, "in_tolerance_reliability_of",
+	             !(result->reliability > 0.0)   ? NULL
+	             : result->reliability_observed ? "observed values"
+	                                            : "true values");
+	fl_json_word(to, "correlation_words", result->correlation_words);
 	fl_json_percent(to, "hysteresis_limit_pct_span", result->hysteresis_limit_span);
 	fl_json_percent(to, "linearity_limit_pct_span", result->linearity_limit_span);
 	fl_json_string(to, "deciding_linearity", fl_procedure_linearity_word(result->deciding_linearity));
@@ -180,6 +202,11 @@ static void write_budget(fl_json *to, const fl_point_result *point) {
 		fl_json_number(to, "sensitivity_pct_span_per_unit", line->sensitivity);
 		fl_json_percent(to, "contribution_pct_span", line->contribution_span);
 		fl_json_number(to, "degrees_of_freedom", line->dof);
+		fl_json_number(to, "share", line->share);
+		fl_json_word(to, "source", line->source);
+		fl_json_word(to, "rule", line->rule);
+		fl_json_word(to, "shared_as", line->shared > 0.0 ? line->key : NULL);
+		fl_json_number(to, "correlation", line->shared);
 		fl_json_end(to, '}');
 	}
 	fl_json_end(to, ']');
@@ -240,6 +267,7 @@ static void write_point_errors(fl_json *to, const fl_point_result *point) {
 	fl_json_percent(to, "tolerance_pct_span", point->tolerance_span);
 	fl_json_number(to, "tolerance_to_uncertainty", known * point->tur);
 	fl_json_word(to, "verdict", fl_verdict_word(point->verdict));
+	fl_json_risks(to, point);
 	write_budget(to, point);
 }
 
@@ -254,6 +282,7 @@ static void write_point(fl_json *to, const fl_case *one, const fl_point_result *
 	if (point->both)
 		fl_json_percent(to, "hysteresis_pct_span", hysteresis);
 	write_flow(to, point);
+	fl_json_explained(to, one, point);
 	fl_json_end(to, '}');
 }
 
@@ -394,6 +423,8 @@ static void write_run(fl_json *to, const fl_case *one, const fl_run_result *run,
 	write_worst(to, run);
 	fl_json_boolean(to, "inside_adjust_limit", run->available && run->inside_adjust_limit);
 	write_figures(to, one, run);
+	fl_json_lines(to, run);
+	fl_json_trials(to, one, run);
 	fl_json_strings(to, "not_determined", run->not_determined, run->not_determined_count);
 	fl_report_cause_json(to, one, kind);
 	fl_json_integer(to, "struck_count", (long long)run->struck_count);

@@ -77,6 +77,19 @@ static void print_title(const report_page *page) {
 	fl_report_rule(page->out, page->columns);
 }
 
+/* Tolerances that hold on a part of the scale. */
+static void print_zones(const report_page *page) {
+	static const char *const of[] = {[FL_BAND_PERCENT_SPAN] = "% of span", [FL_BAND_PERCENT_READING] = "% of reading"};
+	const fl_result *result = &page->one->result;
+	const char *dial = fl_report_dial_short(page->one->instrument->scale.dial_unit);
+	for (int i = 0; i < result->zone_count; i++) {
+		const fl_zone *zone = &result->zones[i];
+		fact(page, i == 0 ? "Zones" : "", "from %g to %g %% of span, ends included: \u00b1%g %s", zone->from_pct_span,
+		     zone->to_pct_span, zone->band.half_width,
+		     zone->band.basis == FL_BAND_DIAL_UNITS ? dial : of[zone->band.basis]);
+	}
+}
+
 static void print_facts(const report_page *page) {
 	const fl_case *one = page->one;
 	const fl_instrument *instrument = one->instrument;
@@ -86,6 +99,9 @@ static void print_facts(const report_page *page) {
 	fact(page, "Readings", "%s", source_words(one->session.source));
 	fact(page, "Procedure", "%s (%s, version %s)", one->procedure.title, one->procedure.id, one->procedure.version);
 	fact(page, "Rule", "%s", fl_procedure_rule_words(one->result.rule));
+	print_zones(page);
+	if (one->result.prior_words)
+		fact(page, "Prior", "%s", one->result.prior_words);
 	fact(page, "Journal", "digest %.16s\u2026%s", one->head,
 	     one->torn             ? ", an unfinished last line was left out"
 	     : one->session.closed ? ""
@@ -212,6 +228,18 @@ static void put_standard(fl_table *table, size_t row, int column, const fl_point
 	fl_report_fixed(point->tur, 1, fl_table_cell(table, row, column + 2));
 }
 
+/* Specific and global risk; a risk too small to matter is not spelt out. */
+static void put_risks(fl_table *table, size_t row, int column, const fl_point_result *point) {
+	if (!fl_report_has_budget(point) || isnan(point->tolerance_span))
+		return;
+	if (point->risk * PERCENT < 0.001)
+		put(table, row, column, "< 0.001");
+	else
+		fl_report_fixed(point->risk * PERCENT, 3, fl_table_cell(table, row, column));
+	if (point->has_global)
+		fl_report_fixed(point->global.consumer * PERCENT, 3, fl_table_cell(table, row, column + 1));
+}
+
 static int output_places(const fl_case *one) {
 	return fl_physics_signal_range(one->instrument->scale.signal)->unit == FL_U_BAR ? 4 : 3;
 }
@@ -273,6 +301,8 @@ static void print_spread(const report_page *page, const fl_run_result *run) {
 	    {"u", "% span", FL_ALIGN_POINT, false},
 	    {"dof", "", FL_ALIGN_RIGHT, false},
 	    {"tol./U", "", FL_ALIGN_POINT, false},
+	    {"risk", "%", FL_ALIGN_POINT, false},
+	    {"global", "%", FL_ALIGN_POINT, false},
 	};
 	fl_table table;
 	fl_table_begin(&table, columns, (int)(sizeof columns / sizeof *columns), run->point_count);
@@ -288,6 +318,7 @@ static void print_spread(const report_page *page, const fl_run_result *run) {
 			fl_report_two_digits(point->range_span * PERCENT, fl_table_cell(&table, i, 6));
 		}
 		put_standard(&table, i, 7, point);
+		put_risks(&table, i, 10, point);
 	}
 	fl_table_end(&table, page->columns, page->out);
 	fl_text_add(page->out, "\n");
@@ -510,6 +541,10 @@ static void print_run(const report_page *page, const fl_run_result *run) {
 	print_figures(page, run);
 	print_spread(page, run);
 	print_oils(page, run);
+	fl_report_lines(page->one, run, page->columns, page->out);
+	if (page->one->beyond.budgets)
+		fl_report_budgets(page->one, run, page->columns, page->out);
+	fl_report_trials(page->one, run, page->columns, page->out);
 	if (any_floored(run)) {
 		fl_report_wrap(page->out, "", "Where U was smaller than the reference's own, the reference's own stands.",
 		               page->columns);
@@ -523,7 +558,8 @@ static void print_legend(const report_page *page) {
 	    page->out, "",
 	    "\u25b2 rising, \u25bc falling. Errors are output less ideal output. U is the expanded uncertainty in "
 	    "% of span, k its coverage factor; u a standard uncertainty; s the standard deviation of n readings; "
-	    "dof the effective degrees of freedom of u; x the place on the scale, 0 to 1. equiv. is the "
+	    "dof the effective degrees of freedom of u; x the place on the scale, 0 to 1; risk the probability "
+	    "that the true error is beyond the tolerance, global that an instrument is accepted beyond it. equiv. is the "
 	    "equivalent viscosity, which a correct dial shows for the oil.",
 	    page->columns);
 	fl_text_add(page->out, "\n");
@@ -540,6 +576,10 @@ void fl_report_text(const fl_case *one, int columns, fl_text *out) {
 	const report_page page = {one, columns < 60 ? 60 : columns, out};
 	const fl_result *result = &one->result;
 	print_title(&page);
+	if (one->beyond.explain) {
+		fl_report_explained(one, page.columns, out);
+		return;
+	}
 	print_traceability(&page);
 	print_decisions(&page);
 	fl_report_why(one, page.columns, out);

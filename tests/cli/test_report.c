@@ -193,10 +193,22 @@ static int make(void **state) {
 	                                .cycles = 3,
 	                                .falling = true,
 	                                .readings = 3};
-	f->budget[0] =
-	    (fl_budget_line){"oil certificate", "0.20 %, k = 2", FL_DIST_NORMAL, 0.1, "%", 0.93, 0.00093, INFINITY};
-	f->budget[1] =
-	    (fl_budget_line){"repeatability", "s = 0.034, n = 9", FL_DIST_STUDENT, 0.011, "% of span", 1, 0.00011, 8};
+	f->budget[0] = (fl_budget_line){.name = "oil certificate",
+	                                .stated = "0.20 %, k = 2",
+	                                .distribution = FL_DIST_NORMAL,
+	                                .u = 0.1,
+	                                .unit = "%",
+	                                .sensitivity = 0.93,
+	                                .contribution_span = 0.00093,
+	                                .dof = INFINITY};
+	f->budget[1] = (fl_budget_line){.name = "repeatability",
+	                                .stated = "s = 0.034, n = 9",
+	                                .distribution = FL_DIST_STUDENT,
+	                                .u = 0.011,
+	                                .unit = "% of span",
+	                                .sensitivity = 1,
+	                                .contribution_span = 0.00011,
+	                                .dof = 8};
 	one->result.rule = FL_RULE_GUARDED;
 	one->result.tolerance = (fl_band){FL_BAND_PERCENT_SPAN, 2.0};
 	one->result.hysteresis_limit_span = 0.005;
