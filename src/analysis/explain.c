@@ -73,7 +73,8 @@ static void explain_temperature(explainer *x) {
 	begin_number(x, "temperature of the oil", x->point->temp_c, "°C", "T = indication + correction",
 	             "mean of the readings; correction by the thermometer's certificate");
 	made_of(x, "indication", typed, "°C", 1.0, "readings of this session");
-	made_of(x, "correction", x->point->temp_c - typed, "K", 1.0, certificate_of(x, x->w->reference.thermometer));
+	double correction = round((x->point->temp_c - typed) * 1e9) / 1e9; /* without the last bits of the means */
+	made_of(x, "correction", correction, "K", 1.0, certificate_of(x, x->w->reference.thermometer));
 }
 
 static void explain_viscosity(explainer *x, const fl_oil *oil, const fl_oil_state *s) {

@@ -13,8 +13,6 @@
 
 /* Points whose standard uncertainties differ by more call for weights (common practice, no source). */
 static const double largest_ordinary_ratio = 3.0;
-/* A chi-squared rarer than this does not come from a straight line. */
-static const double rare = 0.05;
 /* Fieller's g from which the symmetric interval is no longer good enough (Draper & Smith 3.2). */
 static const double poor_slope = 0.05;
 /* What a certificate can leave of an uncertainty at the least: keeps the matrix regular at the stopped zero, which has
@@ -318,15 +316,6 @@ static void take_true_values(const work *w, fl_run_result *run, const line_point
 
 /* ---- the whole ---- */
 
-static void warn_about_line(work *w, const fl_run_result *run) {
-	const fl_general_line *g = &run->general;
-	if (g->has && g->probability < rare)
-		fl_analysis_say(w->arena, &w->warnings,
-		                "%s run: the points miss the generalized line by more than their own uncertainties allow "
-		                "(chi-squared %s with %d degrees of freedom): the errors do not lie on a straight line",
-		                fl_run_word(run->kind), fl_analysis_number(w->arena, g->line.sum_sq, 3), g->line.dof);
-}
-
 fl_status fl_analysis_general(work *w, fl_run_result *run, fl_error *err) {
 	line_points l;
 	fl_status status = fl_analysis_covariances(w, run, err);
@@ -345,6 +334,5 @@ fl_status fl_analysis_general(work *w, fl_run_result *run, fl_error *err) {
 	status = take_places(w, run, &l, err);
 	if (status >= 0)
 		take_true_values(w, run, &l);
-	warn_about_line(w, run);
 	return status;
 }

@@ -36,6 +36,14 @@ static char *plain(double value, char out[FL_CELL_SIZE]) {
 	return out;
 }
 
+/* "p = 0.012", "p < 0.0001". */
+static char *probability_words(double p, char out[FL_CELL_SIZE]) {
+	char number[FL_CELL_SIZE];
+	fl_report_two_digits(p, number);
+	snprintf(out, FL_CELL_SIZE, "p%s%s", number[0] == '<' ? "\u00a0" : "\u00a0=\u00a0", number);
+	return out;
+}
+
 static void put(fl_table *table, size_t row, int column, const char *text, int columns) {
 	fl_report_fit(text, columns, fl_table_cell(table, row, column));
 }
@@ -63,15 +71,18 @@ static void print_general(const fl_general_line *g, int columns, fl_text *out) {
 		fact(out, columns, "Generalised", "not computed: %s", g->why ? g->why : "");
 		return;
 	}
-	fact(out, columns, "Generalised",
-	     "error = %s (u\u00a0%s) + x\u00a0\u00b7\u00a0%s (u\u00a0%s), chi-squared %s with %d degrees of freedom "
-	     "(p\u00a0=\u00a0%s); computed because %s; decides nothing, zero and span error are those of the least-squares "
-	     "line",
-	     fl_report_signed(g->line.intercept * PERCENT, 3, zero),
-	     fl_report_two_digits(sqrt(g->line.var_intercept) * PERCENT, u0),
-	     fl_report_signed(g->line.slope * PERCENT, 3, span),
-	     fl_report_two_digits(sqrt(g->line.var_slope) * PERCENT, u1), fl_report_fixed(g->line.sum_sq, 1, chi),
-	     g->line.dof, fl_report_two_digits(g->probability, p), g->why ? g->why : "");
+	fl_report_two_digits(sqrt(g->line.var_intercept) * PERCENT, u0);
+	fl_report_two_digits(sqrt(g->line.var_slope) * PERCENT, u1);
+	fact(
+	    out, columns, "Generalised",
+	    "error = %s (u\u00a0%s) + x\u00a0\u00b7\u00a0%s (u\u00a0%s), chi-squared %s with %d degrees of freedom (%s)%s; "
+	    "computed because %s; it decides nothing: zero and span error are those of the least-squares line",
+	    fl_report_signed(g->line.intercept * PERCENT, 3, zero), u0, fl_report_signed(g->line.slope * PERCENT, 3, span),
+	    u1, fl_report_fixed(g->line.sum_sq, 1, chi), g->line.dof, probability_words(g->probability, p),
+	    g->probability < 0.05 ? ": the errors miss a straight line by more than the points' own uncertainties allow, "
+	                            "which the kinetic term beside the stopped zero does by itself"
+	                          : "",
+	    g->why ? g->why : "");
 }
 
 static void print_pass(const fl_run_result *run, fl_pass pass, int columns, fl_text *out) {
@@ -88,9 +99,9 @@ static void print_pass(const fl_run_result *run, fl_pass pass, int columns, fl_t
 	fact(out, columns, pass == FL_PASS_RISING ? "Rising alone" : "Falling alone",
 	     "zero %s, span %s; lack of fit against the scatter of repeated readings: F\u00a0=\u00a0%s with %d and %d "
 	     "degrees "
-	     "of freedom (p\u00a0=\u00a0%s): %s",
+	     "of freedom (%s): %s",
 	     zero, span, fl_report_fixed(line->lack.f, 1, f), line->lack.dof_lack, line->lack.dof_pure,
-	     fl_report_two_digits(line->lack.probability, p),
+	     probability_words(line->lack.probability, p),
 	     line->lack.probability < 0.05 ? "more than scatter, a line is not the whole story" : "a line is enough");
 }
 
@@ -176,17 +187,27 @@ static const char *distribution_short(fl_distribution distribution) {
 	return "";
 }
 
+/* "0.05 K half width" as "±0.05 K": a table has little room. */
+static void put_stated(fl_table *table, size_t row, const char *stated) {
+	static const char half[] = " half width";
+	char text[FL_CELL_SIZE];
+	const char *at = strstr(stated, half);
+	if (at)
+		snprintf(text, sizeof text, "\u00b1%.*s%s", (int)(at - stated), stated, at + sizeof half - 1);
+	else
+		snprintf(text, sizeof text, "%s", stated);
+	put(table, row, 1, text, 24);
+}
+
 static void put_line(fl_table *table, size_t row, const fl_budget_line *line) {
-	char unit[FL_CELL_SIZE];
-	put(table, row, 0, line->name, 40);
-	put(table, row, 1, line->stated, 40);
+	put(table, row, 0, line->name, 30);
+	put_stated(table, row, line->stated ? line->stated : "");
 	put(table, row, 2, distribution_short(line->distribution), 8);
 	fl_report_two_digits(line->u, fl_table_cell(table, row, 3));
-	put(table, row, 4, fl_report_fit(line->unit, 12, unit), 12);
-	plain(round(line->sensitivity * 1e4) / 1e4, fl_table_cell(table, row, 5));
-	fl_report_fixed(line->contribution_span * PERCENT, 4, fl_table_cell(table, row, 6));
-	fl_report_fixed(line->share * PERCENT, 1, fl_table_cell(table, row, 7));
-	put_dof(table, row, 8, line->dof);
+	plain(round(line->sensitivity * 1e4) / 1e4, fl_table_cell(table, row, 4));
+	fl_report_fixed(line->contribution_span * PERCENT, 4, fl_table_cell(table, row, 5));
+	fl_report_fixed(line->share * PERCENT, 1, fl_table_cell(table, row, 6));
+	put_dof(table, row, 7, line->dof);
 }
 
 static void put_sum(fl_table *table, size_t row, const fl_point_result *point) {
@@ -195,25 +216,24 @@ static void put_sum(fl_table *table, size_t row, const fl_point_result *point) {
 	snprintf(text, sizeof text, "k = %.2f, U = %s%s", point->sum.coverage_factor,
 	         fl_report_two_digits(point->sum.expanded * PERCENT, U), point->floored ? " (reference)" : "");
 	put(table, row, 1, text, 40);
-	fl_report_fixed(point->sum.uc * PERCENT, 4, fl_table_cell(table, row, 6));
-	fl_report_fixed(100.0, 1, fl_table_cell(table, row, 7));
+	fl_report_fixed(point->sum.uc * PERCENT, 4, fl_table_cell(table, row, 5));
+	fl_report_fixed(100.0, 1, fl_table_cell(table, row, 6));
 	if (point->sum.dof_effective > 9999.0)
-		put(table, row, 8, "> 9999", 8);
+		put(table, row, 7, "> 9999", 8);
 	else
-		put_dof(table, row, 8, floor(point->sum.dof_effective));
+		put_dof(table, row, 7, floor(point->sum.dof_effective));
 }
 
 static void print_budget(const fl_case *one, const fl_point_result *point, int columns, fl_text *out) {
 	static const fl_table_column heads[] = {
 	    {"contribution", "", FL_ALIGN_LEFT, true}, {"stated", "", FL_ALIGN_LEFT, false},
 	    {"distrib.", "", FL_ALIGN_LEFT, false},    {"u", "", FL_ALIGN_POINT, false},
-	    {"", "unit", FL_ALIGN_LEFT, false},        {"c", "% span/unit", FL_ALIGN_POINT, false},
-	    {"c u", "% span", FL_ALIGN_POINT, false},  {"share", "%", FL_ALIGN_POINT, false},
-	    {"dof", "", FL_ALIGN_RIGHT, false},
+	    {"c", "%/unit", FL_ALIGN_POINT, false},    {"c u", "%", FL_ALIGN_POINT, false},
+	    {"share", "%", FL_ALIGN_POINT, false},     {"dof", "", FL_ALIGN_RIGHT, false},
 	};
 	char name[FL_CELL_SIZE];
 	fl_report_point_name(one, point->point, name);
-	fl_text_printf(out, "Budget of %s, %s\n", name,
+	fl_text_printf(out, "Budget of %s, %s: u in the unit stated, c in %% of span per unit, c u in %% of span\n", name,
 	               point->both ? "rising and falling together" : fl_pass_word(point->pass));
 	if (!fl_report_has_budget(point)) {
 		fl_text_add(out, "  nothing stands in it: the uncertainty is not known\n\n");
@@ -309,7 +329,7 @@ static void put_tried(const fl_case *one, fl_table *table, size_t row, const fl_
 	fl_report_fixed((p->high - p->low) / 2.0 * PERCENT, 4, fl_table_cell(table, row, 6));
 	fl_report_fixed(tried->expanded * PERCENT, 4, fl_table_cell(table, row, 7));
 	if (tried->digits >= 0)
-		put(table, row, 8, tried->digits == 2 ? "2 digits" : tried->digits == 1 ? "1 digit" : "no", 8);
+		put(table, row, 8, tried->digits == 2 ? "2" : tried->digits == 1 ? "1" : "no", 8);
 }
 
 void fl_report_trials(const fl_case *one, const fl_run_result *run, int columns, fl_text *out) {
@@ -318,7 +338,7 @@ void fl_report_trials(const fl_case *one, const fl_run_result *run, int columns,
 	    {"mean", "% span", FL_ALIGN_POINT, false}, {"u", "% span", FL_ALIGN_POINT, false},
 	    {"from", "% span", FL_ALIGN_POINT, false}, {"to", "% span", FL_ALIGN_POINT, false},
 	    {"half", "% span", FL_ALIGN_POINT, false}, {"U GUM", "% span", FL_ALIGN_POINT, false},
-	    {"holds", "", FL_ALIGN_LEFT, false},
+	    {"holds", "digits", FL_ALIGN_LEFT, false},
 	};
 	const fl_run_trials *t = &one->beyond.trials[run->kind];
 	char words[WIDE * 2];
