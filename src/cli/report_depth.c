@@ -40,7 +40,7 @@ static char *plain(double value, char out[FL_CELL_SIZE]) {
 static char *probability_words(double p, char out[FL_CELL_SIZE]) {
 	char number[FL_CELL_SIZE];
 	fl_report_two_digits(p, number);
-	snprintf(out, FL_CELL_SIZE, "p%s%s", number[0] == '<' ? "\u00a0" : "\u00a0=\u00a0", number);
+	snprintf(out, FL_CELL_SIZE, "p%s%.40s", number[0] == '<' ? "\u00a0" : "\u00a0=\u00a0", number);
 	return out;
 }
 
