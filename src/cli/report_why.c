@@ -90,75 +90,58 @@ void fl_report_why(const fl_case *one, int columns, fl_text *out) {
 
 /* ---- function checks ---- */
 
-static void put_amount(fl_table *table, size_t row, int column, double value) {
-	fl_report_fixed(value, fl_report_places(value) - 1, fl_table_cell(table, row, column));
+static const char *unit_of(const fl_case *one, const fl_function_check *check) {
+	return fl_unit_text(check->kind == FL_CHECK_AMOUNT ? check->unit
+	                                                   : fl_physics_dial_unit(one->instrument->scale.dial_unit));
 }
 
-static void put_found(fl_table *table, size_t row, int column, const fl_function_result *r) {
-	char *cell = fl_table_cell(table, row, column);
-	if (r->answer && r->answer->answer)
-		fl_report_fit(r->answer->answer, 10, cell);
-	else if (!isnan(r->found))
-		put_amount(table, row, column, r->found);
-}
-
-static void put_limits(fl_table *table, size_t row, int column, const fl_function_result *r) {
-	char low[FL_CELL_SIZE], high[FL_CELL_SIZE];
-	char *cell = fl_table_cell(table, row, column);
-	fl_report_fixed(r->low, 1, low);
-	fl_report_fixed(r->high, 1, high);
+static void add_limits(const fl_function_result *r, fl_text *line) {
+	if (!isnan(r->expected))
+		fl_text_printf(line, ", expected %.4g", r->expected);
 	if (isfinite(r->low) && isfinite(r->high))
-		snprintf(cell, FL_CELL_SIZE, "%.40s to %.40s", low, high);
+		fl_text_printf(line, ", limits %.4g to %.4g", r->low, r->high);
 	else if (isfinite(r->high))
-		snprintf(cell, FL_CELL_SIZE, "\u2264 %.40s", high);
+		fl_text_printf(line, ", at most %.4g", r->high);
 	else if (isfinite(r->low))
-		snprintf(cell, FL_CELL_SIZE, "\u2265 %.40s", low);
+		fl_text_printf(line, ", at least %.4g", r->low);
 }
 
-static void put_function(const fl_case *one, fl_table *table, size_t row, const fl_function_result *r) {
-	const fl_function_check *check = r->check;
-	fl_unit dial = fl_physics_dial_unit(one->instrument->scale.dial_unit);
-	const char *unit =
-	    check->kind == FL_CHECK_CONFIRM ? "" : fl_unit_text(check->kind == FL_CHECK_AMOUNT ? check->unit : dial);
-	fl_report_fit(check->name, 28, fl_table_cell(table, row, 0));
-	fl_report_fit(unit, 10, fl_table_cell(table, row, 1));
-	if (check->kind == FL_CHECK_CONFIRM)
-		snprintf(fl_table_cell(table, row, 2), FL_CELL_SIZE, "yes");
-	else if (!isnan(r->expected))
-		put_amount(table, row, 2, r->expected);
-	put_limits(table, row, 3, r);
-	put_found(table, row, 4, r);
-	if (r->has_true) {
-		fl_report_fixed(r->true_value, 2, fl_table_cell(table, row, 5));
-		fl_report_two_digits(r->true_U, fl_table_cell(table, row, 6));
-	}
-	snprintf(fl_table_cell(table, row, 7), FL_CELL_SIZE, "%s", fl_function_word(r->state));
+/* "in order: found 20.1 mm²/s, expected 20, limits 19 to 21; true viscosity 20.07 ± 0.18 mm²/s" */
+static void add_outcome(const fl_case *one, const fl_function_result *r, fl_text *line) {
+	const fl_check_answer *a = r->answer;
+	const char *unit = unit_of(one, r->check);
+	char value[FL_CELL_SIZE], U[FL_CELL_SIZE];
+	fl_text_add(line, fl_function_word(r->state));
+	if (a && a->reason)
+		fl_text_printf(line, ": %s", a->reason);
+	if (a && a->answer)
+		fl_text_printf(line, ": found %s, expected yes", a->answer);
+	if (!a || !a->typed)
+		return;
+	fl_text_printf(line, ": found %.4g %s", r->found, unit);
+	add_limits(r, line);
+	if (!r->has_true)
+		return;
+	fl_report_two_digits(r->true_U, U);
+	const char *point = strchr(U, '.');
+	fl_report_fixed(r->true_value, point ? (int)strlen(point + 1) : 0, value);
+	fl_text_printf(line, "; true viscosity %s\u00a0\u00b1\u00a0%s\u00a0%s", value, U, unit);
 }
 
 void fl_report_functions(const fl_case *one, int columns, fl_text *out) {
-	static const fl_table_column heads[] = {
-	    {"function", "", FL_ALIGN_LEFT, true},   {"", "", FL_ALIGN_LEFT, false},
-	    {"expected", "", FL_ALIGN_RIGHT, false}, {"limits", "", FL_ALIGN_LEFT, false},
-	    {"found", "", FL_ALIGN_RIGHT, false},    {"true", "viscosity", FL_ALIGN_POINT, false},
-	    {"\u00b1U", "", FL_ALIGN_POINT, false},  {"outcome", "", FL_ALIGN_LEFT, false},
-	};
 	const fl_result *result = &one->result;
-	fl_table table;
+	fl_text line = {0};
 	if (result->function_count == 0)
 		return;
 	fl_text_add(out, "Function checks\n");
 	fl_report_rule(out, columns);
-	fl_table_begin(&table, heads, (int)(sizeof heads / sizeof heads[0]), result->function_count);
-	for (size_t i = 0; i < result->function_count; i++)
-		put_function(one, &table, i, &result->functions[i]);
-	fl_table_end(&table, columns, out);
 	for (size_t i = 0; i < result->function_count; i++) {
-		const fl_function_result *r = &result->functions[i];
-		char line[1024];
-		if (!r->answer || !r->answer->reason)
-			continue;
-		snprintf(line, sizeof line, "%s not tried: %s", r->check->name, r->answer->reason);
-		fl_report_wrap(out, "  ", line, columns);
+		fl_text_clear(&line);
+		fl_text_printf(&line, "%s: ", result->functions[i].check->name);
+		add_outcome(one, &result->functions[i], &line);
+		fl_report_wrap(out, "  - ", line.data ? line.data : "", columns);
 	}
 	fl_text_add(out, "\n");
+	out->failed |= line.failed;
+	fl_text_free(&line);
 }

@@ -147,11 +147,43 @@ answer "10.120 mA 40.00"
 answer "4.596 mA 40.01"
 answer "4.001"
 wait_for "lock the as-found run"
+refused "measure speed 39.9 r/min" "come after the as-found run is closed"
+screen | grep -q "Proposal" && fail "an opinion is shown before the run is locked"
 answer "close"
+wait_for "Why, as-found (opinion, no part of the result)"
+wait_for "Proposal: leave."
 wait_for "Decision"
 refused "perhaps" "adjust, leave or repair"
+refused "measure" "injection 150 mbar 11.66 mA"
+refused "measure injection 150 mbar 4.0 bar" "not taken"
+answer "measure injection 156.6 mbar 12.001 mA"
+wait_for "% of span off what the pressure asks for"
+refused "measure volume 500 cm3 in 5 s" "far from usual"
+type_line "no"
+answer "measure volume 500 cm3 in 502 s"
+refused "why" "Proposal: leave."
+refused "undo" "Why is it taken back"
+answer "the vessel was not empty"
+refused "adjust" "Adjust all the same"
+type_line "no"
 type_line "leave"
 answer "inside the adjust limit"
+
+wait_for "Function checks"
+refused "200 mm2/s" "not possible for the indication"
+answer "20,1"
+wait_for "high viscosity alarm: in order"
+answer "10.5"
+wait_for "low viscosity alarm: not in order"
+refused "perhaps" "answer yes or no"
+answer "yes"
+answer "6 s"
+answer "yes"
+refused "" "Why is it not tried"
+answer "the heater is needed in port"
+answer "yes"
+refused "12.32 mA" "far from what is expected"
+answer "yes"
 for n in 1 2 3 4 5 6; do answer "yes"; done
 type_line "no"
 answer "the watch hands the permit back tonight"
@@ -169,10 +201,19 @@ points = {(p["oil"], p["direction"]): p for p in run["points"]}
 assert run["verdict"] == "pass", run["verdict"]
 assert abs(points["LK-50", "falling"]["error_pct_span"]) < 0.3, points["LK-50", "falling"]
 assert points["LK-20", "rising"]["n"] == 1
+whole = json.load(open(sys.argv[1]))
+checks = {c["id"]: c for c in whole["function_checks"]}
+assert checks["alarm-low"]["outcome"] == "not in order", checks["alarm-low"]
+assert checks["valve-stroke"]["not_tried_reason"] == "the heater is needed in port", checks["valve-stroke"]
+assert abs(checks["indicator"]["found"] - 26) < 1e-9 and checks["indicator"]["outcome"] == "not in order"
+high = checks["alarm-high"]  # the line's error there is below 0.3 % of span, 0.15 mm2/s
+assert abs(high["true_value"] - 20.1) < 0.2 and 0.05 < high["true_expanded_uncertainty"] < 0.5, high
+assert [m["what"] for m in whole["session"]["measurements"]] == ["injection"]
+assert run["cause"]["proposal"]["decision"] == "leave", run["cause"]["proposal"]
 PY
 "$program" certify "$journal" --number T-1 --out "$work/t.pdf" >/dev/null
 pdftotext "$work/t.pdf" - | tr '\n' ' ' >"$work/text"
-for text in "Порт Геспер" "Έσπερος" "Häfen" "the pump is quiet" "hands the permit back"; do
+for text in "high viscosity alarm" "not in order" "the heater is needed in port" "Порт Геспер" "Έσπερος" "Häfen" "the pump is quiet" "hands the permit back"; do
 	grep -qF "$text" "$work/text" || fail "the certificate does not say: $text"
 done
 echo "terminal: a shipboard check typed, killed, resumed and certified"
