@@ -92,6 +92,19 @@ void *fl_arena_grow(fl_arena *arena, void *items, size_t count, size_t *capacity
 	return larger;
 }
 
+void fl_arena_reset(fl_arena *arena) {
+	struct fl_arena_block *kept = arena->head;
+	if (!kept || kept->size > BLOCK_BYTES) {
+		fl_arena_free(arena);
+		return;
+	}
+	arena->head = kept->next;
+	fl_arena_free(arena);
+	kept->next = NULL;
+	kept->used = 0;
+	arena->head = kept;
+}
+
 void fl_arena_free(fl_arena *arena) {
 	while (arena->head) {
 		struct fl_arena_block *next = arena->head->next;

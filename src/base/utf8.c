@@ -42,10 +42,21 @@ static size_t sequence_length(const unsigned char *bytes, size_t available) {
 	return length;
 }
 
+/* How many bytes from here on are surely ASCII, eight at a time: nearly all text is. */
+static size_t ascii_length(const unsigned char *bytes, size_t length) {
+	size_t at = 0;
+	for (uint64_t eight; at + sizeof eight <= length; at += sizeof eight) {
+		memcpy(&eight, bytes + at, sizeof eight);
+		if (eight & UINT64_C(0x8080808080808080))
+			break;
+	}
+	return at;
+}
+
 bool fl_utf8_valid(const char *bytes, size_t length) {
 	const unsigned char *at = (const unsigned char *)bytes;
 	while (length > 0) {
-		size_t step = sequence_length(at, length);
+		size_t plain = ascii_length(at, length), step = plain > 0 ? plain : sequence_length(at, length);
 		if (step == 0)
 			return false;
 		at += step;

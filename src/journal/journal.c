@@ -71,7 +71,7 @@ static fl_status replay_line(fl_hasher *hasher, const char *line, size_t length,
 		status = fl_session_apply(session, &event, err);
 	if (status >= 0)
 		memcpy(head, self, FL_DIGEST_HEX_SIZE);
-	fl_arena_free(scratch);
+	fl_arena_reset(scratch);
 	return status;
 }
 
@@ -82,21 +82,32 @@ static bool is_unfinished(const char *tail, size_t length) {
 	return !self || (size_t)(tail + length - self) <= sizeof mark - 1 + FL_DIGEST_HEX_SIZE - 1;
 }
 
-static fl_status replay(fl_hasher *hasher, const char *bytes, size_t length, const char *path, fl_session *session,
-                        char head[FL_DIGEST_HEX_SIZE], replayed *out, fl_error *err) {
+/* Takes line after line up to the last LF; *at ends up behind it. */
+static fl_status replay_lines(fl_hasher *hasher, const char **at, const char *end, const char *path,
+                              fl_session *session, char head[FL_DIGEST_HEX_SIZE], fl_error *err) {
 	fl_arena scratch = {0};
-	const char *at = bytes, *end = bytes + length;
-	first_head(head);
-	for (int number = 1; at < end; number++) {
-		const char *newline = memchr(at, '\n', (size_t)(end - at));
+	fl_error inner = {0};
+	fl_status status = FL_OK;
+	int number = 0;
+	while (status >= 0 && *at < end) {
+		const char *newline = memchr(*at, '\n', (size_t)(end - *at));
 		if (!newline)
 			break;
-		fl_error inner = {0};
-		fl_status status = replay_line(hasher, at, (size_t)(newline - at), session, head, &scratch, &inner);
-		if (status < 0)
-			return at_line(err, &inner, status, path, number);
-		at = newline + 1;
+		number++;
+		status = replay_line(hasher, *at, (size_t)(newline - *at), session, head, &scratch, &inner);
+		*at = newline + 1;
 	}
+	fl_arena_free(&scratch);
+	return status < 0 ? at_line(err, &inner, status, path, number) : FL_OK;
+}
+
+static fl_status replay(fl_hasher *hasher, const char *bytes, size_t length, const char *path, fl_session *session,
+                        char head[FL_DIGEST_HEX_SIZE], replayed *out, fl_error *err) {
+	const char *at = bytes, *end = bytes + length;
+	first_head(head);
+	fl_status status = replay_lines(hasher, &at, end, path, session, head, err);
+	if (status < 0)
+		return status;
 	*out = (replayed){.good = (size_t)(at - bytes), .tail = at, .tail_length = (size_t)(end - at)};
 	if (!is_unfinished(out->tail, out->tail_length))
 		return fl_fail_at(err, FL_E_TAMPERED, (fl_place){.file = path, .line = session->last_sequence + 1},

@@ -99,7 +99,7 @@ static fl_status read_field(const char *part, size_t length, fl_arena *arena, fl
                             fl_error *err) {
 	const char *equals = memchr(part, '=', length);
 	size_t word = equals ? (size_t)(equals - part) : 0;
-	fl_field f = equals ? fl_field_find(part, word) : FL_FIELD_COUNT;
+	fl_field f = equals ? fl_field_find(*last, part, word) : FL_FIELD_COUNT;
 	if (f == FL_FIELD_COUNT)
 		return fl_fail(err, FL_E_SYNTAX, "unknown field \"%.*s\"", (int)(length > 40 ? 40 : length), part);
 	if ((int)f <= *last)

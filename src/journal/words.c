@@ -126,19 +126,20 @@ const char *fl_decision_word(fl_decision decision) {
 	return (unsigned)decision <= FL_DECISION_REPAIR ? fl_words_decisions[decision] : "?";
 }
 
-static int find_word(const char *const *words, int count, const char *word, size_t length) {
-	for (int i = 0; i < count; i++)
-		if (strlen(words[i]) == length && memcmp(words[i], word, length) == 0)
+static int find_word(const char *const *words, int from, int count, const char *word, size_t length) {
+	for (int i = from; i < count; i++)
+		if (strncmp(words[i], word, length) == 0 && words[i][length] == '\0')
 			return i;
 	return count;
 }
 
 fl_verb fl_verb_find(const char *word, size_t length) {
-	return (fl_verb)find_word(verb_words, FL_VERB_COUNT, word, length);
+	return (fl_verb)find_word(verb_words, 0, FL_VERB_COUNT, word, length);
 }
 
-fl_field fl_field_find(const char *word, size_t length) {
-	return (fl_field)find_word(field_words, FL_FIELD_COUNT, word, length);
+fl_field fl_field_find(int after, const char *word, size_t length) {
+	fl_field ahead = (fl_field)find_word(field_words, after + 1, FL_FIELD_COUNT, word, length);
+	return ahead != FL_FIELD_COUNT ? ahead : (fl_field)find_word(field_words, 0, FL_FIELD_COUNT, word, length);
 }
 
 int fl_words_index(const char *const *words, const char *text) {
@@ -203,13 +204,15 @@ fl_status fl_words_check(const fl_event *event, fl_error *err) {
 	for (int f = 0; f < FL_FIELD_COUNT; f++) {
 		const char *text = event->fields[f];
 		bool needed = (rule->required >> f) & 1, may = (rule->allowed >> f) & 1;
-		if (!text && needed)
+		if (!text && !needed)
+			continue;
+		if (!text)
 			return fl_fail(err, FL_E_VALUE, "an entry \"%s\" needs the field \"%s\"", verb, field_words[f]);
-		if (text && !may)
+		if (!may)
 			return fl_fail(err, FL_E_VALUE, "an entry \"%s\" has no field \"%s\"", verb, field_words[f]);
-		if (text && !fl_utf8_valid(text, strlen(text)))
+		if (!fl_utf8_valid(text, strlen(text)))
 			return fl_fail(err, FL_E_VALUE, "the field \"%s\" of \"%s\" is not UTF-8 text", field_words[f], verb);
-		if (text && !content_fits(&fl_field_rules[f], text))
+		if (!content_fits(&fl_field_rules[f], text))
 			return fl_fail(err, FL_E_VALUE, "the field \"%s\" of \"%s\" cannot be \"%.60s\"", field_words[f], verb,
 			               text);
 	}

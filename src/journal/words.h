@@ -31,7 +31,8 @@ extern const fl_verb_rule fl_verb_rules[FL_VERB_COUNT];
 
 /* The verb or field of a word of `length` bytes; the COUNT of its list if there is none. */
 fl_verb fl_verb_find(const char *word, size_t length);
-fl_field fl_field_find(const char *word, size_t length);
+/* Fields stand in the order of their list: those after `after` (-1: all) are tried first. */
+fl_field fl_field_find(int after, const char *word, size_t length);
 
 /* Are the fields there that the verb needs, no others, each holding what it may hold? */
 fl_status fl_words_check(const fl_event *event, fl_error *err) FL_MUST_USE;
