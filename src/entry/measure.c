@@ -134,7 +134,7 @@ static fl_status take_equipment(fl_entry *entry, char *line, fl_measure_draft *d
 	if (!*item || (*item)->role != kinds[d->what].role)
 		return fl_fail(err, FL_E_NOT_FOUND, "\"%.60s\" is nothing in the stock that measures this", id);
 	if (fl_stock_equipment_in_date(*item, entry->session->day, &why) < 0)
-		return fl_fail(err, FL_E_VALUE, "%s: measure without naming it, and a usual uncertainty is taken", why.message);
+		return fl_fail(err, FL_E_VALUE, "%s, or name none: a usual uncertainty is then taken", why.message);
 	snprintf(d->equipment, sizeof d->equipment, "%s", id);
 	return FL_OK;
 }
