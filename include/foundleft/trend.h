@@ -197,4 +197,52 @@ typedef struct fl_lookback {
 fl_status fl_trend_lookback(const fl_record *before, const fl_record *record, fl_arena *arena, fl_lookback *out,
                             fl_error *err) FL_MUST_USE;
 
+/* ---- the oils: is a lot what its certificate says? --------------------------------------------------------------- */
+
+/* One reading of a lot: its point in a run against the straight line through the other oils of that run. Zero and span,
+ * and with them the drift of the instrument, are in the line; what is left is the oil, the shape of the scale, scatter.
+ */
+typedef struct fl_lot_look {
+	const char *lot, *oil;
+	const char *unit;   /* "VT-1 FL-0417": tag and serial number */
+	const char *number; /* of the record */
+	size_t run;         /* looks of one run have the same */
+	fl_day day;
+	double residual, u;    /* fractions of span; standard uncertainty, that of the line included */
+	double others_per_rel; /* the same of the certificates of the other oils, through the line */
+	double span_per_rel;   /* how much of span a relative error of the viscosity is, at this place */
+} fl_lot_look;
+typedef struct fl_lot_looks {
+	fl_arena arena;
+	fl_lot_look *looks;
+	size_t count, capacity, runs;
+} fl_lot_looks;
+/* Adds the looks that a record gives: nothing where a run has fewer than three oils. */
+fl_status fl_trend_look(fl_lot_looks *looks, const fl_record *record, fl_error *err) FL_MUST_USE;
+void fl_lot_looks_free(fl_lot_looks *looks);
+
+typedef enum fl_lot_state {
+	FL_LOT_TOO_FEW,   /* fewer than three looks, or one unit only: oil and instrument cannot be told apart */
+	FL_LOT_SOUND,     /* agrees with its certificate */
+	FL_LOT_UNIT,      /* the units disagree about it: one of them, not the oil */
+	FL_LOT_SHAPE,     /* other lots of this oil show the same: the shape of the scale, not this lot */
+	FL_LOT_UNDECIDED, /* off, but another lot of the same runs explains the readings as well */
+	FL_LOT_OTHER,     /* off only because another lot of the same runs is */
+	FL_LOT_SUSPECT    /* off on all units alike: the oil is not what its certificate says */
+} fl_lot_state;
+typedef struct fl_lot_health {
+	fl_lot_state state;
+	size_t looks, units;
+	double mean, u_mean; /* of the residuals, fractions of span; widened where the units scatter more than they say */
+	double rel, u_rel;  /* the same as a relative error of the viscosity, the certificate's uncertainty included in u */
+	double chi_squared; /* of the units' means about it */
+	int dof;
+	const char *other; /* unit or lot that it names; "" if none */
+	const char *sentence;
+} fl_lot_health;
+/* `u_certificate`: relative standard uncertainty of the lot's viscosity; NAN where not known: 0.25 % is taken. Texts in
+ * `arena`. FL_E_NOT_FOUND where no look is of this lot. */
+fl_status fl_trend_lot_health(const fl_lot_looks *looks, const char *lot, double u_certificate, fl_arena *arena,
+                              fl_lot_health *out, fl_error *err) FL_MUST_USE;
+
 #endif
