@@ -224,6 +224,8 @@ typedef struct fl_result {
 fl_status fl_analysis_session(const fl_session *session, const fl_procedure *procedure, const fl_stock *stock,
                               fl_result *out, fl_error *err) FL_MUST_USE;
 void fl_result_free(fl_result *result);
+/* The tolerance at x, half width as a fraction of span, zones included; NAN where it says nothing. */
+double fl_analysis_tolerance_at(const fl_result *result, const fl_scale *scale, double x);
 
 /* ---- trials: the whole model again and again, JCGM 101 ---- */
 

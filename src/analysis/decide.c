@@ -49,8 +49,7 @@ fl_verdict fl_analysis_decide(fl_rule rule, double error, double expanded, doubl
 /* ---- a band at a place of the scale ---- */
 
 /* Dial units to a fraction of span there; a dial in seconds is not divided evenly. NAN where it has no division. */
-static double dial_units_as_span(const work *w, double units, double x) {
-	const fl_scale *scale = &w->reference.instrument->scale;
+static double dial_units_as_span(const fl_scale *scale, double units, double x) {
 	if (scale->dial_unit == FL_DIAL_MM2_S || scale->dial_unit == FL_DIAL_MPA_S)
 		return units / (scale->high - scale->low);
 	const double step = 1e-5; /* of span: far below any tolerance, far above rounding */
@@ -61,14 +60,14 @@ static double dial_units_as_span(const work *w, double units, double x) {
 }
 
 /* Half width of a band at x, fraction of span; NAN where it says nothing. */
-static double band_at(const work *w, const fl_band *band, double x) {
+static double band_at(const fl_scale *scale, const fl_band *band, double x) {
 	switch (band->basis) {
 	case FL_BAND_PERCENT_SPAN:
 		return band->half_width / 100.0;
 	case FL_BAND_PERCENT_READING:
 		return x > FL_LOWEST_X_FOR_READING ? band->half_width / 100.0 * x : NAN;
 	case FL_BAND_DIAL_UNITS:
-		return dial_units_as_span(w, band->half_width, x);
+		return dial_units_as_span(scale, band->half_width, x);
 	case FL_BAND_NONE:
 		break;
 	}
@@ -77,17 +76,22 @@ static double band_at(const work *w, const fl_band *band, double x) {
 
 /* The zone that x lies in, ends included, by the same slack as a limit; where two touch, the one with the tighter band
  * there. NULL for none. */
-static const fl_zone *zone_at(const work *w, double x) {
+static const fl_zone *zone_at(const fl_result *result, const fl_scale *scale, double x) {
 	const fl_zone *found = NULL;
 	const double slack = 100.0 * rounding_of_tolerance;
-	for (int i = 0; i < w->result->zone_count; i++) {
-		const fl_zone *zone = &w->result->zones[i];
+	for (int i = 0; i < result->zone_count; i++) {
+		const fl_zone *zone = &result->zones[i];
 		if (!(100.0 * x >= zone->from_pct_span - slack && 100.0 * x <= zone->to_pct_span + slack))
 			continue;
-		if (!found || band_at(w, &zone->band, x) < band_at(w, &found->band, x))
+		if (!found || band_at(scale, &zone->band, x) < band_at(scale, &found->band, x))
 			found = zone;
 	}
 	return found;
+}
+
+double fl_analysis_tolerance_at(const fl_result *result, const fl_scale *scale, double x) {
+	const fl_zone *zone = zone_at(result, scale, x);
+	return band_at(scale, zone ? &zone->band : &result->tolerance, x);
 }
 
 /* ---- points ---- */
@@ -120,8 +124,9 @@ static void take_risks(const work *w, fl_point_result *point) {
 }
 
 static void decide_point(const work *w, fl_point_result *point) {
-	point->zone = zone_at(w, point->x);
-	point->tolerance_span = band_at(w, point->zone ? &point->zone->band : &w->result->tolerance, point->x);
+	const fl_scale *scale = &w->reference.instrument->scale;
+	point->zone = zone_at(w->result, scale, point->x);
+	point->tolerance_span = fl_analysis_tolerance_at(w->result, scale, point->x);
 	point->tur = point->tolerance_span / point->sum.expanded;
 	point->risk = point->acceptance_span = point->prior_u_span = NAN;
 	take_risks(w, point);
@@ -268,7 +273,7 @@ static bool inside_adjust_limit(const work *w, const fl_run_result *run) {
 	const fl_band *limit = aside ? &w->procedure->adjust_limit : own;
 	bool any = false;
 	for (size_t i = 0; i < run->point_count; i++) {
-		double half_width = band_at(w, limit, run->points[i].x);
+		double half_width = band_at(&w->reference.instrument->scale, limit, run->points[i].x);
 		if (isnan(half_width))
 			continue;
 		any = true;

@@ -80,6 +80,7 @@ static void write_all(fl_writing *w) {
 	fl_write_functions(w);
 	fl_write_opinions(w);
 	fl_write_meaning(w);
+	fl_write_budgets(w);
 	fl_write_standards(w);
 	fl_write_gates(w);
 	fl_write_record(w);

@@ -75,9 +75,66 @@ static double largest_u(const fl_writing *w, int point) {
 	return largest;
 }
 
+/* U at x: straight between the points, constant outside them. */
+static double u_at(const fl_writing *w, const fl_run_result *run, double x) {
+	double x0 = NAN, u0 = NAN;
+	for (size_t i = 0; i < run->combined_count; i++) {
+		const fl_point_result *point = &run->combined[i];
+		double U = largest_u(w, point->point);
+		if (!isfinite(point->x))
+			continue;
+		if (x <= point->x)
+			return isnan(x0) ? U : u0 + (x - x0) / (point->x - x0) * (U - u0);
+		x0 = point->x;
+		u0 = U;
+	}
+	return u0;
+}
+
+/* A band that is one width from a to b; the edges of neighbours make a step. */
+static void add_stretch(fl_writing *w, fl_chart *chart, const fl_axis *axis, const fl_run_result *run, bool guarded,
+                        double a, double b) {
+	enum { STEPS = 8 };
+	double tolerance = fl_analysis_tolerance_at(w->result, &w->instrument->scale, (a + b) / 2);
+	for (int i = 0; i <= STEPS && isfinite(tolerance); i++) {
+		double x = a + (b - a) * i / STEPS;
+		fl_chart_edge(w->sheet, chart,
+		              (fl_plot_edge){.x = axis_at(axis, x),
+		                             .outer = 100 * tolerance,
+		                             .inner = guarded ? 100 * (tolerance - u_at(w, run, x)) : NAN});
+	}
+}
+
+static bool is_even(const fl_writing *w) {
+	bool even = w->result->tolerance.basis == FL_BAND_PERCENT_SPAN;
+	for (int i = 0; i < w->result->zone_count; i++)
+		even = even && w->result->zones[i].band.basis == FL_BAND_PERCENT_SPAN;
+	return even;
+}
+
+/* The tolerance in stretches: elsewhere, zone, elsewhere, ... */
+static void add_zones(fl_writing *w, fl_chart *chart, const fl_axis *axis, const fl_run_result *run, bool guarded) {
+	double at = 0;
+	for (int i = 0; i < w->result->zone_count; i++) {
+		double from = fmax(0, w->result->zones[i].from_pct_span / 100);
+		double to = fmin(1, w->result->zones[i].to_pct_span / 100);
+		if (from > at)
+			add_stretch(w, chart, axis, run, guarded, at, from);
+		if (to > from)
+			add_stretch(w, chart, axis, run, guarded, from, to);
+		at = fmax(at, to);
+	}
+	if (at < 1)
+		add_stretch(w, chart, axis, run, guarded, at, 1);
+}
+
 static void add_band(fl_writing *w, fl_chart *chart, const fl_axis *axis, const fl_run_result *run) {
 	bool guarded = w->result->rule == FL_RULE_GUARDED || w->result->rule == FL_RULE_FOUR_STATES;
 	bool even = w->result->tolerance.basis == FL_BAND_PERCENT_SPAN; /* the same over the whole scale */
+	if (w->result->zone_count > 0 && is_even(w)) {
+		add_zones(w, chart, axis, run, guarded);
+		return;
+	}
 	fl_plot_edge edge = {0}, first = {.x = NAN};
 	for (size_t i = 0; i < run->combined_count; i++) {
 		const fl_point_result *point = &run->combined[i];

@@ -244,6 +244,21 @@ static const char *tolerance_words(fl_writing *w) {
 	return words;
 }
 
+/* Tolerances that hold on a part of the scale. */
+static void explain_zones(fl_writing *w) {
+	fl_text list = {0};
+	for (int i = 0; i < w->result->zone_count; i++) {
+		const fl_zone *zone = &w->result->zones[i];
+		fl_text_printf(&list, "%sfrom %s to %s %% of span %s", i ? "; " : "",
+		               fl_word_plain(w->sheet, zone->from_pct_span, 3), fl_word_plain(w->sheet, zone->to_pct_span, 3),
+		               fl_word_band(w->sheet, zone->band, w->dial_unit));
+	}
+	if (list.length > 0)
+		fl_sheet_add_led(w->sheet, FL_BLOCK_SMALL, "Zones of the scale, ends included:", "%s.", list.data);
+	w->sheet->failed |= list.failed;
+	fl_text_free(&list);
+}
+
 static void explain_tolerance(fl_writing *w) {
 	if (w->result->tolerance.basis == FL_BAND_NONE) {
 		fl_sheet_add(w->sheet, FL_BLOCK_TEXT,
@@ -253,6 +268,40 @@ static void explain_tolerance(fl_writing *w) {
 	fl_sheet_add_led(w->sheet, FL_BLOCK_SMALL, "Tolerance.", "%s about the ideal output, stated %s.",
 	                 tolerance_words(w),
 	                 w->result->tolerance_from_instrument ? "for this instrument" : "by the procedure");
+	explain_zones(w);
+}
+
+/* A probability in per cent. */
+static const char *word_risk(fl_writing *w, double risk) {
+	return 100 * risk < 0.01 ? "below 0.01 %"
+	                         : fl_sheet_printf(w->sheet, "%s %%", fl_word_number(w->sheet, 100 * risk, 2));
+}
+
+static const char *word_global(fl_writing *w, const fl_point_result *point) {
+	if (!point->has_global)
+		return "";
+	return fl_sheet_printf(w->sheet, "; global risk of a false acceptance there %s, of a false rejection %s",
+	                       word_risk(w, point->global.consumer), word_risk(w, point->global.producer));
+}
+
+/* What a verdict may be wrong by. */
+static void explain_risk(fl_writing *w) {
+	if (w->result->rule == FL_RULE_NONE)
+		return;
+	for (int kind = 0; kind < FL_RUN_KINDS; kind++) {
+		const fl_run_result *run = &w->result->runs[kind];
+		const fl_point_result *point = run->worst;
+		if (!run->available || run->same_as_found || !point || !isfinite(point->tolerance_span) ||
+		    !isfinite(point->sum.uc))
+			continue;
+		fl_sheet_add_led(
+		    w->sheet, FL_BLOCK_SMALL, fl_sheet_printf(w->sheet, "Risk, %s.", fl_run_word(run->kind)),
+		    "Probability that the true error at the deciding point is beyond the tolerance: %s (JCGM 106); tolerance "
+		    "over U there %s%s.",
+		    word_risk(w, point->risk), fl_word_number(w->sheet, point->tur, 1), word_global(w, point));
+	}
+	if (w->result->prior_words)
+		fl_sheet_add(w->sheet, FL_BLOCK_SMALL, fl_word_sentence(w->sheet, w->result->prior_words));
 }
 
 /* The contribution of that rank, largest first; NULL if there are not so many. */
@@ -289,6 +338,47 @@ static void explain_budget(fl_writing *w) {
 	fl_text_free(&list);
 }
 
+/* What does not average out, and what it does to zero and span error. */
+static void explain_shared(fl_writing *w) {
+	for (int kind = 0; kind < FL_RUN_KINDS; kind++) {
+		const fl_run_result *run = &w->result->runs[kind];
+		if (!run->available || run->same_as_found || !run->has_line || !(run->line_shared.var_slope > 0))
+			continue;
+		fl_sheet_add_led(w->sheet, FL_BLOCK_SMALL,
+		                 fl_sheet_printf(w->sheet, "Zero and span error, %s.", fl_run_word(run->kind)),
+		                 "Standard uncertainties with what the points share: %s and %s %% of span.",
+		                 fl_word_u(w->sheet, 100 * sqrt(run->line_shared.var_intercept)),
+		                 fl_word_u(w->sheet, 100 * sqrt(run->line_shared.var_slope)));
+	}
+	if (w->result->correlation_words)
+		fl_sheet_add(w->sheet, FL_BLOCK_SMALL, fl_word_sentence(w->sheet, w->result->correlation_words));
+}
+
+/* What the dial means in the plant. */
+static void explain_true_values(fl_writing *w) {
+	const fl_run_result *left = &w->result->runs[FL_RUN_AS_LEFT];
+	const fl_run_result *run = left->available ? left : &w->result->runs[FL_RUN_AS_FOUND];
+	fl_text list = {0};
+	for (size_t i = 0; run->available && i < run->true_value_count; i++) {
+		const fl_true_value *v = &run->true_values[i];
+		fl_text_printf(&list, "%s%s: dial %s, ", i ? "; " : "", v->name, fl_word_plain(w->sheet, v->shown, 3));
+		if (!v->bounded)
+			fl_text_add(&list, "true value not determined");
+		else if (v->fieller)
+			fl_text_printf(&list, "true value %s to %s (Fieller)", fl_word_number(w->sheet, v->low, 2),
+			               fl_word_number(w->sheet, v->high, 2));
+		else
+			fl_text_printf(&list, "true value %s, U = %s (k = %s)",
+			               fl_word_number(w->sheet, v->value, fl_word_state_u(v->U).decimals),
+			               fl_word_u(w->sheet, v->U), fl_word_number(w->sheet, v->coverage_factor, 2));
+	}
+	if (list.length > 0)
+		fl_sheet_add_led(w->sheet, FL_BLOCK_SMALL, "What the dial means.", "By the %s least-squares line, in %s: %s.",
+		                 fl_run_word(run->kind), w->dial_unit, list.data);
+	w->sheet->failed |= list.failed;
+	fl_text_free(&list);
+}
+
 static void explain_capillary(fl_writing *w) {
 	double reynolds = 0, entrance = 0, kinetic = 0, heating = 0;
 	for (int kind = 0; kind < FL_RUN_KINDS; kind++)
@@ -317,7 +407,11 @@ static void explain_rule(fl_writing *w) {
 	                 w->result->rule == FL_RULE_NONE
 	                     ? ""
 	                     : " It is applied to the error at every point of the tables; the run "
-	                       "has the verdict of its worst point.");
+	                       "has the verdict of its worst point. An error exactly at a limit is within it.");
+	if (w->result->below_tur)
+		fl_sheet_add_led(w->sheet, FL_BLOCK_TEXT, "To be noted.", "%s",
+		                 fl_word_sentence(w->sheet, w->result->below_tur));
+	explain_risk(w);
 }
 
 void fl_write_meaning(fl_writing *w) {
@@ -339,6 +433,8 @@ void fl_write_meaning(fl_writing *w) {
 	    "decisions are taken on unrounded numbers.",
 	    fl_word_plain(sheet, 100 * result->coverage_probability, 2));
 	explain_budget(w);
+	explain_shared(w);
+	explain_true_values(w);
 	explain_capillary(w);
 	for (size_t i = 0; i < result->warning_count; i++)
 		fl_sheet_add_led(sheet, FL_BLOCK_SMALL, "To be noted.", "%s", fl_word_sentence(sheet, result->warnings[i]));

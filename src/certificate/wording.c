@@ -11,18 +11,8 @@
 #define MINUS "\xE2\x88\x92"
 
 fl_stated_u fl_word_state_u(double u) {
-	if (!(u > 0) || !isfinite(u))
-		return (fl_stated_u){0, 0};
-	int decimals = 1 - (int)floor(log10(u));
-	double unit = pow(10, -decimals), digits = rint(u / unit);
-	if (digits * unit < 0.95 * u)
-		digits = ceil(u / unit);
-	if (digits >= 100) { /* 0.0996 is 0.10, not 0.100 */
-		decimals -= 1;
-		digits = rint(digits / 10);
-		unit *= 10;
-	}
-	return (fl_stated_u){digits * unit, decimals};
+	fl_rounded_u rounded = fl_analysis_round_u(u);
+	return (fl_stated_u){rounded.value, rounded.decimals};
 }
 
 /* To tens or hundreds where decimals is negative. */

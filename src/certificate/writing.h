@@ -39,6 +39,7 @@ void fl_write_standards(fl_writing *w);             /* content_means.c: equipmen
 void fl_write_gates(fl_writing *w);                 /* content_means.c: conditions, permit and safety */
 void fl_write_record(fl_writing *w);  /* content_record.c: struck, departures, remarks, the record itself */
 void fl_write_meaning(fl_writing *w); /* content_result.c: how to read the numbers, the rule, the coverage */
+void fl_write_budgets(fl_writing *w); /* content_budget.c: where the procedure asks for them */
 void fl_write_close(fl_writing *w);   /* content_record.c: statements, signatures, end */
 
 #endif

@@ -233,7 +233,7 @@ static void print_budget(const fl_case *one, const fl_point_result *point, int c
 	};
 	char name[FL_CELL_SIZE];
 	fl_report_point_name(one, point->point, name);
-	fl_text_printf(out, "Budget of %s, %s: u in the unit stated, c in %% of span per unit, c u in %% of span\n", name,
+	fl_text_printf(out, "Budget of %s, %s\n", name,
 	               point->both ? "rising and falling together" : fl_pass_word(point->pass));
 	if (!fl_report_has_budget(point)) {
 		fl_text_add(out, "  nothing stands in it: the uncertainty is not known\n\n");
@@ -249,6 +249,10 @@ static void print_budget(const fl_case *one, const fl_point_result *point, int c
 }
 
 void fl_report_budgets(const fl_case *one, const fl_run_result *run, int columns, fl_text *out) {
+	fl_report_wrap(out, "",
+	               "Budgets: u is in the unit stated, c in % of span for one such unit, c u in % of span; share of the "
+	               "combined variance.",
+	               columns);
 	for (size_t i = 0; i < run->combined_count; i++)
 		print_budget(one, &run->combined[i], columns, out);
 	if (one->result.correlation_words)

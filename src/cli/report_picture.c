@@ -198,7 +198,7 @@ static void gather_knots(report_panel *panel) {
 }
 
 /* Straight between knots, constant outside them. */
-static band_knot band_at(const report_panel *panel, double x) {
+static band_knot between_knots(const report_panel *panel, double x) {
 	const band_knot *knots = panel->knots;
 	size_t last = panel->knot_count - 1;
 	if (x <= knots[0].x)
@@ -212,6 +212,16 @@ static band_knot band_at(const report_panel *panel, double x) {
 		                   knots[i].expanded + t * (knots[i + 1].expanded - knots[i].expanded)};
 	}
 	return knots[last];
+}
+
+/* With zones the tolerance steps between the knots. */
+static band_knot band_at(const report_panel *panel, double x) {
+	band_knot band = between_knots(panel, x);
+	const fl_result *result = &panel->one->result;
+	double tolerance = fl_analysis_tolerance_at(result, &panel->one->instrument->scale, x);
+	if (result->zone_count > 0 && isfinite(tolerance))
+		band.tolerance = tolerance * PERCENT;
+	return band;
 }
 
 /* A band in percent of reading is drawn from the lowest point that has one to the highest, any other all along. */
