@@ -104,7 +104,10 @@ static void run_certify(const fl_io *io, const char *journal, const char *out, f
 	cli.arguments = arguments;
 	cli.argument_count = 1;
 	assert_int_equal(fl_place_find(&cli, &err), FL_OK);
-	assert_int_equal(fl_command_certify(&cli, &code, &err), want);
+	fl_status got = fl_command_certify(&cli, &code, &err);
+	if (got != want)
+		print_message("certify: %s\n", err.message);
+	assert_int_equal(got, want);
 	fclose(cli.out);
 }
 
@@ -133,6 +136,67 @@ static void a_certificate_is_synced_before_it_gets_its_name(void **state) {
 		memmove(tail + 5, tail + 11, strlen(tail + 11) + 1);
 	assert_string_equal(tail, "open write sync close name open-folder sync close ");
 	fl_text_free(&calls);
+}
+
+/* Copies the journal as it was before anything was issued. */
+static void copy_journal(const char *from, const char *to) {
+	size_t length;
+	fl_error err = {0};
+	char *bytes = scratch_read(from, &length);
+	assert_non_null(bytes);
+	assert_int_equal(fl_file_write(fl_io_system(), to, bytes, length, true, &err), FL_OK);
+	free(bytes);
+}
+
+static void remove_leftovers(const char *out) {
+	for (int part = 1; part <= 16; part++) {
+		char name[SCRATCH_SIZE + 16];
+		snprintf(name, sizeof name, "%s.part%d", out, part);
+		unlink(name);
+	}
+}
+
+static size_t count_issues(const char *journal) {
+	fl_session session;
+	char head[FL_DIGEST_HEX_SIZE];
+	fl_error err = {0};
+	assert_int_equal(fl_journal_read(fl_io_system(), journal, &session, head, NULL, &err), FL_OK);
+	size_t count = session.issue_count;
+	fl_session_free(&session);
+	return count;
+}
+
+/* Killed before any of its calls while it issues: the certificate is issued once or not at all, and done again gives a
+ * whole one without a second issue. */
+static void a_killed_issue_is_issued_once(void **state) {
+	char fresh[SCRATCH_SIZE], journal[SCRATCH_SIZE], out[SCRATCH_SIZE];
+	write_journal(scratch_path(*state, "fresh.flj", fresh));
+	scratch_path(*state, "j.flj", journal);
+	scratch_path(*state, "c.pdf", out);
+	bool ended = false;
+	size_t unissued = 0, issued = 0;
+	for (long n = 1; !ended; n++) {
+		copy_journal(fresh, journal);
+		killing_io io;
+		killing_start(&io, n, -1);
+		pid_t child = fork();
+		if (child == 0) {
+			run_certify(&io.io, journal, out, FL_OK);
+			_exit(0);
+		}
+		ended = !was_killed(child);
+		size_t count = count_issues(journal), length;
+		unissued += count == 0;
+		issued += count == 1;
+		char *bytes = scratch_read(out, &length);
+		assert_true(bytes == NULL || count == 1); /* no certificate that its journal does not know */
+		free(bytes);
+		run_certify(fl_io_system(), journal, out, FL_OK);
+		assert_int_equal(count_issues(journal), 1);
+		unlink(out);
+		remove_leftovers(out);
+	}
+	assert_true(unissued > 3 && issued > 3);
 }
 
 /* Killed before any of its calls, within its bytes, and at the end: there is no certificate or the whole one. */
@@ -174,11 +238,7 @@ static void a_killed_certify_leaves_no_half_certificate(void **state) {
 			assert_memory_equal(bytes, want, length);
 			free(bytes);
 			unlink(out);
-			for (int part = 1; part <= 16; part++) {
-				char name[SCRATCH_SIZE + 16];
-				snprintf(name, sizeof name, "%s.part%d", out, part);
-				unlink(name);
-			}
+			remove_leftovers(out);
 		}
 	}
 	assert_true(killed > 15);
@@ -259,6 +319,7 @@ int main(void) {
 	const struct CMUnitTest tests[] = {
 	    cmocka_unit_test_setup_teardown(an_entry_is_synced_before_it_counts, scratch_make, scratch_remove),
 	    cmocka_unit_test_setup_teardown(a_certificate_is_synced_before_it_gets_its_name, scratch_make, scratch_remove),
+	    cmocka_unit_test_setup_teardown(a_killed_issue_is_issued_once, scratch_make, scratch_remove),
 	    cmocka_unit_test_setup_teardown(a_killed_certify_leaves_no_half_certificate, scratch_make, scratch_remove),
 	    cmocka_unit_test_setup_teardown(a_clock_that_jumps_does_no_harm, scratch_make, scratch_remove),
 	};

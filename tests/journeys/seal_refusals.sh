@@ -176,7 +176,7 @@ server.serve_forever()
 PY
 python3 server.py &
 office=$!
-trap 'kill $office 2>/dev/null; rm -rf "$work"' EXIT
+trap 'kill $office 2>/dev/null || true; rm -rf "$work"' EXIT
 while [ ! -s port ]; do sleep 0.05; done
 echo "timestamp: http://127.0.0.1:$(cat port)/stamp" >"$work/home/seal.yaml"
 mkdir t && cp m.flj t/

@@ -5,7 +5,7 @@ set -eu
 . "$(dirname "$0")/seal_common.sh"
 socket=foundleft-seal-$$
 unset TMUX
-trap 'tmux -L "$socket" kill-server 2>/dev/null; rm -rf "$work"' EXIT
+trap 'tmux -L "$socket" kill-server 2>/dev/null || true; rm -rf "$work"' EXIT
 screen() { tmux -L "$socket" capture-pane -p -J -S -200 -t t; }
 wait_for() {
 	tries=0
