@@ -185,13 +185,21 @@ static fl_status judge_seal(fl_seals *seals, const char *path, fl_error *err) {
 	}
 	if (report.verdict != FL_SEAL_BROKEN && seals->only_line && line != seals->only_line)
 		return FL_OK;
-	print_report(seals->found, &report, "seal", ++seals->count);
+	bool brief = seals->only_line && report.verdict == FL_SEAL_GOOD; /* with a certificate: in full with the journal */
+	seals->count++;
+	if (!brief)
+		print_report(seals->found, &report, "seal", seals->count);
 	weigh(seals->found, &report);
 	if (report.verdict == FL_SEAL_BROKEN)
 		return FL_OK;
-	snprintf(sentence, sizeof sentence, "%.80s covers lines 1 to %d of the journal%s", name, line,
-	         line < seals->session->last_sequence ? "; what stands behind was added later and is not under it" : "");
-	print_line(seals->found, FL_CHECK_GOOD, "covers", sentence);
+	if (brief)
+		snprintf(sentence, sizeof sentence, "%.80s holds: of %.80s, as %.20s, covers lines 1 to %d", name,
+		         report.signatures[0].signer.name, report.signatures[0].role, line);
+	else
+		snprintf(sentence, sizeof sentence, "%.80s covers lines 1 to %d of the journal%s", name, line,
+		         line < seals->session->last_sequence ? "; what stands behind was added later and is not under it"
+		                                              : "");
+	print_line(seals->found, FL_CHECK_GOOD, brief ? "seal of the journal" : "covers", sentence);
 	check_person(seals->found, seals->session, &report.signatures[0]);
 	return FL_OK;
 }
