@@ -10,7 +10,7 @@
 
 #include <string.h>
 
-enum { TURNS = 8, CHANGES_OF_BOUNDS = 64 };
+enum { TURNS = 12, CHANGES_OF_BOUNDS = 64, HALVINGS = 10 };
 
 /* A step that the physics' own rounding does not show in, in prior standard deviations. */
 static const double step = 1e-3;
@@ -120,39 +120,56 @@ static bool solve_free(const quadratic *q, double *t) {
 	return true;
 }
 
-/* The free one furthest below its bound, or the held one that pulls hardest away from it; p if the bounds are right. */
-static size_t wrong_bound(const quadratic *q, const double *t) {
+/* The held one that pulls hardest away from its bound; p if none does. */
+static size_t pulling(const quadratic *q) {
 	size_t worst = q->p;
-	double most = 1e-12;
+	double most = 0.0;
 	for (size_t j = 0; j < q->p; j++) {
-		double below = q->held[j] ? 0.0 : q->least[j] - t[j];
-		if (below > most) {
-			most = below;
+		double pull = q->b[j], size = fabs(q->b[j]);
+		for (size_t k = 0; k < q->p; k++) {
+			pull -= q->H[j * q->p + k] * q->t[k];
+			size = fmax(size, fabs(q->H[j * q->p + k] * q->t[k]));
+		}
+		if (q->held[j] && pull > most && pull > 1e-9 * fmax(size, 1.0)) {
+			most = pull;
 			worst = j;
 		}
-	}
-	for (size_t j = 0; worst == q->p && j < q->p; j++) {
-		double pull = q->b[j];
-		for (size_t k = 0; k < q->p; k++)
-			pull -= q->H[j * q->p + k] * t[k];
-		if (q->held[j] && pull > 1e-9)
-			worst = j;
 	}
 	return worst;
 }
 
-static bool solve_bounded(quadratic *q) {
-	for (int change = 0; change < CHANGES_OF_BOUNDS; change++) {
-		if (!solve_free(q, q->t))
-			return false;
-		size_t wrong = wrong_bound(q, q->t);
-		if (wrong == q->p)
-			return true;
-		q->held[wrong] = !q->held[wrong];
+/* Goes from q->t towards `wanted` as far as the bounds let it, and holds what met its bound; true if it went all the
+ * way. */
+static bool approach(quadratic *q, const double *wanted) {
+	double share = 1.0;
+	for (size_t j = 0; j < q->p; j++)
+		if (!q->held[j] && wanted[j] < q->least[j])
+			share = fmin(share, (q->t[j] - q->least[j]) / (q->t[j] - wanted[j]));
+	for (size_t j = 0; j < q->p; j++) {
+		if (q->held[j])
+			continue;
+		bool meets = wanted[j] < q->least[j] && (q->t[j] - q->least[j]) <= share * (q->t[j] - wanted[j]);
+		q->t[j] = meets ? q->least[j] : q->t[j] + share * (wanted[j] - q->t[j]);
+		q->held[j] = meets;
 	}
-	for (size_t j = 0; j < q->p; j++) /* going in circles between two as good answers: keep to the bounds */
-		q->t[j] = fmax(q->t[j], q->least[j]);
-	return true;
+	return share >= 1.0;
+}
+
+/* Active set from a feasible point: every step lowers the sum, so no set of bounds comes twice (Lawson & Hanson,
+ * Solving Least Squares Problems, 1974, ch. 23). */
+static bool solve_bounded(quadratic *q) {
+	double wanted[FL_FAULT_COUNT];
+	for (int change = 0; change < CHANGES_OF_BOUNDS; change++) {
+		if (!solve_free(q, wanted))
+			return false;
+		if (!approach(q, wanted))
+			continue;
+		size_t next = pulling(q);
+		if (next == q->p)
+			return true;
+		q->held[next] = false;
+	}
+	return true; /* feasible, and as low as so many changes bring it */
 }
 
 /* H = A'A + 1, b = A'r with r = L^-1 (e - f) + A t_now. */
@@ -171,6 +188,9 @@ static void set_up(const fl_search *s, const double *L, const fl_fit *fit, quadr
 	for (size_t j = 0; j < p; j++) {
 		q->least[j] = fl_cause_fault(fit->columns[j])->least / unit_of(fit, j);
 		q->held[j] = fit->at_bound[j];
+		fl_fault fault = fit->columns[j];
+		double now = (fit->faults.amount[fault] - s->start.amount[fault]) / unit_of(fit, j);
+		q->t[j] = q->held[j] ? q->least[j] : fmax(now, q->least[j]);
 		for (size_t i = 0; i < fit->n; i++)
 			q->b[j] += fit->A[i * p + j] * r[i];
 		for (size_t k = 0; k < p; k++) {
@@ -243,6 +263,35 @@ static void take_chi(const fl_search *s, const double *L, fl_fit *fit) {
 	}
 }
 
+static fl_status predict_rows(const fl_search *s, fl_fit *fit, fl_error *err) {
+	for (size_t i = 0; i < fit->n; i++)
+		TRY(fl_cause_predict(&s->model, &s->rows[i].at, &fit->faults, &fit->fitted[i], err));
+	return FL_OK;
+}
+
+/* The straightened problem's answer, or as much of the way to it as makes things better. */
+static fl_status step_down(const fl_search *s, const double *L, const quadratic *q, fl_fit *fit, double *moved,
+                           fl_error *err) {
+	fl_faults before = fit->faults;
+	take_chi(s, L, fit);
+	double now = fit->chi_total;
+	*moved = take_step(s, q, fit);
+	fl_faults whole = fit->faults;
+	for (int halving = 0;; halving++) {
+		TRY(predict_rows(s, fit, err));
+		take_chi(s, L, fit);
+		if (fit->chi_total <= now + 1e-9 * fmax(now, 1.0) || halving == HALVINGS)
+			return FL_OK;
+		*moved /= 2.0;
+		for (size_t j = 0; j < fit->p; j++) {
+			fl_fault fault = fit->columns[j];
+			double share = ldexp(1.0, -(halving + 1));
+			fit->faults.amount[fault] = before.amount[fault] + share * (whole.amount[fault] - before.amount[fault]);
+			fit->at_bound[j] = fit->at_bound[j] && fit->faults.amount[fault] == q->least[j] * unit_of(fit, j);
+		}
+	}
+}
+
 static fl_status iterate(const fl_search *s, const double *L, fl_fit *fit, fl_error *err) {
 	quadratic q;
 	double moved = INFINITY;
@@ -251,7 +300,7 @@ static fl_status iterate(const fl_search *s, const double *L, fl_fit *fit, fl_er
 		set_up(s, L, fit, &q);
 		if (!solve_bounded(&q))
 			return fl_fail(err, FL_E_NUMERIC, "the faults could not be fitted: a signature is not a number");
-		moved = take_step(s, &q, fit);
+		TRY(step_down(s, L, &q, fit, &moved, err));
 	}
 	TRY(linearise(s, L, fit, err));
 	set_up(s, L, fit, &q);

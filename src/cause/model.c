@@ -163,6 +163,10 @@ static fl_faults settled_and_clean(const fl_faults *faults) {
 	return settled;
 }
 
+/* From such a loss on an end of the output is taken for one. A pressure injected beyond the thickest oil's would meet
+ * it at once, however small the loss: the ramp keeps the model free of a jump. */
+static const double sure_of_the_end = 0.01;
+
 /* Where torque or output end: the thickest oil loses `loss`, a thinner one what it has above that. What lag and remains
  * of the oil before do to a reading stays on top: a coupling that slips does not hold the pressure dead. */
 static fl_status take_loss(const fl_cause_model *m, const fl_setting_of_row *row, const fl_faults *faults, double loss,
@@ -178,7 +182,8 @@ static fl_status take_loss(const fl_cause_model *m, const fl_setting_of_row *row
 	TRY(flowing_output(m, m->thickest, &settled, &top, err));
 	if (row->oil)
 		TRY(flowing_output(m, row, &settled, &own, err));
-	*y -= fmax(0.0, own - (top - loss));
+	double beyond = fmax(0.0, own - top), sure = fmin(1.0, loss / sure_of_the_end);
+	*y -= fmin(loss, fmax(0.0, own - (top - loss))) + sure * beyond;
 	return FL_OK;
 }
 

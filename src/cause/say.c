@@ -118,8 +118,7 @@ void fl_cause_number_of(fl_search *s, fl_finding *finding, const char *name, dou
 
 const char *fl_cause_percent(fl_search *s, double fraction, int decimals) {
 	char number[48];
-	return fl_cause_text(s, "%s %%",
-	                     fl_decimal_format_signed(100.0 * fraction, decimals, true, number, sizeof number));
+	return fl_cause_text(s, "%s %%", fl_decimal_format_signed(100.0 * fraction, decimals, true, number, sizeof number));
 }
 
 const char *fl_cause_amount(fl_search *s, double inside, fl_unit unit, int significant) {
