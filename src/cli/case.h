@@ -38,6 +38,8 @@ typedef struct fl_case {
 
 /* Reads and verifies the journal, replays it, and computes the result. On failure nothing needs freeing. */
 fl_status fl_case_load(const fl_io *io, const char *path, fl_case *out, fl_error *err) FL_MUST_USE;
+/* The same of a journal in memory; `name` stands for it in errors. */
+fl_status fl_case_replay(const char *bytes, size_t length, const char *name, fl_case *out, fl_error *err) FL_MUST_USE;
 /* The same of the journal as it stood with its line `sequence`; *bytes are the lines up to and with it, in `arena`. */
 fl_status fl_case_load_to(const fl_io *io, const char *path, int sequence, fl_arena *arena, char **bytes,
                           size_t *length, fl_case *out, fl_error *err) FL_MUST_USE;

@@ -89,6 +89,28 @@ static const fl_command COMMANDS[] = {
      BIT(FL_OPT_HOME) | BIT(FL_OPT_PREFIX) | BIT(FL_OPT_SINCE) | BIT(FL_OPT_UNTIL) | BIT(FL_OPT_ACCEPT) |
          BIT(FL_OPT_OUT),
      fl_command_book},
+    {"stock", "WORD [ARGUMENT...]", "oils, measuring equipment, instruments: add, renew, list, check",
+     "add oil, add equipment or add instrument asks for a new one; renew LOT-OR-ID-OR-TAG asks for its next "
+     "certificate, "
+     "the old one stays for the sessions of its days. replay FILE takes the answers from a file (!add, !renew, "
+     "!empty). "
+     "list says until when each may be used, check reads all files. import FILE... and export DIR take stock files in "
+     "and write them out. health LOT tells an oil that is off from drift, by all readings in the record book.",
+     1, 1001, PLACES | BIT(FL_OPT_SOON) | BIT(FL_OPT_ON) | BIT(FL_OPT_STRICT), fl_command_stock},
+    {"report", "TAG [SERIAL]", "the trend report of one instrument as PDF/A",
+     "Every session, charts of the deciding point, drift, forecast, proposed intervals, look-back. The same book and "
+     "date "
+     "give the same bytes. Written to HOME/reports unless --out says where; never over other content.",
+     1, 2,
+     PLACES | BIT(FL_OPT_OUT) | BIT(FL_OPT_DATE) | BIT(FL_OPT_FLEET) | BIT(FL_OPT_TEXT) | BIT(FL_OPT_ISSUER) |
+         BIT(FL_OPT_ISSUER_ADDRESS),
+     fl_command_report},
+    {"pack", "SHIP|all", "the survey pack of a ship as one PDF/A",
+     "A page of status, then the last certificate and the trend of each instrument whose site begins with SHIP, with "
+     "an "
+     "outline. Certificates are set again from the record; each copy names the original and its digest.",
+     1, 1, PLACES | BIT(FL_OPT_OUT) | BIT(FL_OPT_DATE) | BIT(FL_OPT_ISSUER) | BIT(FL_OPT_ISSUER_ADDRESS),
+     fl_command_pack},
     {"list", "[procedures|stock|sessions]", "show what there is, with due dates and open sessions", "", 0, 1, PLACES,
      fl_command_list},
 };

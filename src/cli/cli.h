@@ -62,15 +62,16 @@ typedef enum fl_exit {
 	X(FL_OPT_RSA, "rsa", NULL, "an RSA key of 3072 bit instead of an elliptic one (P-256)")                     \
 	X(FL_OPT_SELF_SIGNED, "self-signed", NULL, "certify the key by itself")                                     \
 	X(FL_OPT_DAYS, "days", "N", "how long a self-signed certificate holds (default: 730)")                      \
-	X(FL_OPT_REQUEST, "request", NULL, "print a certificate request for an authority")                         \
-	X(FL_OPT_FOLLOW, "follow", "WHAT", "zero, span, stopped zero, or the oil of a point")                      \
-	X(FL_OPT_FLEET, "fleet", NULL, "read all instruments too, for the reliability of the fleet")               \
-	X(FL_OPT_ON, "on", "YYYY-MM-DD", "the day to count from (default: today)")                                 \
-	X(FL_OPT_RECORD, "record", "NUMBER", "the record to look back from (default: the last that failed)")       \
-	X(FL_OPT_PREFIX, "prefix", "LETTERS", "what the book's numbers begin with, such as QH")                    \
-	X(FL_OPT_SINCE, "since", "YYYY-MM-DD", "from this day on (default: all)")                                  \
-	X(FL_OPT_UNTIL, "until", "YYYY-MM-DD", "up to and with this day (default: all)")                           \
-	X(FL_OPT_ACCEPT, "accept", "ORIGIN", "take in a ship never seen before, whose origin begins with this")
+	X(FL_OPT_REQUEST, "request", NULL, "print a certificate request for an authority")                          \
+	X(FL_OPT_FOLLOW, "follow", "WHAT", "zero, span, stopped zero, or the oil of a point")                       \
+	X(FL_OPT_FLEET, "fleet", NULL, "read all instruments too, for the reliability of the fleet")                \
+	X(FL_OPT_ON, "on", "YYYY-MM-DD", "the day to count from (default: today)")                                  \
+	X(FL_OPT_RECORD, "record", "NUMBER", "the record to look back from (default: the last that failed)")        \
+	X(FL_OPT_PREFIX, "prefix", "LETTERS", "what the book's numbers begin with, such as QH")                     \
+	X(FL_OPT_SINCE, "since", "YYYY-MM-DD", "from this day on (default: all)")                                   \
+	X(FL_OPT_UNTIL, "until", "YYYY-MM-DD", "up to and with this day (default: all)")                            \
+	X(FL_OPT_ACCEPT, "accept", "ORIGIN", "take in a ship never seen before, whose origin begins with this")     \
+	X(FL_OPT_SOON, "soon", "DAYS", "how far ahead of a last day to warn (default: 60)")
 
 typedef enum fl_option {
 #define FL_OPTION_ENUM(name, word, argument, help) name,
@@ -148,6 +149,9 @@ fl_status fl_command_history(fl_cli *cli, fl_exit *code, fl_error *err);
 fl_status fl_command_due(fl_cli *cli, fl_exit *code, fl_error *err);
 fl_status fl_command_lookback(fl_cli *cli, fl_exit *code, fl_error *err);
 fl_status fl_command_book(fl_cli *cli, fl_exit *code, fl_error *err);
+fl_status fl_command_stock(fl_cli *cli, fl_exit *code, fl_error *err);
+fl_status fl_command_report(fl_cli *cli, fl_exit *code, fl_error *err);
+fl_status fl_command_pack(fl_cli *cli, fl_exit *code, fl_error *err);
 fl_status fl_command_list(fl_cli *cli, fl_exit *code, fl_error *err);
 
 #endif

@@ -4,7 +4,7 @@ _foundleft() {
 	local word=${COMP_WORDS[COMP_CWORD]} previous=${COMP_WORDS[COMP_CWORD - 1]} command=${COMP_WORDS[1]}
 	COMPREPLY=()
 	if [ "$COMP_CWORD" -eq 1 ]; then
-		mapfile -t COMPREPLY < <(compgen -W "begin resume replay import assess certify countersign keys check history due lookback book list help version" -- "$word")
+		mapfile -t COMPREPLY < <(compgen -W "begin resume replay import assess certify countersign keys check history due lookback book stock report pack list help version" -- "$word")
 		return
 	fi
 	case $previous in
@@ -25,7 +25,7 @@ _foundleft() {
 		return
 		;;
 	help)
-		mapfile -t COMPREPLY < <(compgen -W "begin resume replay import assess certify countersign keys check history due lookback book list" -- "$word")
+		mapfile -t COMPREPLY < <(compgen -W "begin resume replay import assess certify countersign keys check history due lookback book stock report pack list" -- "$word")
 		return
 		;;
 	esac
@@ -41,11 +41,15 @@ _foundleft() {
 		keys)
 			[ "$COMP_CWORD" -eq 2 ] && mapfile -t COMPREPLY < <(compgen -W "make take import list show" -- "$word")
 			;;
-		history | lookback)
+		history | lookback | report)
 			[ "$COMP_CWORD" -eq 2 ] && mapfile -t COMPREPLY < <(compgen -W "$(foundleft due --json 2>/dev/null | grep -o '"tag":"[^"]*"' | cut -d'"' -f4)" -- "$word")
 			;;
 		book)
 			[ "$COMP_CWORD" -eq 2 ] && mapfile -t COMPREPLY < <(compgen -W "found add check backup restore export bundle take trace numbers" -- "$word")
+			;;
+		stock)
+			[ "$COMP_CWORD" -eq 2 ] && mapfile -t COMPREPLY < <(compgen -W "add renew replay list check import export health" -- "$word")
+			[ "$COMP_CWORD" -eq 3 ] && [ "$previous" = add ] && mapfile -t COMPREPLY < <(compgen -W "oil equipment instrument" -- "$word")
 			;;
 		list)
 			mapfile -t COMPREPLY < <(compgen -W "procedures stock sessions" -- "$word")
