@@ -123,6 +123,23 @@ foundleft check 2022-04-20-VT-1 --home "$broken" >/dev/null || complain "the ses
 rm "$broken/book"
 code_of 0 foundleft book add 2022-04-20-VT-1 --home "$broken"
 
+# No room for the book at one moment or another: the session is whole, and its number is never given to another one.
+failed=0
+for blocks in 80 250 330 400 460 520 600; do
+	full=$work/full-$blocks
+	mkdir -p "$full"
+	take "$full" "$data/history.csv" --as-found H1 >/dev/null
+	code_of 0 sh -c 'trap "" XFSZ; ulimit -f "$1"; shift; exec "$@"' sh $blocks "$program" import "$data/history.csv" \
+		--home "$full" --stock "$here/stock" --procedure single-cycle --instrument VT-1 --performed-by "Ida Fenwick" \
+		--as-found H3
+	says "The session is closed"
+	grep -q "has not got it" "$work/said" && failed=$((failed + 1))
+	code_of 0 foundleft book add "$full"/sessions/*.flj --home "$full"
+	code_of 0 foundleft book check --home "$full"
+	says "2 records recomputed"
+done
+[ $failed -ge 1 ] || complain "the disk was never full"
+
 # ---- certificates and amendments -----------------------------------------------------------------------------------
 certify() { foundleft certify 2026-04-14-VT-1 --home "$ship" --stock "$here/stock" "$@"; }
 code_of 0 certify --number TY-2026-0431 --date 2026-04-20 --amends TY-2026-0430 --reason "customer's name"
