@@ -284,24 +284,28 @@ static const char *word_global(fl_writing *w, const fl_point_result *point) {
 	                       word_risk(w, point->global.consumer), word_risk(w, point->global.producer));
 }
 
+/* "as-found 99.86 % (T/U 5.6)" of the deciding point. */
+static void list_risk(fl_writing *w, const fl_run_result *run, fl_text *list) {
+	const fl_point_result *point = run->worst;
+	if (!run->available || run->same_as_found || !point || !isfinite(point->tolerance_span) || !isfinite(point->sum.uc))
+		return;
+	fl_text_printf(list, "%s%s %s (T/U %s%s)", list->length ? ", " : "", fl_run_word(run->kind),
+	               word_risk(w, point->risk), fl_word_number(w->sheet, point->tur, 1), word_global(w, point));
+}
+
 /* What a verdict may be wrong by. */
 static void explain_risk(fl_writing *w) {
-	if (w->result->rule == FL_RULE_NONE)
-		return;
-	for (int kind = 0; kind < FL_RUN_KINDS; kind++) {
-		const fl_run_result *run = &w->result->runs[kind];
-		const fl_point_result *point = run->worst;
-		if (!run->available || run->same_as_found || !point || !isfinite(point->tolerance_span) ||
-		    !isfinite(point->sum.uc))
-			continue;
-		fl_sheet_add_led(
-		    w->sheet, FL_BLOCK_SMALL, fl_sheet_printf(w->sheet, "Risk, %s.", fl_run_word(run->kind)),
-		    "Probability that the true error at the deciding point is beyond the tolerance: %s (JCGM 106); tolerance "
-		    "over U there %s%s.",
-		    word_risk(w, point->risk), fl_word_number(w->sheet, point->tur, 1), word_global(w, point));
-	}
-	if (w->result->prior_words)
-		fl_sheet_add(w->sheet, FL_BLOCK_SMALL, fl_word_sentence(w->sheet, w->result->prior_words));
+	fl_text list = {0};
+	for (int kind = 0; kind < FL_RUN_KINDS && w->result->rule != FL_RULE_NONE; kind++)
+		list_risk(w, &w->result->runs[kind], &list);
+	if (list.length > 0)
+		fl_sheet_add_led(w->sheet, FL_BLOCK_SMALL, "Risk.",
+		                 "Probability of a true error beyond the tolerance T at the deciding point (JCGM 106): "
+		                 "%s.%s%s",
+		                 list.data, w->result->prior_words ? " " : "",
+		                 w->result->prior_words ? fl_word_sentence(w->sheet, w->result->prior_words) : "");
+	w->sheet->failed |= list.failed;
+	fl_text_free(&list);
 }
 
 /* The contribution of that rank, largest first; NULL if there are not so many. */
@@ -340,18 +344,22 @@ static void explain_budget(fl_writing *w) {
 
 /* What does not average out, and what it does to zero and span error. */
 static void explain_shared(fl_writing *w) {
+	fl_text list = {0};
 	for (int kind = 0; kind < FL_RUN_KINDS; kind++) {
 		const fl_run_result *run = &w->result->runs[kind];
 		if (!run->available || run->same_as_found || !run->has_line || !(run->line_shared.var_slope > 0))
 			continue;
-		fl_sheet_add_led(w->sheet, FL_BLOCK_SMALL,
-		                 fl_sheet_printf(w->sheet, "Zero and span error, %s.", fl_run_word(run->kind)),
-		                 "Standard uncertainties with what the points share: %s and %s %% of span.",
-		                 fl_word_u(w->sheet, 100 * sqrt(run->line_shared.var_intercept)),
-		                 fl_word_u(w->sheet, 100 * sqrt(run->line_shared.var_slope)));
+		fl_text_printf(&list, "%s%s %s and %s", list.length ? ", " : "", fl_run_word(run->kind),
+		               fl_word_u(w->sheet, 100 * sqrt(run->line_shared.var_intercept)),
+		               fl_word_u(w->sheet, 100 * sqrt(run->line_shared.var_slope)));
 	}
-	if (w->result->correlation_words)
-		fl_sheet_add(w->sheet, FL_BLOCK_SMALL, fl_word_sentence(w->sheet, w->result->correlation_words));
+	if (list.length > 0 && w->result->correlation_words)
+		fl_sheet_add_led(w->sheet, FL_BLOCK_SMALL, "Shared by the points.",
+		                 "Deviations of equipment%s do not average out; with them u of zero and span error, in %% of "
+		                 "span: %s.",
+		                 w->procedure->medium == FL_MEDIUM_OIL ? ", D341 and the oils' issuer" : "", list.data);
+	w->sheet->failed |= list.failed;
+	fl_text_free(&list);
 }
 
 /* What the dial means in the plant. */
@@ -407,7 +415,7 @@ static void explain_rule(fl_writing *w) {
 	                 w->result->rule == FL_RULE_NONE
 	                     ? ""
 	                     : " It is applied to the error at every point of the tables; the run "
-	                       "has the verdict of its worst point. An error exactly at a limit is within it.");
+	                       "has the verdict of its worst point. Limits are inclusive.");
 	if (w->result->below_tur)
 		fl_sheet_add_led(w->sheet, FL_BLOCK_TEXT, "To be noted.", "%s",
 		                 fl_word_sentence(w->sheet, w->result->below_tur));

@@ -37,11 +37,11 @@ static void write_instruments(fl_sheet *sheet, const fl_survey *s) {
 	                                    {"serial no.", "", "", FL_ALIGN_LEFT, false},
 	                                    {"position", "", "", FL_ALIGN_LEFT, true},
 	                                    {"last", "", "calibration", FL_ALIGN_LEFT, false},
-	                                    {"left with verdict", "", "calibration", FL_ALIGN_LEFT, true},
+	                                    {"left with\nverdict", "", "calibration", FL_ALIGN_LEFT, true},
 	                                    {"certificate", "", "calibration", FL_ALIGN_LEFT, false},
 	                                    {"next", "", "calibration", FL_ALIGN_LEFT, false},
 	                                    {"state", "", "calibration", FL_ALIGN_LEFT, false},
-	                                    {"certificate", "", "on page", FL_ALIGN_DECIMAL, false},
+	                                    {"copy", "", "on page", FL_ALIGN_DECIMAL, false},
 	                                    {"trend", "", "on page", FL_ALIGN_DECIMAL, false}};
 	fl_sheet_add(sheet, FL_BLOCK_HEADING, "Instruments");
 	fl_block *table = fl_sheet_add_table(sheet, columns, sizeof columns / sizeof *columns);

@@ -129,7 +129,7 @@ static void write_state(fl_years *y, fl_block *grid) {
 	const fl_kept_run *left = last->as_left.state != FL_KEPT_NONE ? &last->as_left : &last->as_found;
 	fl_sheet_pairf(sheet, grid, 1, "Sessions", "%zu, from %s to %s", y->count, fl_word_day(sheet, y->records[0].day),
 	               fl_word_day(sheet, last->day));
-	fl_sheet_pair(sheet, grid, 1, "Last certificate", last->number);
+	fl_sheet_pair(sheet, grid, 1, "Last record", last->number);
 	fl_sheet_pair(sheet, grid, 1, "Left with verdict", left->verdict);
 	fl_sheet_pair(sheet, grid, 1, "Next due", due_text(y));
 	if (isfinite(last->running_hours))
@@ -171,7 +171,7 @@ static void write_meaning(fl_years *y) {
 	    y->sheet, FL_BLOCK_SMALL, "Guarded limit.",
 	    "Tolerance less the expanded uncertainty of the last session. By the mean: where the straight line "
 	    "from the last as-left reaches it; by the 95 %% bound: where the prediction interval of one further "
-	    "reading does. Fewer than three intervals give no line. The certificates named above rule.");
+	    "reading does. Fewer than three intervals give no line. The certificates of the records rule.");
 }
 
 /* ---- all of it --------------------------------------------------------------------------------------------------- */

@@ -36,7 +36,7 @@ static const char *verdict_of(const fl_kept_run *run) {
 
 void fl_years_history(fl_years *y) {
 	static const fl_column columns[] = {{"day", "", "", FL_ALIGN_LEFT, false},
-	                                    {"certificate", "", "", FL_ALIGN_LEFT, false},
+	                                    {"record", "", "", FL_ALIGN_LEFT, false},
 	                                    {"hours", "h", "", FL_ALIGN_DECIMAL, false},
 	                                    {"zero", "%", "as-found", FL_ALIGN_DECIMAL, false},
 	                                    {"span", "%", "as-found", FL_ALIGN_DECIMAL, false},

@@ -269,8 +269,16 @@ static void mark_copy(fl_packing *p, fl_sheet *sheet, const fl_record *record, c
 	fl_certificate_mark_copy(sheet, mark ? mark : "Copy", where ? where : "On the original.");
 }
 
+/* "TY-2026-0430.pdf" -> "TY-2026-0430": the certificate's number, which may be another than the record's. */
+static const char *number_of(fl_packing *p, const fl_record *record, const fl_paper *paper) {
+	size_t length = paper ? strlen(paper->file) : 0;
+	if (length > 4 && strcmp(paper->file + length - 4, ".pdf") == 0)
+		return fl_arena_strndup(&p->arena, paper->file, length - 4);
+	return fl_arena_strdup(&p->arena, record->number);
+}
+
 /* The certificate of a record as a part; a journal that stayed on the ship leaves an open point instead. */
-static fl_status add_certificate(fl_packing *p, const fl_record *record, fl_error *err) {
+static fl_status add_certificate(fl_packing *p, const fl_record *record, fl_survey_instrument *row, fl_error *err) {
 	fl_paper *papers;
 	size_t count;
 	fl_sheet *sheet = NULL;
@@ -279,6 +287,9 @@ static fl_status add_certificate(fl_packing *p, const fl_record *record, fl_erro
 	if (status < 0)
 		return status;
 	const fl_paper *last = count ? &papers[count - 1] : NULL;
+	row->number = number_of(p, record, last);
+	if (!row->number)
+		return fl_fail(err, FL_E_MEMORY, "out of memory for the pack");
 	status = last ? sheet_of_paper(p, last, &sheet, &passed_over) : FL_E_NOT_FOUND;
 	if (status < 0)
 		status = sheet_of_record(p, record, &sheet, &why);
@@ -296,8 +307,10 @@ static fl_status add_certificate(fl_packing *p, const fl_record *record, fl_erro
 		                  fl_arena_printf(&p->arena, "no certificate of the session %s of %s is in the book",
 		                                  record->number, record->tag),
 		                  err);
-	return status < 0 ? status
-	                  : add_part(p, sheet, fl_arena_printf(&p->arena, "Certificate %s", record->number), 1, err);
+	return status < 0
+	           ? status
+	           : add_part(p, sheet, fl_arena_printf(&p->arena, "%s %s", last ? "Certificate" : "Session", row->number),
+	                      1, err);
 }
 
 /* ---- pack: instruments ------------------------------------------------------------------------------------------- */
@@ -345,18 +358,18 @@ static fl_status add_instrument(fl_packing *p, const fl_known_instrument *instru
 	                                      .serial = instrument->serial,
 	                                      .site = instrument->site,
 	                                      .position = fl_arena_strdup(&p->arena, last->position),
-	                                      .number = fl_arena_strdup(&p->arena, last->number),
+	                                      .number = "",
 	                                      .verdict = fl_arena_strdup(&p->arena, left->verdict),
 	                                      .last = last->day,
 	                                      .due = last->due};
-	if (!p->rows[row].position || !p->rows[row].number || !p->rows[row].verdict)
+	if (!p->rows[row].position || !p->rows[row].verdict)
 		status = fl_fail(err, FL_E_MEMORY, "out of memory for the pack");
 	if (status >= 0)
 		status = add_part(p, NULL, fl_arena_printf(&p->arena, "%s, %s", instrument->tag, instrument->serial), 0, err);
 	if (status >= 0)
 		status = note_open(p, last, err);
 	if (status >= 0)
-		status = add_certificate(p, last, err);
+		status = add_certificate(p, last, &p->rows[row], err);
 	p->part_of_row[row] = p->part_count > group + 1 ? group + 1 : 0;
 	if (status >= 0)
 		status = trend_sheet(&history, &p->head, &trend, err);

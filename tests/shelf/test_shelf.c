@@ -208,6 +208,46 @@ static void text_reads_back_as_it_was_typed(void **state) {
 	}
 }
 
+/* Lines of any kind in any order: each is taken or refused, and what agrees is an item that the files' reader takes. */
+static void nonsense_does_no_harm(void **state) {
+	(void)state;
+	static const char *const words[] = {
+	    "",           "",      "-",     "?",           "back",        "back nu",
+	    "back k",     "show",  "yes",   "no",          "12",          "0",
+	    "2",          "20 °C", "40",    "1e999",       "nan",         "2026-01-01",
+	    "2027-01-01", "LK-1",  "bath",  "thermometer", "0 to 150 °C", "0 to 50 mm²/s",
+	    "4-20 mA",    "900",   "0.2 %", "10.5",        "5.1",         "800",
+	    "0.4",        "a: b",  "{",     "\"",          "stop it",     "0 to 5 s Saybolt Universal"};
+	fl_stock stock;
+	sample_stock(&stock);
+	uint64_t seed = UINT64_C(0x2545F4914F6CDD1D);
+	int agreed = 0;
+	for (int run = 0; run < 300; run++) {
+		static const char *const whats[] = {"add oil",    "add equipment", "add instrument",
+		                                    "renew TH-7", "renew VT-1",    "renew 2511B"};
+		fl_shelf *shelf = shelf_begin(whats[run % 6], &stock);
+		for (int i = 0; i < 150 && !fl_shelf_finished(shelf); i++) {
+			fl_text say = {0}, prompt = {0};
+			fl_error err = {0};
+			seed ^= seed << 13, seed ^= seed >> 7, seed ^= seed << 17;
+			fl_shelf_prompt(shelf, &prompt);
+			fl_status status = fl_shelf_line(shelf, words[seed % (sizeof words / sizeof *words)], &say, &err);
+			assert_true(status >= 0 || err.message[0]);
+			fl_text_free(&say);
+			fl_text_free(&prompt);
+		}
+		if (fl_shelf_agreed(shelf)) {
+			fl_stock got;
+			read_item(shelf, &got);
+			fl_stock_free(&got);
+			agreed++;
+		}
+		fl_shelf_free(shelf);
+	}
+	print_message("%d of 300 came to an item\n", agreed);
+	fl_stock_free(&stock);
+}
+
 /* ---- files ------------------------------------------------------------------------------------------------------- */
 
 static char *read_all(const char *path) {
@@ -313,6 +353,7 @@ int main(void) {
 	    cmocka_unit_test(back_changes_an_answer),
 	    cmocka_unit_test(stop_leaves_without_agreeing),
 	    cmocka_unit_test(text_reads_back_as_it_was_typed),
+	    cmocka_unit_test(nonsense_does_no_harm),
 	    cmocka_unit_test(a_file_keeps_all_but_the_new_item),
 	    cmocka_unit_test(a_list_in_brackets_is_refused),
 	    cmocka_unit_test(a_text_without_newline_at_its_end_is_taken),
