@@ -92,6 +92,8 @@ void *fl_arena_alloc(fl_arena *arena, size_t count, size_t size) FL_MUST_USE;
 /* Copies of text; NULL when memory is out. */
 char *fl_arena_strdup(fl_arena *arena, const char *text) FL_MUST_USE;
 char *fl_arena_strndup(fl_arena *arena, const char *text, size_t length) FL_MUST_USE;
+/* The texts that follow, up to the NULL behind the last, one behind the other: many times faster than formatting. */
+char *fl_arena_join(fl_arena *arena, ...) __attribute__((sentinel)) FL_MUST_USE;
 char *fl_arena_printf(fl_arena *arena, const char *format, ...) FL_PRINTF(2, 3) FL_MUST_USE;
 /* Empties the arena but keeps one block, for work that goes round and round. */
 void fl_arena_reset(fl_arena *arena);

@@ -68,7 +68,7 @@ static fl_budget_line *add(budget *b, const char *name, fl_distribution distribu
 
 /* One deviation at every point that has the same key. */
 static void is_shared(budget *b, fl_budget_line *line, const char *by, double shared) {
-	line->key = fl_arena_printf(b->w->arena, "%s, %s", line->name, by);
+	line->key = fl_arena_join(b->w->arena, line->name, ", ", by, NULL);
 	line->shared = shared;
 }
 
@@ -77,7 +77,7 @@ static fl_budget_line *add_half_width(budget *b, const char *name, double half_w
 	fl_budget_line *line =
 	    add(b, name, FL_DIST_RECTANGULAR, half_width / divisor(FL_DIST_RECTANGULAR), unit, sensitivity);
 	line->stated =
-	    fl_arena_printf(b->w->arena, "%s %s half width", fl_analysis_number(b->w->arena, half_width, 3), unit);
+	    fl_arena_join(b->w->arena, fl_analysis_number(b->w->arena, half_width, 3), " ", unit, " half width", NULL);
 	return line;
 }
 
@@ -85,8 +85,8 @@ static fl_budget_line *add_certificate(budget *b, const char *name, double U, do
                                        double sensitivity) {
 	fl_arena *arena = b->w->arena;
 	fl_budget_line *line = add(b, name, FL_DIST_NORMAL, U / k, unit, sensitivity);
-	line->stated =
-	    fl_arena_printf(arena, "%s %s, k = %s", fl_analysis_number(arena, U, 3), unit, fl_analysis_number(arena, k, 3));
+	line->stated = fl_arena_join(arena, fl_analysis_number(arena, U, 3), " ", unit,
+	                             ", k = ", fl_analysis_number(arena, k, 3), NULL);
 	return line;
 }
 
@@ -99,8 +99,9 @@ static fl_budget_line *add_stated(budget *b, const char *name, const fl_equipmen
 
 static const char *procedure_words(const budget *b, const char *field) {
 	const fl_procedure *procedure = b->w->procedure;
-	return fl_arena_printf(b->w->arena, "procedure %s%s%s, %s", procedure->id ? procedure->id : "",
-	                       procedure->version ? " version " : "", procedure->version ? procedure->version : "", field);
+	return fl_arena_join(b->w->arena, "procedure ", procedure->id ? procedure->id : "",
+	                     procedure->version ? " version " : "", procedure->version ? procedure->version : "", ", ",
+	                     field, NULL);
 }
 
 /* ---- measuring equipment ---- */
@@ -119,9 +120,9 @@ static const char *difference_unit(fl_unit unit) {
 }
 
 static const char *certificate_words(const budget *b, const fl_equipment *item) {
-	return fl_arena_printf(b->w->arena, "certificate %s of %s%s%s", item->certificate ? item->certificate : "not named",
-	                       item->id, item->issuer && *item->issuer ? ", issued by " : "",
-	                       item->issuer ? item->issuer : "");
+	return fl_arena_join(b->w->arena, "certificate ", item->certificate ? item->certificate : "not named", " of ",
+	                     item->id, item->issuer && *item->issuer ? ", issued by " : "",
+	                     item->issuer ? item->issuer : "", NULL);
 }
 
 /* The parts of an item that are one deviation in all its readings. */
@@ -135,11 +136,11 @@ static void finish_equipment(budget *b, fl_budget_line *line, const fl_equipment
 static void add_resolution(budget *b, const fl_equipment *item, double half_width, const char *unit, double sensitivity,
                            fl_effect_on on) {
 	fl_arena *arena = b->w->arena;
-	fl_budget_line *line = add_half_width(b, fl_arena_printf(arena, "%s resolution", fl_stock_role_text(item->role)),
+	fl_budget_line *line = add_half_width(b, fl_arena_join(arena, fl_stock_role_text(item->role), " resolution", NULL),
 	                                      half_width, unit, sensitivity);
 	line->on = on;
 	line->inside = scale_of(item->unit);
-	line->source = fl_arena_printf(arena, "last digit of %s (JCGM 100 F.2.2.1)", item->id);
+	line->source = fl_arena_join(arena, "last digit of ", item->id, " (JCGM 100 F.2.2.1)", NULL);
 }
 
 /* Certificate, drift since, resolution. `per_inside`: % of span for one inside unit of the item's quantity. */
@@ -150,11 +151,11 @@ static void add_equipment(budget *b, const fl_equipment *item, double per_inside
 	const char *role = fl_stock_role_text(item->role), *unit = difference_unit(item->unit);
 	double sensitivity = per_inside * scale_of(item->unit);
 	fl_equipment_u parts = fl_stock_equipment_u(item, b->w->session->day);
-	finish_equipment(b, add_stated(b, fl_arena_printf(arena, "%s certificate", role), item, unit, sensitivity), item,
+	finish_equipment(b, add_stated(b, fl_arena_join(arena, role, " certificate", NULL), item, unit, sensitivity), item,
 	                 on);
 	if (item->drift_per_year > 0.0)
 		finish_equipment(b,
-		                 add_half_width(b, fl_arena_printf(arena, "%s drift since its calibration", role),
+		                 add_half_width(b, fl_arena_join(arena, role, " drift since its calibration", NULL),
 		                                parts.drift_half_width, unit, sensitivity),
 		                 item, on);
 	if (item->resolution > 0.0)
@@ -181,8 +182,8 @@ static double certified_U_rel(const fl_oil *oil, const fl_oil_state *state) {
 }
 
 static const char *oil_words(const budget *b, const fl_oil *oil) {
-	return fl_arena_printf(b->w->arena, "certificate %s of lot %s%s%s", oil->certificate, oil->lot,
-	                       oil->issuer && *oil->issuer ? ", issued by " : "", oil->issuer ? oil->issuer : "");
+	return fl_arena_join(b->w->arena, "certificate ", oil->certificate, " of lot ", oil->lot,
+	                     oil->issuer && *oil->issuer ? ", issued by " : "", oil->issuer ? oil->issuer : "", NULL);
 }
 
 /* Who certifies an oil has one scale of viscosity; an oil without a named issuer shares with no other. */

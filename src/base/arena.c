@@ -61,6 +61,29 @@ char *fl_arena_strdup(fl_arena *arena, const char *text) {
 	return fl_arena_strndup(arena, text, strlen(text));
 }
 
+static size_t copy_all(char *to, va_list texts) {
+	size_t length = 0;
+	for (const char *text; (text = va_arg(texts, const char *)) != NULL;) {
+		size_t size = strlen(text);
+		if (to)
+			memcpy(to + length, text, size);
+		length += size;
+	}
+	return length;
+}
+
+char *fl_arena_join(fl_arena *arena, ...) {
+	va_list texts, again;
+	va_start(texts, arena);
+	va_copy(again, texts);
+	char *joined = fl_arena_alloc(arena, copy_all(NULL, texts) + 1, 1);
+	if (joined)
+		copy_all(joined, again);
+	va_end(again);
+	va_end(texts);
+	return joined;
+}
+
 char *fl_arena_printf(fl_arena *arena, const char *format, ...) {
 	char most[256]; /* nearly every text is shorter, and then it is formatted once */
 	va_list values, again;
