@@ -70,17 +70,14 @@ static const char *shared_issuer(const work *w) {
 void fl_analysis_say_correlation(work *w) {
 	const char *issuer = shared_issuer(w);
 	double r = 1.0 - w->procedure->oil_own_share;
-	const char *oils =
-	    issuer ? fl_arena_printf(w->arena,
-	                             ", and the certificates of oils of one issuer (%s) are taken as correlated by %s",
-	                             issuer, fl_analysis_number(w->arena, r, 3))
-	           : "";
+	const char *oils = issuer ? fl_arena_printf(w->arena, " and the oils' issuer, %s (correlation %s)", issuer,
+	                                            fl_analysis_number(w->arena, r, 3))
+	                          : "";
 	w->result->correlation_words =
 	    fl_arena_printf(w->arena,
-	                    "The points share %s%s: these parts are the same deviation at every point and do not average "
-	                    "out in lines, zero "
-	                    "and span",
-	                    w->procedure->medium == FL_MEDIUM_OIL ? "thermometer, meter, bath and the viscosity equation"
+	                    "What comes from %s%s is one deviation at all points and does not average out in zero and "
+	                    "span error",
+	                    w->procedure->medium == FL_MEDIUM_OIL ? "thermometer, meter, bath, viscosity equation"
 	                                                          : "pressure standard and meter",
 	                    oils ? oils : "");
 }
