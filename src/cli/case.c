@@ -32,8 +32,7 @@ static fl_status find_causes(fl_case *one, fl_error *err) {
 	return FL_OK;
 }
 
-/* All that follows from the session. */
-static fl_status compute(fl_case *one, fl_error *err) {
+fl_status fl_case_compute(fl_case *one, fl_error *err) {
 	fl_status status = fl_session_procedure(&one->session, &one->procedure, err);
 	if (status < 0)
 		return status;
@@ -47,27 +46,15 @@ static fl_status compute(fl_case *one, fl_error *err) {
 	return status < 0 ? status : find_causes(one, err);
 }
 
-fl_status fl_case_load(const fl_io *io, const char *path, fl_case *out, fl_error *err) {
+fl_status fl_case_read(const fl_io *io, const char *path, fl_case *out, fl_error *err) {
 	fl_status status = set_path(out, path, err);
-	if (status >= 0)
-		status = fl_journal_read(io, path, &out->session, out->head, &out->torn, err);
-	if (status >= 0)
-		status = compute(out, err);
-	if (status < 0)
-		fl_case_free(out);
-	return status;
+	return status < 0 ? status : fl_journal_read(io, path, &out->session, out->head, &out->torn, err);
 }
 
-fl_status fl_case_replay(const char *bytes, size_t length, const char *name, fl_case *out, fl_error *err) {
-	fl_hasher *hasher = NULL;
-	fl_status status = set_path(out, name, err);
+fl_status fl_case_load(const fl_io *io, const char *path, fl_case *out, fl_error *err) {
+	fl_status status = fl_case_read(io, path, out, err);
 	if (status >= 0)
-		status = fl_hasher_new(&hasher, err);
-	if (status >= 0)
-		status = fl_journal_replay(bytes, length, name, hasher, &out->session, out->head, err);
-	fl_hasher_free(hasher);
-	if (status >= 0)
-		status = compute(out, err);
+		status = fl_case_compute(out, err);
 	if (status < 0)
 		fl_case_free(out);
 	return status;
@@ -79,7 +66,7 @@ fl_status fl_case_load_to(const fl_io *io, const char *path, int sequence, fl_ar
 	if (status >= 0)
 		status = fl_journal_read_to(io, path, sequence, &out->session, out->head, arena, bytes, length, err);
 	if (status >= 0)
-		status = compute(out, err);
+		status = fl_case_compute(out, err);
 	if (status < 0)
 		fl_case_free(out);
 	return status;
@@ -87,7 +74,7 @@ fl_status fl_case_load_to(const fl_io *io, const char *path, int sequence, fl_ar
 
 fl_status fl_case_of(const fl_session *session, const fl_stock *shelf, fl_case *out, fl_error *err) {
 	*out = (fl_case){.session = *session, .shelf = shelf, .borrowed = true};
-	fl_status status = compute(out, err);
+	fl_status status = fl_case_compute(out, err);
 	if (status < 0)
 		fl_case_free(out);
 	return status;

@@ -173,7 +173,9 @@ static fl_status issue_new(const fl_cli *cli, fl_case *one, fl_order *order, fl_
 	fl_journal journal;
 	*out = (fl_derived){.one = *one};
 	*one = (fl_case){0};
-	fl_status status = fl_journal_resume(&journal, cli->io, out->one.path, fl_cli_now(), err);
+	fl_status status = fl_case_compute(&out->one, err);
+	if (status >= 0)
+		status = fl_journal_resume(&journal, cli->io, out->one.path, fl_cli_now(), err);
 	if (status >= 0) {
 		if (out->one.torn) /* resuming cut it off, by a line of its own */
 			memcpy(out->one.head, journal.head, sizeof journal.head);
@@ -320,12 +322,13 @@ static fl_status certify(const fl_cli *cli, fl_case *one, fl_order *order, fl_si
 }
 
 /* The content of the certificate that was issued under the number, or a draft of it. */
-static fl_status show_text(const fl_cli *cli, const fl_case *one, const fl_order *order, fl_error *err) {
+static fl_status show_text(const fl_cli *cli, fl_case *one, const fl_order *order, fl_error *err) {
 	const fl_session_issue *issued = fl_session_issue_of(&one->session, order->entry.number);
 	fl_derived derived;
 	if (!issued) {
 		fl_issue draft = fl_derive_issue(&one->session, &order->entry, NULL);
-		return print_text(cli, one, &draft, err);
+		fl_status computed = fl_case_compute(one, err);
+		return computed < 0 ? computed : print_text(cli, one, &draft, err);
 	}
 	fl_status status = refuse_other(cli, order, issued, err);
 	if (status >= 0)
@@ -345,7 +348,7 @@ fl_status fl_command_certify(fl_cli *cli, fl_exit *code, fl_error *err) {
 	fl_signing signing = {0};
 	fl_status status = fl_place_journal(cli, cli->arguments[0], path, err);
 	if (status >= 0)
-		status = fl_case_load(cli->io, path, &one, err);
+		status = fl_case_read(cli->io, path, &one, err);
 	if (status < 0)
 		return status;
 	bool signs = cli->values[FL_OPT_SIGNER] != NULL;
