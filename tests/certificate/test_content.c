@@ -260,6 +260,44 @@ static void test_hostile_words_stay_words(void **state) {
 	free(text);
 }
 
+/* Zones, risks with their prior, a verdict below the least ratio in writing, budgets where the procedure asks. */
+static void test_zones_risks_and_budgets(void **state) {
+	(void)state;
+	static const fl_zone zones[] = {{20.0, 36.0, {FL_BAND_PERCENT_SPAN, 1.0}}};
+	sample_case one;
+	sample_make(&one, &left_alone);
+	sample_assess(&one);
+	char *text = text_of(&one);
+	must_say(text, "Limits are inclusive.");
+	must_say(text, "Probability of a true error beyond the tolerance");
+	must_say(text, "What the dial means.");
+	must_not_say(text, "Uncertainty budgets");
+	must_not_say(text, "global risk");
+	must_not_say(text, "conformity is stated although");
+	free(text);
+	fl_result_free(&one.result);
+	fl_instrument *instrument = &one.stock.instruments[0];
+	instrument->zones = zones;
+	instrument->zone_count = 1;
+	one.procedure.reliability = 0.9;
+	one.procedure.minimum_tur = 20.0;
+	one.procedure.states_below_tur = true;
+	one.procedure.budget_on_certificate = true;
+	sample_assess(&one);
+	text = text_of(&one);
+	must_say(text, "from 20 to 36 % of span ±1.0 % of span");
+	must_say(text, "global risk of a false acceptance");
+	must_say(text, "90 % of the true values in tolerance");
+	must_say(text, "onformity is stated although the tolerance at");
+	must_say(text, "Uncertainty budgets, as-left, both directions together");
+	must_say(text, "viscosity between certified temperatures");
+	must_say(text, "Student's t");
+	free(text);
+	instrument->zones = NULL;
+	instrument->zone_count = 0;
+	sample_free(&one);
+}
+
 int main(void) {
 	const struct CMUnitTest tests[] = {
 	    cmocka_unit_test(test_all_that_a_certificate_needs),
@@ -273,6 +311,7 @@ int main(void) {
 	    cmocka_unit_test(test_transmitter_alone_speaks_of_no_oil),
 	    cmocka_unit_test(test_not_determined_is_said),
 	    cmocka_unit_test(test_issue_without_number_is_refused),
+	    cmocka_unit_test(test_zones_risks_and_budgets),
 	    cmocka_unit_test(test_hostile_words_stay_words),
 	};
 	return cmocka_run_group_tests_name("certificate/content", tests, NULL, NULL);

@@ -3,6 +3,7 @@
  *
  * SPDX-License-Identifier: GPL-3.0-or-later */
 #include "../trend/history.h"
+#include "failing_memory.h"
 #include "foundleft/certificate.h"
 #include "scratch.h"
 #include "sheet.h"
@@ -179,6 +180,45 @@ static void the_same_book_gives_the_same_bytes(void **state) {
 	fl_sheet_free(trend);
 }
 
+/* Every request for memory is refused once: a status, no leak, nothing left behind. */
+static void without_memory_it_says_so(void **state) {
+	(void)state;
+	history h;
+	demo(&h);
+	fl_trend_report report = report_of(&h);
+	for (long n = 1;; n++) {
+		fl_sheet *sheet = NULL;
+		failing_memory_start(n);
+		fl_status status = fl_certificate_trend(&report, &sheet, NULL);
+		if (!failing_memory_stop()) {
+			assert_int_equal(status, FL_OK);
+			fl_sheet_free(sheet);
+			break;
+		}
+		assert_int_equal(status, FL_E_MEMORY);
+		assert_null(sheet);
+	}
+	fl_sheet *trend = trend_sheet(&h), *survey = survey_sheet(0, 2);
+	for (long n = 1;; n++) {
+		unsigned char *bytes = NULL;
+		size_t length = 0;
+		fl_pack_part parts[] = {{survey, "Status", 0, 0}, {NULL, "VT-1", 0, 0}, {trend, "Trend", 1, 0}};
+		failing_memory_start(n);
+		fl_status status =
+		    fl_certificate_pack_pdf(parts, 3, fl_io_system(), &(fl_faces){FACES_FOLDER}, &bytes, &length, NULL);
+		if (!failing_memory_stop()) {
+			assert_int_equal(status, FL_OK);
+			free(bytes);
+			break;
+		}
+		if (status == FL_OK)
+			fail_msg("request %ld was refused and nothing was said", n);
+		assert_null(bytes);
+	}
+	fl_sheet_free(trend);
+	fl_sheet_free(survey);
+}
+
 int main(int argc, char **argv) {
 	folder_to_fill = argc > 1 ? argv[1] : NULL;
 	const struct CMUnitTest tests[] = {
@@ -187,6 +227,7 @@ int main(int argc, char **argv) {
 	    cmocka_unit_test(one_session_is_reported_too),
 	    cmocka_unit_test(the_survey_names_what_is_not_in_date),
 	    cmocka_unit_test(the_same_book_gives_the_same_bytes),
+	    cmocka_unit_test(without_memory_it_says_so),
 	};
 	return cmocka_run_group_tests(tests, NULL, NULL);
 }

@@ -7,6 +7,7 @@ foreach(program test_certificate_pdf test_certificate_memory test_certificate_ye
 	endif()
 endforeach()
 failing_memory(test_certificate_memory)
+failing_memory(test_certificate_years)
 
 add_executable(make_sample_certificate ${CMAKE_CURRENT_LIST_DIR}/make_sample.c)
 target_link_libraries(make_sample_certificate PRIVATE foundleft_certificate)
