@@ -391,8 +391,8 @@ fl_status fl_journal_create(fl_journal *journal, const fl_io *io, const char *pa
  * `torn` line at `now`. FL_E_TAMPERED names the first line that does not fit. */
 fl_status fl_journal_resume(fl_journal *journal, const fl_io *io, const char *path, fl_utc now,
                             fl_error *err) FL_MUST_USE;
-/* The same from memory: bytes[length] as they stood in the file; `name` stands for it in errors. `hasher` is used for the
- * digests and may serve the next journal. */
+/* The same from memory: bytes[length] as they stood in the file; `name` stands for it in errors. `hasher` is used for
+ * the digests and may serve the next journal. */
 fl_status fl_journal_replay(const char *bytes, size_t length, const char *name, fl_hasher *hasher, fl_session *session,
                             char head[FL_DIGEST_HEX_SIZE], fl_error *err) FL_MUST_USE;
 /* Reads only: verifies and replays, ignores an unfinished last line (*torn tells). head[] gets the digest. */
