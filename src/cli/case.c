@@ -60,6 +60,21 @@ fl_status fl_case_load(const fl_io *io, const char *path, fl_case *out, fl_error
 	return status;
 }
 
+fl_status fl_case_replay(const char *bytes, size_t length, const char *name, fl_case *out, fl_error *err) {
+	fl_hasher *hasher = NULL;
+	fl_status status = set_path(out, name, err);
+	if (status >= 0)
+		status = fl_hasher_new(&hasher, err);
+	if (status >= 0)
+		status = fl_journal_replay(bytes, length, name, hasher, &out->session, out->head, err);
+	fl_hasher_free(hasher);
+	if (status >= 0)
+		status = fl_case_compute(out, err);
+	if (status < 0)
+		fl_case_free(out);
+	return status;
+}
+
 fl_status fl_case_load_to(const fl_io *io, const char *path, int sequence, fl_arena *arena, char **bytes,
                           size_t *length, fl_case *out, fl_error *err) {
 	fl_status status = set_path(out, path, err);
