@@ -2,6 +2,9 @@
  * SPDX-License-Identifier: GPL-3.0-or-later */
 #include "answers.h"
 
+#include "failing_io.h"
+
+#include <errno.h>
 #include <unistd.h>
 
 static fl_shelf *talk(const fl_stock *stock, const char *what, const char *const *lines, int count) {
@@ -342,6 +345,58 @@ static void each_kind_goes_to_its_file(void **state) {
 	fl_stock_free(&stock);
 }
 
+/* What a dead machine left beside a file; the writer names it when there is too much of it. */
+static void remove_unfinished(const char *path) {
+	char part[600];
+	for (int i = 0; i < 10; i++) {
+		snprintf(part, sizeof part, "%s.part%d", path, i);
+		unlink(part);
+	}
+}
+
+/* A full disk or a power cut at any call: the file holds all of the old or all of the new, and the next try works. */
+static void a_failing_disk_leaves_old_or_new(void **state) {
+	const char *folder = *state;
+	static const failing_mode modes[] = {FAILING_CLEAN, FAILING_TORN, FAILING_SHORT, FAILING_DEAD};
+	fl_stock none = {0};
+	fl_error err = {0};
+	char path[512], got[512];
+	fl_shelf *shelf = talk(&none, "add equipment", thermometer_lines, COUNT(thermometer_lines));
+	fl_text first = {0}, second = {0};
+	must(fl_shelf_insert("", "f.yaml", FL_SHELF_EQUIPMENT,
+	                     "id: A-1\nrole: timer\ncertificate: a\nissuer: b\n"
+	                     "calibrated on: 2026-01-01\ndue on: 2027-01-01\nrange: 0 to 100 s\nresolution: 0.01 s\n"
+	                     "drift per year: 0 s\nU: 0.1 s\nk: 2\n",
+	                     &first, &err));
+	must(fl_shelf_insert(first.data, "f.yaml", FL_SHELF_EQUIPMENT, fl_shelf_block(shelf), &second, &err));
+	snprintf(path, sizeof path, "%s/equipment.yaml", folder);
+	char *paths[] = {path};
+	for (size_t mode = 0; mode < 4; mode++)
+		for (long n = 1;; n++) {
+			failing_io disk;
+			must(fl_file_write(fl_io_system(), path, first.data, first.length, true, &err));
+			failing_io_start(&disk, n, ENOSPC, modes[mode]);
+			fl_status status =
+			    fl_shelf_store(&disk.io, folder, paths, 1, FL_SHELF_EQUIPMENT, fl_shelf_block(shelf), got, NULL);
+			char *holds = read_all(path);
+			bool is_old = strcmp(holds, first.data) == 0, is_new = strcmp(holds, second.data) == 0;
+			if (!is_old && !is_new)
+				print_error("mode %zu, call %ld (%s):\n%s\n", mode, n, disk.what, holds);
+			assert_true(is_old || is_new);
+			assert_true(status < 0 || is_new);
+			free(holds);
+			remove_unfinished(path);
+			if (!disk.failed)
+				break;
+			if (is_old)
+				must(fl_shelf_store(fl_io_system(), folder, paths, 1, FL_SHELF_EQUIPMENT, fl_shelf_block(shelf), got,
+				                    &err));
+		}
+	fl_text_free(&first);
+	fl_text_free(&second);
+	fl_shelf_free(shelf);
+}
+
 int main(void) {
 	const struct CMUnitTest tests[] = {
 	    cmocka_unit_test(an_oil_is_asked_for_and_reads_back),
@@ -358,6 +413,7 @@ int main(void) {
 	    cmocka_unit_test(a_list_in_brackets_is_refused),
 	    cmocka_unit_test(a_text_without_newline_at_its_end_is_taken),
 	    IN_SCRATCH(each_kind_goes_to_its_file),
+	    IN_SCRATCH(a_failing_disk_leaves_old_or_new),
 	};
 	return cmocka_run_group_tests(tests, NULL, NULL);
 }
