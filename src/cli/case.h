@@ -40,10 +40,11 @@ typedef struct fl_case {
 fl_status fl_case_load(const fl_io *io, const char *path, fl_case *out, fl_error *err) FL_MUST_USE;
 /* The same of a journal in memory; `name` stands for it in errors. */
 fl_status fl_case_replay(const char *bytes, size_t length, const char *name, fl_case *out, fl_error *err) FL_MUST_USE;
-/* In two moves, for who may not need the second: the session; then procedure, stock and result. */
+/* In two moves, for who may not need all: the session; then procedure, stock and result, without the causes. */
 fl_status fl_case_read(const fl_io *io, const char *path, fl_case *out, fl_error *err) FL_MUST_USE;
 fl_status fl_case_compute(fl_case *one, fl_error *err) FL_MUST_USE;
-/* The same of the journal as it stood with its line `sequence`; *bytes are the lines up to and with it, in `arena`. */
+/* Without the causes, of the journal as it stood with its line `sequence`; *bytes are the lines up to and with it, in
+ * `arena`. */
 fl_status fl_case_load_to(const fl_io *io, const char *path, int sequence, fl_arena *arena, char **bytes,
                           size_t *length, fl_case *out, fl_error *err) FL_MUST_USE;
 /* Of a session under way, which stays its owner's; `shelf` the oils that further points could be taken with. */

@@ -235,9 +235,14 @@ static fl_status check_journal(fl_cli *cli, const char *path, fl_exit *code, fl_
 	char opened[FL_DAY_SIZE];
 	fl_trust *trust = NULL;
 	fl_findings found = {.cli = cli, .columns = fl_cli_columns(cli)};
-	fl_status status = fl_case_load(cli->io, path, &one, err);
+	fl_status status = fl_case_read(cli->io, path, &one, err);
 	if (status < 0)
 		return status;
+	status = fl_case_compute(&one, err);
+	if (status < 0) {
+		fl_case_free(&one);
+		return status;
+	}
 	fprintf(cli->out, "%s: journal of %s, %s, %d lines, every digest fits, %s%s\n  digest %s\n", path,
 	        one.instrument->tag, fl_day_format(one.session.day, opened), one.session.last_sequence,
 	        one.session.closed ? "closed" : "still open",
