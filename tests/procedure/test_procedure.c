@@ -125,6 +125,80 @@ static void reads_the_other_templates(void **state) {
 	assert_int_equal(FL_LINEARITY_TERMINAL, procedure.deciding_linearity);
 }
 
+/* The shipboard check with `more` at its top: fields in any order. */
+static fl_status load_with(const char *more, fl_error *err) {
+	static char text[32768];
+	fl_procedure plain = {0};
+	assert_int_equal(FL_OK,
+	                 fl_procedure_load(fl_io_system(), SOURCE_DIR "/templates/shipboard-check.yaml", &plain, err));
+	const char *least = strstr(plain.text, "minimum TUR: 1.5");
+	assert_non_null(least);
+	snprintf(text, sizeof text, "%s%.*s%s", more, (int)(least - plain.text), plain.text,
+	         least + strlen("minimum TUR: 1.5"));
+	fl_procedure_free(&plain);
+	return fl_procedure_parse(text, "input.yaml", &procedure, err);
+}
+
+static void reads_zones_risks_and_lines(void **state) {
+	(void)state;
+	fl_error err = {0};
+	assert_int_equal(FL_OK, load_with("", &err));
+	check_near("least ratio where none is stated", 1.5, procedure.minimum_tur, 0);
+	assert_false(procedure.states_below_tur || procedure.budget_on_certificate || procedure.reliability_observed);
+	check_near("no prior", 0.0, procedure.reliability, 0);
+	check_near("fully correlated", 0.0, procedure.oil_own_share, 0);
+	assert_int_equal(FL_LINE_BY_RATIO, procedure.line);
+	assert_int_equal(0, procedure.zone_count);
+	assert_true(procedure.extra[0].own);
+	fl_procedure_free(&procedure);
+	assert_int_equal(FL_OK, load_with("tolerance zones:\n"
+	                                  "  - {from: 20 % of span, to: 36 %, band: 1.0 % of span}\n"
+	                                  "  - {from: 36 % of span, to: 50 % of span, band: 3 % of reading}\n"
+	                                  "minimum TUR: 2\nconformity below minimum TUR: state\n"
+	                                  "in-tolerance reliability: {share: 95 %, of: observed values}\n"
+	                                  "line: generalised\noil certificates correlated: 0.8\n"
+	                                  "budget on certificate: yes\n",
+	                                  &err));
+	assert_int_equal(2, procedure.zone_count);
+	check_near("from", 20.0, procedure.zones[0].from_pct_span, 0);
+	check_near("to", 36.0, procedure.zones[0].to_pct_span, 0);
+	check_near("band", 1.0, procedure.zones[0].band.half_width, 0);
+	assert_int_equal(FL_BAND_PERCENT_READING, procedure.zones[1].band.basis);
+	check_near("least ratio", 2.0, procedure.minimum_tur, 0);
+	assert_true(procedure.states_below_tur && procedure.budget_on_certificate && procedure.reliability_observed);
+	check_near("prior", 0.95, procedure.reliability, 1e-12);
+	check_near("own share", 0.2, procedure.oil_own_share, 1e-12);
+	assert_int_equal(FL_LINE_GENERAL, procedure.line);
+}
+
+/* Each with a part of the line that it must get. */
+static void refuses_zones_and_risks_that_make_no_sense(void **state) {
+	(void)state;
+	static const char *const cases[][2] = {
+	    {"tolerance zones: [{from: 20 % of span, to: 36 % of span, band: 1 % of span}, {from: 30 % of span, to: 40 % "
+	     "of "
+	     "span, band: 1 % of span}]\n",
+	     "before the zone above it ends"},
+	    {"tolerance zones: [{from: 36 % of span, to: 20 % of span, band: 1 % of span}]\n", "where it begins"},
+	    {"tolerance zones: [{from: 20 mm2/s, to: 36 % of span, band: 1 % of span}]\n", "write it in % of span"},
+	    {"tolerance zones: [{from: 20 % of span, to: 36 % of span, band: 1 %}]\n", "of what"},
+	    {"tolerance zones: [{from: 20 % of span, to: 360 % of span, band: 1 % of span}]\n", "not on the scale"},
+	    {"in-tolerance reliability: {share: 95 %}\n", "of"},
+	    {"in-tolerance reliability: {share: 195 %, of: true values}\n", "share"},
+	    {"conformity below minimum TUR: perhaps\n", "conformity below minimum TUR"},
+	    {"oil certificates correlated: 2\n", "oil certificates correlated"},
+	    {"line: best\n", "line"},
+	};
+	for (size_t i = 0; i < sizeof cases / sizeof *cases; i++) {
+		fl_error err = {0};
+		char line[1400];
+		assert_true(load_with(cases[i][0], &err) < 0);
+		fl_error_line(&err, line, sizeof line);
+		if (!strstr(line, cases[i][1]) || !strstr(line, "input.yaml:1:"))
+			fail_msg("\"%s\" does not say \"%s\" at line 1", line, cases[i][1]);
+	}
+}
+
 static void its_text_reads_the_same_again(void **state) {
 	(void)state;
 	load(SOURCE_DIR "/templates/workshop-calibration.yaml");
@@ -160,6 +234,8 @@ int main(void) {
 	    cmocka_unit_test_teardown(reads_the_workshop_calibration, free_procedure),
 	    cmocka_unit_test_teardown(reads_gates_and_conditions, free_procedure),
 	    cmocka_unit_test_teardown(reads_the_other_templates, free_procedure),
+	    cmocka_unit_test_teardown(reads_zones_risks_and_lines, free_procedure),
+	    cmocka_unit_test(refuses_zones_and_risks_that_make_no_sense),
 	    cmocka_unit_test_teardown(its_text_reads_the_same_again, free_procedure),
 	    cmocka_unit_test_teardown(has_words_for_rules_and_linearities, free_procedure),
 	    cmocka_unit_test_teardown(refuses_a_file_that_is_not_there, free_procedure),
