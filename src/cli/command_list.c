@@ -43,8 +43,10 @@ static void list_items(const fl_cli *cli, const fl_stock *stock, fl_day today) {
 static fl_status list_stock(fl_cli *cli, fl_error *err) {
 	fl_stock stock = {0};
 	fl_status status = fl_place_stock(cli, &stock, err);
-	if (status >= 0)
+	if (status >= 0) {
+		fl_stock_keep(&stock, fl_day_of(fl_cli_now()));
 		list_items(cli, &stock, fl_day_of(fl_cli_now()));
+	}
 	fl_stock_free(&stock);
 	return status;
 }

@@ -41,11 +41,11 @@ static fl_utc bench_clock(void *context) {
 static fl_status load_stock(const fl_cli *cli, fl_stock *stock, fl_error *err) {
 	fl_status status = fl_place_stock(cli, stock, err);
 	if (status >= 0 && stock->oil_count + stock->equipment_count + stock->instrument_count == 0)
-		status =
-		    fl_fail(err, FL_E_NOT_FOUND,
-		            "there are no stock files in %s; write oils.yaml, equipment.yaml and instruments.yaml there (man "
-		            "foundleft), or give --stock DIR",
-		            cli->stock);
+		status = fl_fail(
+		    err, FL_E_NOT_FOUND,
+		    "there are no stock files in %s: foundleft stock add asks for oils, equipment and instruments, foundleft "
+		    "stock import takes files in; or give --stock DIR",
+		    cli->stock);
 	return status;
 }
 
@@ -201,7 +201,7 @@ static fl_status choose_instrument(fl_cli *cli, bench *b, fl_talk *talk, fl_erro
 	const char *names[64], *notes[64];
 	size_t count = b->stock.instrument_count < 64 ? b->stock.instrument_count : 64;
 	if (count == 0)
-		return fl_fail(err, FL_E_NOT_FOUND, "the stock in %s has no instrument; add one to instruments.yaml",
+		return fl_fail(err, FL_E_NOT_FOUND, "the stock in %s has no instrument: foundleft stock add instrument",
 		               cli->stock);
 	for (size_t i = 0; i < count; i++) {
 		names[i] = b->stock.instruments[i].tag;
