@@ -4,7 +4,8 @@
  *
  * The sessions of a book carry the same few procedures and the same oils and equipment again and again, and reading
  * their text takes longer than the computation. What was read is kept by its text (the text itself is compared, so
- * nothing can be mistaken), until the room is full; then all is let go of, so that memory stays flat.
+ * nothing can be mistaken), until the room is full; then all is let go of, so that memory stays flat. Instruments come
+ * round too seldom in a large fleet to be worth keeping.
  */
 #include "foundleft/keep.h"
 
@@ -121,9 +122,7 @@ static size_t slot_of(const char *body) {
 static fl_status parse_item(const fl_session_text *text, fl_stock *stock, fl_error *err) {
 	if (strcmp(text->kind, "oil") == 0)
 		return fl_stock_parse_oil(stock, text->body, text->name, err);
-	if (strcmp(text->kind, "equipment") == 0)
-		return fl_stock_parse_equipment(stock, text->body, text->name, err);
-	return fl_stock_parse_instrument(stock, text->body, text->name, err);
+	return fl_stock_parse_equipment(stock, text->body, text->name, err);
 }
 
 static fl_status add_to_slot(fl_recomputer *r, const fl_session_text *text, size_t slot, const fl_stock **out,
@@ -164,24 +163,19 @@ static bool append_stock(fl_stock *all, const fl_stock *one) {
 	fl_oil *oils = fl_arena_grow(&all->arena, all->oils, all->oil_count, &all->oil_capacity, sizeof *oils);
 	fl_equipment *equipment =
 	    fl_arena_grow(&all->arena, all->equipment, all->equipment_count, &all->equipment_capacity, sizeof *equipment);
-	fl_instrument *instruments = fl_arena_grow(&all->arena, all->instruments, all->instrument_count,
-	                                           &all->instrument_capacity, sizeof *instruments);
-	if (!oils || !equipment || !instruments)
+	if (!oils || !equipment)
 		return false;
 	all->oils = oils;
 	all->equipment = equipment;
-	all->instruments = instruments;
 	if (one->oil_count)
 		oils[all->oil_count++] = one->oils[0];
 	if (one->equipment_count)
 		equipment[all->equipment_count++] = one->equipment[0];
-	if (one->instrument_count)
-		instruments[all->instrument_count++] = one->instruments[0];
 	return true;
 }
 
-static bool is_stock(const char *kind) {
-	return strcmp(kind, "oil") == 0 || strcmp(kind, "equipment") == 0 || strcmp(kind, "instrument") == 0;
+static bool is_shared(const char *kind) {
+	return strcmp(kind, "oil") == 0 || strcmp(kind, "equipment") == 0;
 }
 
 static fl_status gather_stock(fl_recomputer *r, const fl_session *session, fl_stock *out, fl_error *err) {
@@ -189,11 +183,13 @@ static fl_status gather_stock(fl_recomputer *r, const fl_session *session, fl_st
 	if (r->item_count > MOST_ITEMS)
 		free_items(r);
 	for (size_t i = 0; status >= 0 && i < session->text_count; i++) {
+		const fl_session_text *text = &session->texts[i];
 		const fl_stock *one = NULL;
-		if (!is_stock(session->texts[i].kind))
-			continue;
-		status = find_item(r, &session->texts[i], &one, err);
-		if (status >= 0 && !append_stock(out, one))
+		if (strcmp(text->kind, "instrument") == 0)
+			status = fl_stock_parse_instrument(out, text->body, text->name, err);
+		else if (is_shared(text->kind))
+			status = find_item(r, text, &one, err);
+		if (status >= 0 && one && !append_stock(out, one))
 			status = fl_fail(err, FL_E_MEMORY, "out of memory for the stock");
 	}
 	return status;
