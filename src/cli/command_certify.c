@@ -158,14 +158,10 @@ static fl_status write_entry(const fl_cli *cli, fl_journal *journal, fl_order *o
 	return status < 0 ? status : fl_journal_commit(journal, &event, err);
 }
 
-/* Reads the lines that a seal is made over: all up to the new one. */
-static fl_status read_lines(const fl_cli *cli, const fl_journal *journal, fl_derived *out, fl_error *err) {
-	out->journal_length = (size_t)journal->file.length;
-	size_t length;
-	fl_status status = fl_file_read(cli->io, out->one.path, FL_JOURNAL_LIMIT, &out->arena, &out->journal, &length, err);
-	if (status >= 0 && length < out->journal_length)
-		status = fl_fail(err, FL_E_IO, "%s became shorter meanwhile", out->one.path);
-	return status;
+/* Reads the lines that a seal is made over, the certificate's being the last. */
+static fl_status read_lines(const fl_cli *cli, fl_derived *out, fl_error *err) {
+	return fl_file_read(cli->io, out->one.path, FL_JOURNAL_LIMIT, &out->arena, &out->journal, &out->journal_length,
+	                    err);
 }
 
 /* Takes `one` over, whatever comes of it. */
@@ -181,9 +177,26 @@ static fl_status issue_new(const fl_cli *cli, fl_case *one, fl_order *order, fl_
 			memcpy(out->one.head, journal.head, sizeof journal.head);
 		status = write_entry(cli, &journal, order, out, err);
 		if (status >= 0)
-			status = read_lines(cli, &journal, out, err);
+			status = read_lines(cli, out, err);
 		fl_journal_close(&journal);
 	}
+	if (status < 0)
+		fl_derived_free(out);
+	return status;
+}
+
+/* Takes `one` over, whatever comes of it: the journal as read ends with the line of the certificate. */
+static fl_status take_latest(const fl_cli *cli, fl_case *one, fl_derived *out, fl_error *err) {
+	*out = (fl_derived){.one = *one, .sequence = one->session.last_sequence};
+	*one = (fl_case){0};
+	const fl_session *session = &out->one.session;
+	fl_status status = fl_case_compute(&out->one, err);
+	if (status >= 0) {
+		out->issue = fl_derive_issue(session, &session->issues[session->issue_count - 1], out->one.head);
+		status = fl_derive_pages(cli, out, err);
+	}
+	if (status >= 0)
+		status = read_lines(cli, out, err);
 	if (status < 0)
 		fl_derived_free(out);
 	return status;
@@ -311,9 +324,12 @@ static fl_status certify(const fl_cli *cli, fl_case *one, fl_order *order, fl_si
 		fl_derived asked = {.one = *one, .issue.authorised_by = (issued ? issued : &order->entry)->authorised_by};
 		status = fl_signing_allowed(signing, &asked, err);
 	}
-	if (status >= 0)
-		status = issued ? fl_derive(cli, one->path, issued->sequence, &derived, err)
-		                : issue_new(cli, one, order, &derived, err);
+	if (status >= 0 && !issued)
+		status = issue_new(cli, one, order, &derived, err);
+	else if (status >= 0 && issued->sequence == one->session.last_sequence && !one->torn)
+		status = take_latest(cli, one, &derived, err);
+	else if (status >= 0)
+		status = fl_derive(cli, one->path, issued->sequence, &derived, err);
 	if (status >= 0) {
 		status = put_out(cli, signing, &derived, err);
 		fl_derived_free(&derived);
