@@ -56,7 +56,7 @@ static fl_status make_beside(const fl_io *io, const char *path, char *beside, si
 	if (snprintf(beside, size, "%s.part", path) >= (int)size)
 		return fl_fail(err, FL_E_VALUE, "the path is too long");
 	io->unlink(io->self, beside);
-	return fl_file_write(io, beside, "", 0, false, err);
+	return fl_sql_make_file(io, beside, err);
 }
 
 static fl_status refuse_existing(const fl_io *io, const char *path, fl_error *err) {

@@ -5,6 +5,7 @@
 #include "sql.h"
 
 #include <errno.h>
+#include <fcntl.h>
 #include <stdarg.h>
 #include <string.h>
 
@@ -172,4 +173,15 @@ const char *fl_sql_column(sqlite3_stmt *statement, int column) {
 fl_day fl_sql_day(sqlite3_stmt *statement, int column) {
 	return sqlite3_column_type(statement, column) == SQLITE_NULL ? FL_NO_DAY
 	                                                             : (fl_day)sqlite3_column_int64(statement, column);
+}
+
+/* ---- the file ---------------------------------------------------------------------------------------------------- */
+
+fl_status fl_sql_make_file(const fl_io *io, const char *path, fl_error *err) {
+	int fd = io->open(io->self, path, O_RDWR | O_CREAT | O_EXCL | O_CLOEXEC, 0600);
+	if (fd < 0 && errno == EEXIST)
+		return fl_fail_at(err, FL_E_EXISTS, (fl_place){.file = path}, "there is a file here already");
+	if (fd < 0)
+		return fl_io_fail(err, "creating", path, errno);
+	return io->close(io->self, fd) == 0 ? FL_OK : fl_io_fail(err, "creating", path, errno);
 }

@@ -107,6 +107,9 @@ struct fl_store {
 	sqlite3_stmt *statements[SQL_COUNT];
 };
 
+/* Makes an empty file for a database that only its owner may read; the log beside it gets the same mode. FL_E_EXISTS.
+ */
+fl_status fl_sql_make_file(const fl_io *io, const char *path, fl_error *err) FL_MUST_USE;
 /* The statement, ready to be bound. */
 fl_status fl_sql(fl_store *store, sql_name name, sqlite3_stmt **out, fl_error *err) FL_MUST_USE;
 /* Binds from ?1 on: i int64_t, d fl_day (FL_NO_DAY becomes NULL), t text (NULL or as is), e text ("" becomes NULL),

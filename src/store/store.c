@@ -140,7 +140,7 @@ fl_status fl_store_found(const char *path, const fl_founding *founding, fl_store
 		return status;
 	/* The file is made first, so that nobody else may read it: the database takes its mode for the log too. */
 	const fl_io *io = fl_io_system();
-	status = fl_file_write(io, path, "", 0, false, err);
+	status = fl_sql_make_file(io, path, err);
 	if (status < 0 && status != FL_E_EXISTS)
 		return status;
 	if (err && status == FL_E_EXISTS)

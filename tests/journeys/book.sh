@@ -30,6 +30,7 @@ mkdir -p "$out"
 ship=$out/home
 foundleft history VT-1 --home "$ship" >"$work/said"
 says "+0.81"
+[ "$(stat -c %a "$ship/book/records.flb")" = 600 ] || complain "others may read the book"
 python3 - "$work/said" <<'PY' || complain "history is wider than 80 columns"
 import sys
 wide = [line for line in open(sys.argv[1], encoding="utf-8") if len(line.rstrip("\n")) > 80]
