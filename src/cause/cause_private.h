@@ -45,6 +45,15 @@ typedef struct fl_faults {
 	double amount[FL_FAULT_COUNT];
 } fl_faults;
 
+/* Oils at the temperatures asked for last: a search asks for the same few thousands of times. By oil and temperature,
+ * exactly; what was found is what would be computed. */
+enum { FL_MEMO_PLACES = 256 };
+typedef struct fl_oil_memo {
+	const fl_oil *oil;
+	double temp_c;
+	fl_oil_state state;
+} fl_oil_memo;
+
 /* The instrument, brought to proportions of its full scale. */
 typedef struct fl_cause_model {
 	const fl_instrument *instrument;
@@ -52,6 +61,7 @@ typedef struct fl_cause_model {
 	double rho_dial;                   /* density between equivalent and dynamic viscosity */
 	double rho_full;                   /* density at full scale, for its kinetic term */
 	double dp_full_pa;                 /* of the sound instrument, by its geometry; 1 without geometry */
+	fl_oil_memo *memo;                 /* [FL_MEMO_PLACES]; NULL for none */
 	const fl_setting_of_row *thickest; /* the row that COUPLING and LIMIT are measured at; NULL if none */
 } fl_cause_model;
 
@@ -114,6 +124,7 @@ typedef struct fl_search {
 	const fl_signal_range *range;
 	fl_cause_extra extra;
 	fl_cause_model model;
+	fl_oil_memo memo[FL_MEMO_PLACES];
 	fl_row_data rows[FL_CAUSE_ROWS];
 	size_t row_count, reading_rows;      /* extra rows stand behind those of the readings */
 	double *V;                           /* covariance of the rows' values, row_count squared */

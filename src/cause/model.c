@@ -9,6 +9,9 @@
  */
 #include "cause_private.h"
 
+#include <stdint.h>
+#include <string.h>
+
 static const double pi = 3.14159265358979323846;
 static const double gravity_m_s2 = 9.80665;
 static const double particle_bore_ratio = 0.5, particle_loss = 1.5;
@@ -104,15 +107,35 @@ static fl_status mix(const fl_oil_state *a, const fl_oil_state *b, double of, oi
 	return FL_OK;
 }
 
-static fl_status oil_in_capillary(const fl_setting_of_row *row, const fl_faults *faults, oil_now *out, fl_error *err) {
+static size_t place_in_memo(const fl_oil *oil, double temp_c) {
+	uint64_t bits;
+	memcpy(&bits, &temp_c, sizeof bits);
+	bits = (bits ^ (uint64_t)(uintptr_t)oil) * UINT64_C(0x9E3779B97F4A7C15);
+	return (size_t)(bits >> 32) % FL_MEMO_PLACES;
+}
+
+static fl_status oil_at(const fl_cause_model *m, const fl_oil *oil, double temp_c, fl_oil_state *out, fl_error *err) {
+	fl_oil_memo *memo = m->memo ? &m->memo[place_in_memo(oil, temp_c)] : NULL;
+	if (memo && memo->oil == oil && memo->temp_c == temp_c) {
+		*out = memo->state;
+		return FL_OK;
+	}
+	fl_status status = fl_physics_oil_at(&oil->table, temp_c, out, err);
+	if (memo && status >= 0)
+		*memo = (fl_oil_memo){oil, temp_c, *out};
+	return status;
+}
+
+static fl_status oil_in_capillary(const fl_cause_model *m, const fl_setting_of_row *row, const fl_faults *faults,
+                                  oil_now *out, fl_error *err) {
 	fl_oil_state state, before;
 	double temp_c = row->temp_c + faults->amount[FL_FAULT_TEMPERATURE];
-	TRY(fl_physics_oil_at(&row->oil->table, temp_c, &state, err));
+	TRY(oil_at(m, row->oil, temp_c, &state, err));
 	*out = (oil_now){state.mu_pa_s, state.rho_kg_m3};
 	double share = faults->amount[FL_FAULT_CARRY_OVER];
 	if (!row->before || share == 0.0)
 		return FL_OK;
-	if (fl_physics_oil_at(&row->before->table, temp_c, &before, NULL) < 0)
+	if (oil_at(m, row->before, temp_c, &before, NULL) < 0)
 		return FL_OK; /* the oil before is not certified there: nothing can be said of it */
 	return mix(&state, &before, share, out, err);
 }
@@ -148,7 +171,7 @@ static fl_status flowing_output(const fl_cause_model *m, const fl_setting_of_row
                                 double *y, fl_error *err) {
 	oil_now oil;
 	double share;
-	TRY(oil_in_capillary(row, faults, &oil, err));
+	TRY(oil_in_capillary(m, row, faults, &oil, err));
 	TRY(pressure(m, faults, oil, &share, err));
 	double out = output_of(m, share) + dial_shift(m, faults, row->x);
 	if (row->from_elsewhere)

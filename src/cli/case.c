@@ -14,10 +14,10 @@ static fl_status set_path(fl_case *one, const char *path, fl_error *err) {
 }
 
 /* An opinion that cannot be formed stands in nobody's way: it says why, and the result is the same. */
-static fl_status find_causes(fl_case *one, fl_error *err) {
+fl_status fl_case_causes(const fl_case *one, fl_cause causes[FL_RUN_KINDS], fl_error *err) {
 	for (fl_run_kind run = FL_RUN_AS_FOUND; run < FL_RUN_KINDS; run++) {
 		fl_error why = {0};
-		fl_cause *cause = &one->causes[run];
+		fl_cause *cause = &causes[run];
 		if (!one->result.runs[run].available || one->result.runs[run].same_as_found)
 			continue;
 		fl_status status = fl_cause_find(&one->session, &one->procedure, &one->stock, &one->result, run, NULL,
@@ -48,7 +48,7 @@ fl_status fl_case_compute(fl_case *one, fl_error *err) {
 /* With the opinions about it, which nothing but the reports looks at. */
 static fl_status compute_all(fl_case *one, fl_error *err) {
 	fl_status status = fl_case_compute(one, err);
-	return status < 0 ? status : find_causes(one, err);
+	return status < 0 ? status : fl_case_causes(one, one->causes, err);
 }
 
 fl_status fl_case_read(const fl_io *io, const char *path, fl_case *out, fl_error *err) {

@@ -49,6 +49,8 @@ fl_status fl_case_load_to(const fl_io *io, const char *path, int sequence, fl_ar
                           size_t *length, fl_case *out, fl_error *err) FL_MUST_USE;
 /* Of a session under way, which stays its owner's; `shelf` the oils that further points could be taken with. */
 fl_status fl_case_of(const fl_session *session, const fl_stock *shelf, fl_case *out, fl_error *err) FL_MUST_USE;
+/* The opinion on each run; all zero where there is nothing to look into. To be freed with fl_cause_free. */
+fl_status fl_case_causes(const fl_case *one, fl_cause causes[FL_RUN_KINDS], fl_error *err) FL_MUST_USE;
 void fl_case_free(fl_case *one);
 
 #endif

@@ -24,8 +24,14 @@ fl_issue fl_derive_issue(const fl_session *session, const fl_session_issue *entr
 
 fl_status fl_derive_sheet(const fl_case *one, const fl_issue *issue, fl_sheet **out, fl_error *err) {
 	fl_issue whole = *issue;
-	whole.causes = one->causes;
-	return fl_certificate_content(&one->session, &one->procedure, &one->stock, &one->result, &whole, out, err);
+	fl_cause causes[FL_RUN_KINDS] = {0};
+	fl_status status = one->procedure.opinions_on_certificate ? fl_case_causes(one, causes, err) : FL_OK;
+	whole.causes = causes;
+	if (status >= 0)
+		status = fl_certificate_content(&one->session, &one->procedure, &one->stock, &one->result, &whole, out, err);
+	for (int run = 0; run < FL_RUN_KINDS; run++)
+		fl_cause_free(&causes[run]);
+	return status;
 }
 
 fl_status fl_derive_pages(const fl_cli *cli, fl_derived *out, fl_error *err) {

@@ -27,7 +27,7 @@ kept() { # JOURNAL LEAST-LINES
 }
 
 # Limits in blocks of 512 bytes. Without the signal a write beyond the limit fails with EFBIG.
-for blocks in 20 61 130; do
+for blocks in 24 61 130; do
 	rm -f "$work/limited.flj"
 	expect 6 "limited.flj" sh -c 'trap "" XFSZ; ulimit -f "$1"; shift; exec "$@"' sh "$blocks" \
 		"$program" replay "$answers" --home "$work" --stock "$stock" --journal "$work/limited.flj"
