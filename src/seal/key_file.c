@@ -2,7 +2,7 @@
  *
  * SPDX-License-Identifier: GPL-3.0-or-later
  *
- * The key is encrypted with AES-256-CBC under scrypt with N = 2^14, r = 8, p = 1: 16 MiB and some 25 to 35 ms a guess.
+ * The key is encrypted with AES-256-CBC under scrypt with N = 2^14, r = 8, p = 1: 16 MiB and some 25 to 40 ms a guess.
  * r = 8 and p = 1 is what RFC 7914, section 2, finds to be good, and N = 2^14 with them is what OpenSSL's `pkcs8
  * -scrypt` takes. p = 5 costs five times as much each time a person signs and an attacker 2.3 bits more, which is less
  * than half a character of a passphrase. What it was made with stands in the file, so other values can be opened too.

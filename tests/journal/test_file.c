@@ -41,6 +41,50 @@ static void what_is_written_is_read_back(void **state) {
 	fl_session_free(&s);
 }
 
+/* The journal as it stood with each of its lines: the digest foreseen for a line is the one that it gets. */
+static void a_journal_is_read_as_it_stood(void **state) {
+	char path[SCRATCH_SIZE], head[FL_DIGEST_HEX_SIZE], foreseen[FL_DIGEST_HEX_SIZE], *bytes;
+	size_t length = 0, whole = 0;
+	scratch_path(*state, "a.flj", path);
+	assert_int_equal(write_small(fl_io_system(), path, SMALL_COUNT, NULL), SMALL_COUNT);
+	fl_journal journal;
+	fl_error err = {0};
+	fl_event remark = {.at = small_time(99), .verb = FL_V_REMARK, .fields[FL_F_TYPED] = "one more"};
+	assert_int_equal(fl_journal_resume(&journal, fl_io_system(), path, small_time(98), &err), FL_OK);
+	assert_int_equal(fl_journal_foresee(&journal, &remark, foreseen, &err), FL_OK);
+	assert_int_equal(journal.session.last_sequence, SMALL_COUNT);
+	assert_int_equal(fl_journal_commit(&journal, &remark, &err), FL_OK);
+	assert_string_equal(journal.head, foreseen);
+	fl_journal_close(&journal);
+	char *all = scratch_read(path, &whole);
+	for (int line = 1; line <= SMALL_COUNT + 1; line++) {
+		fl_arena arena = {0};
+		fl_session s = {0};
+		size_t before = length;
+		assert_int_equal(fl_journal_read_to(fl_io_system(), path, line, &s, head, &arena, &bytes, &length, &err),
+		                 FL_OK);
+		assert_int_equal(s.last_sequence, line);
+		assert_true(length > before && bytes[length - 1] == '\n');
+		assert_memory_equal(bytes, all, length);
+		assert_memory_equal(bytes + length - FL_DIGEST_HEX_SIZE, head, FL_DIGEST_HEX_SIZE - 1);
+		fl_session_free(&s);
+		fl_arena_free(&arena);
+	}
+	assert_int_equal(length, whole);
+	assert_string_equal(head, foreseen);
+	fl_arena arena = {0};
+	fl_session s = {0};
+	assert_int_equal(fl_journal_read_to(fl_io_system(), path, SMALL_COUNT + 2, &s, head, &arena, &bytes, &length, &err),
+	                 FL_E_NOT_FOUND);
+	/* What stands behind the line counts too. */
+	all[whole - 70] ^= 1;
+	write_bytes(path, all, whole);
+	assert_int_equal(fl_journal_read_to(fl_io_system(), path, 1, &s, head, &arena, &bytes, &length, NULL),
+	                 FL_E_TAMPERED);
+	fl_arena_free(&arena);
+	free(all);
+}
+
 static void every_changed_byte_is_caught(void **state) {
 	char path[SCRATCH_SIZE];
 	scratch_path(*state, "a.flj", path);
@@ -236,15 +280,11 @@ static void the_check_for_people_works(void **state) {
 
 int main(void) {
 	const struct CMUnitTest tests[] = {
-	    IN_SCRATCH(what_is_written_is_read_back),
-	    IN_SCRATCH(every_changed_byte_is_caught),
-	    IN_SCRATCH(removed_doubled_and_swapped_lines_are_caught),
-	    IN_SCRATCH(a_torn_end_of_any_length_resumes),
-	    IN_SCRATCH(no_failing_call_loses_a_committed_line),
-	    IN_SCRATCH(resuming_survives_failing_calls),
-	    IN_SCRATCH(a_second_program_is_refused),
-	    IN_SCRATCH(a_refused_event_leaves_no_trace),
-	    IN_SCRATCH(the_check_for_people_works),
+	    IN_SCRATCH(what_is_written_is_read_back),     IN_SCRATCH(a_journal_is_read_as_it_stood),
+	    IN_SCRATCH(every_changed_byte_is_caught),     IN_SCRATCH(removed_doubled_and_swapped_lines_are_caught),
+	    IN_SCRATCH(a_torn_end_of_any_length_resumes), IN_SCRATCH(no_failing_call_loses_a_committed_line),
+	    IN_SCRATCH(resuming_survives_failing_calls),  IN_SCRATCH(a_second_program_is_refused),
+	    IN_SCRATCH(a_refused_event_leaves_no_trace),  IN_SCRATCH(the_check_for_people_works),
 	};
 	return cmocka_run_group_tests(tests, NULL, NULL);
 }

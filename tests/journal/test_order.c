@@ -331,6 +331,44 @@ static void functions_wait_for_the_as_left_run(void **state) {
 	fl_session_free(&s);
 }
 
+#define ISSUE(number, ...)                                                                                   \
+	E(ISSUE, [FL_F_ID] = number, [FL_F_DAY] = "2026-04-20", [FL_F_PROGRAM] = "0.1.0", [FL_F_ITEM] = "j.flj", \
+	  __VA_ARGS__)
+#define AMENDS(number) [FL_F_ABOUT] = number, [FL_F_REASON] = "the customer was misspelt"
+
+static void a_certificate_is_issued_once_and_amended_in_turn(void **state) {
+	(void)state;
+	fl_session s;
+	to_closed_as_found(&s);
+	take(&s, DECIDE("leave"));
+	refuse(&s, FL_E_STATE, "still open", ISSUE("N-1", [FL_F_BY] = "M. Oduya"));
+	take(&s, CLOSE);
+	refuse(&s, FL_E_VALUE, "which one and why", ISSUE("N-1", [FL_F_ABOUT] = "N-0"));
+	refuse(&s, FL_E_VALUE, "cannot amend itself", ISSUE("N-1", AMENDS("N-1")));
+	fl_event early = ISSUE("N-1", [FL_F_BY] = "M. Oduya");
+	early.fields[FL_F_DAY] = "2026-04-13";
+	refuse(&s, FL_E_VALUE, "before the day", early);
+	take(&s, ISSUE("N-1", [FL_F_BY] = "M. Oduya"));
+	refuse(&s, FL_E_STATE, "was issued already", ISSUE("N-1", [FL_F_BY] = "M. Oduya"));
+	refuse(&s, FL_E_STATE, "must amend it", ISSUE("N-2", [FL_F_BY] = "M. Oduya"));
+	refuse(&s, FL_E_STATE, "amend that one", ISSUE("N-2", AMENDS("N-0")));
+	take(&s, ISSUE("N-2", AMENDS("N-1")));
+	refuse(&s, FL_E_STATE, "the latest certificate of this session is N-2", ISSUE("N-3", AMENDS("N-1")));
+	take(&s, E(REMARK, [FL_F_TYPED] = "sent to the ship"));
+	take(&s, ISSUE("N-3", AMENDS("N-2")));
+	assert_int_equal(s.issue_count, 3);
+	assert_string_equal(fl_session_amended_by(&s, "N-1")->number, "N-2");
+	assert_null(fl_session_amended_by(&s, "N-3"));
+	assert_string_equal(fl_session_issue_of(&s, "N-1")->authorised_by, "M. Oduya");
+	fl_session_free(&s);
+	/* The work was done again: the first certificate of a session may amend one of another. */
+	to_closed_as_found(&s);
+	take(&s, DECIDE("leave"));
+	take(&s, CLOSE);
+	take(&s, ISSUE("N-9", AMENDS("N-1")));
+	fl_session_free(&s);
+}
+
 int main(void) {
 	const struct CMUnitTest tests[] = {
 	    cmocka_unit_test(opening_comes_first_and_once),
@@ -346,6 +384,7 @@ int main(void) {
 	    cmocka_unit_test(findings_are_answered_before_the_decision),
 	    cmocka_unit_test(functions_are_checked_after_the_runs),
 	    cmocka_unit_test(functions_wait_for_the_as_left_run),
+	    cmocka_unit_test(a_certificate_is_issued_once_and_amended_in_turn),
 	};
 	return cmocka_run_group_tests(tests, NULL, NULL);
 }

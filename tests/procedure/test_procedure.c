@@ -82,6 +82,7 @@ static void reads_the_workshop_calibration(void **state) {
 	check_near("ageing", 0.001, procedure.oil_ageing_per_year_rel, 1e-15);
 	check_near("TUR", 1.5, procedure.minimum_tur, 0);
 	assert_int_equal(0, procedure.extra_count);
+	assert_int_equal(1 << FL_PART_PERFORMED | 1 << FL_PART_AUTHORISED, procedure.signatures);
 }
 
 static void reads_gates_and_conditions(void **state) {
