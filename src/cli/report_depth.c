@@ -39,8 +39,9 @@ static char *plain(double value, char out[FL_CELL_SIZE]) {
 /* "p = 0.012", "p < 0.0001". */
 static char *probability_words(double p, char out[FL_CELL_SIZE]) {
 	char number[FL_CELL_SIZE];
-	fl_report_two_digits(p, number);
-	snprintf(out, FL_CELL_SIZE, "p%s%.40s", number[0] == '<' ? "\u00a0" : "\u00a0=\u00a0", number);
+	if (p < 0.0001)
+		return strcpy(out, "p\u00a0< 0.0001");
+	snprintf(out, FL_CELL_SIZE, "p\u00a0=\u00a0%.40s", fl_report_two_digits(p, number));
 	return out;
 }
 
@@ -79,8 +80,8 @@ static void print_general(const fl_general_line *g, int columns, fl_text *out) {
 	    "computed because %s; it decides nothing: zero and span error are those of the least-squares line",
 	    fl_report_signed(g->line.intercept * PERCENT, 3, zero), u0, fl_report_signed(g->line.slope * PERCENT, 3, span),
 	    u1, fl_report_fixed(g->line.sum_sq, 1, chi), g->line.dof, probability_words(g->probability, p),
-	    g->probability < 0.05 ? ": the errors miss a straight line by more than the points' own uncertainties allow, "
-	                            "which the kinetic term beside the stopped zero does by itself"
+	    g->probability < 0.05 ? ": the errors miss a straight line by more than the points' own uncertainties allow; "
+	                            "the kinetic term of a sound instrument can do that by itself"
 	                          : "",
 	    g->why ? g->why : "");
 }
