@@ -419,7 +419,6 @@ static void explain_rule(fl_writing *w) {
 	if (w->result->below_tur)
 		fl_sheet_add_led(w->sheet, FL_BLOCK_TEXT, "To be noted.", "%s",
 		                 fl_word_sentence(w->sheet, w->result->below_tur));
-	explain_risk(w);
 }
 
 void fl_write_meaning(fl_writing *w) {
@@ -440,6 +439,7 @@ void fl_write_meaning(fl_writing *w) {
 	    "coverage probability of %s %%. U is given to two significant digits and the error to the same place; "
 	    "decisions are taken on unrounded numbers.",
 	    fl_word_plain(sheet, 100 * result->coverage_probability, 2));
+	explain_risk(w);
 	explain_budget(w);
 	explain_shared(w);
 	explain_true_values(w);

@@ -99,7 +99,7 @@ void fl_set_parts(fl_press *press, fl_pack_part *parts, size_t count);
 void fl_set_table(fl_press *press, const fl_block *block);
 double fl_table_least(fl_press *press, const fl_block *block); /* head and first rows: what must stay together */
 void fl_set_chart(fl_press *press, const fl_chart *chart);
-double fl_chart_height(fl_press *press, const fl_chart *chart);
+double fl_chart_least(fl_press *press, const fl_chart *chart);
 
 /* ---- document.c: pages to bytes by libharu */
 fl_status fl_press_bytes(fl_press *press, unsigned char **bytes, size_t *length, fl_error *err) FL_MUST_USE;

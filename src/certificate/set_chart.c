@@ -8,8 +8,9 @@
 #include <string.h>
 
 #define HEIGHT 172.0
-#define INSET 9.0   /* so that marks at the ends of the scale stand clear of the numbers */
-#define LABELS 22.0 /* room left of the frame for the numbers of the y axis */
+#define LEAST_HEIGHT 122.0 /* it gives way to this, rather than leave its page with a gap */
+#define INSET 9.0          /* so that marks at the ends of the scale stand clear of the numbers */
+#define LABELS 22.0        /* room left of the frame for the numbers of the y axis */
 #define SIZE 7.2
 #define MARK 2.9
 #define ASIDE 2.4 /* rising and falling marks stand this much left and right of their place */
@@ -310,18 +311,20 @@ static double set_legend(const fl_frame *frame, double top, bool draw) {
 	return top - y + 14;
 }
 
-double fl_chart_height(fl_press *press, const fl_chart *chart) {
+double fl_chart_least(fl_press *press, const fl_chart *chart) {
 	fl_frame frame = {.press = press, .chart = chart};
-	return HEIGHT + set_legend(&frame, 0, false) + 12;
+	return LEAST_HEIGHT + set_legend(&frame, 0, false) + 12;
 }
 
 void fl_set_chart(fl_press *press, const fl_chart *chart) {
+	double spare = press->y - FL_BOTTOM - fl_chart_least(press, chart);
+	double height = LEAST_HEIGHT + fmax(0, fmin(spare, HEIGHT - LEAST_HEIGHT));
 	fl_frame frame = {.press = press,
 	                  .chart = chart,
 	                  .left = FL_LEFT + LABELS,
 	                  .right = FL_RIGHT - 4,
 	                  .top = press->y - 19,
-	                  .bottom = press->y - HEIGHT + 28};
+	                  .bottom = press->y - height + 28};
 	if (!(chart->x_high > chart->x_low)) {
 		press->status = fl_fail(press->err, FL_E_INTERNAL, "the chart's scale is empty");
 		return;
@@ -331,6 +334,6 @@ void fl_set_chart(fl_press *press, const fl_chart *chart) {
 	draw_axes(&frame);
 	draw_lines(&frame);
 	draw_points(&frame);
-	press->y -= HEIGHT;
+	press->y -= height;
 	press->y -= set_legend(&frame, press->y, true) + 12;
 }

@@ -226,7 +226,7 @@ static double least_height(fl_press *press, const fl_block *block) {
 	case FL_BLOCK_TABLE:
 		return fl_table_least(press, block);
 	case FL_BLOCK_CHART:
-		return fl_chart_height(press, block->chart);
+		return fl_chart_least(press, block->chart);
 	case FL_BLOCK_GRID:
 		plan = plan_grid(press, block);
 		return fmin(grid_height(press, &plan, block), (FL_TOP - FL_BOTTOM) / 2);
@@ -298,7 +298,7 @@ static void set_block(fl_press *press, const fl_block *block, const fl_block *ne
 		fl_set_table(press, block);
 		break;
 	case FL_BLOCK_CHART:
-		fl_press_need(press, fl_chart_height(press, block->chart));
+		fl_press_need(press, fl_chart_least(press, block->chart));
 		fl_set_chart(press, block->chart);
 		break;
 	case FL_BLOCK_SIGNATURES:
