@@ -145,5 +145,27 @@ with open(sys.argv[2], "w") as f:
 PY
 refuses supply "$work/supply.answers" "more than 10 % is never a matter of adjustment"
 
+# Every key of these reports is described, and no line of the text is too wide.
+python3 - "$root/docs/json.md" "$work"/*.json <<'PY' || complain "a key is not in docs/json.md"
+import json, re, sys
+known = set(re.findall(r"`([a-z0-9_]+)`", open(sys.argv[1]).read()))
+def keys(node):
+    for value in node.values() if isinstance(node, dict) else node if isinstance(node, list) else []:
+        yield from keys(value)
+    yield from node if isinstance(node, dict) else []
+missing = {key for path in sys.argv[2:] for key in keys(json.load(open(path)))} - known
+print("not described:", sorted(missing)) if missing else None
+sys.exit(bool(missing))
+PY
+for columns in 60 80; do
+	for name in clip sound healthy bottles-no; do
+		"$program" assess "$work/$name.flj" --width $columns | python3 -c '
+import sys
+wide = [line for line in sys.stdin.read().split("\n") if len(line) > int(sys.argv[1])]
+print(*wide[:3], sep="\n") if wide else None
+sys.exit(bool(wide))' $columns || complain "$name: lines wider than $columns columns"
+	done
+done
+
 [ $bad = 0 ] && echo "cause: a group, its split, a clip, a healthy sensor, exchanged bottles, a wrong supply"
 exit $bad
