@@ -66,12 +66,12 @@ for story in adjusted left indicative missing imported shipboard transmitter nam
 	fi
 	[ "$(wc -l <"$work/lost")" -le 12 ] || { cat "$work/lost" >&2; say "these words of the sheet cannot be found"; }
 
-	# Pages as pictures: neither blank nor black; the chart's band is there.
+	# Pages as pictures: neither blank (head and foot alone ink less than a four-hundredth) nor black.
 	pdftoppm -r 40 -gray "$pdf" "$work/$story"
 	for picture in "$work/$story"-*.pgm; do
 		dark=$(tail -c +16 "$picture" | tr -d '\200-\377' | wc -c)
 		all=$(wc -c <"$picture")
-		[ "$dark" -gt $((all / 200)) ] || say "$(basename "$picture") is blank"
+		[ "$dark" -gt $((all / 400)) ] || say "$(basename "$picture") is blank"
 		[ "$dark" -lt $((all / 3)) ] || say "$(basename "$picture") is black"
 	done
 done
