@@ -183,7 +183,7 @@ typedef struct fl_procedure {
 	int restore_count;
 	const fl_function_check *checks; /* after the runs, before restoring */
 	int check_count;
-	bool opinions_on_certificate; /* opinions and interpretations, marked as such, stand on it; true if not stated */
+	bool opinions_on_certificate; /* opinions and interpretations, marked as such, stand on it; false if not stated */
 	unsigned signatures;          /* bits 1 << fl_part: without these a certificate does not count as issued */
 	const char *text;             /* the file's bytes as read (valid UTF-8): goes into the journal */
 } fl_procedure;

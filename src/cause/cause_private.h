@@ -47,7 +47,7 @@ typedef struct fl_faults {
 
 /* Oils at the temperatures asked for last: a search asks for the same few thousands of times. By oil and temperature,
  * exactly; what was found is what would be computed. */
-enum { FL_MEMO_PLACES = 256 };
+enum { FL_MEMO_PLACES = 4096 };
 typedef struct fl_oil_memo {
 	const fl_oil *oil;
 	double temp_c;

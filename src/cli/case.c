@@ -45,10 +45,10 @@ fl_status fl_case_compute(fl_case *one, fl_error *err) {
 	return fl_analysis_session(&one->session, &one->procedure, &one->stock, &one->result, err);
 }
 
-/* With the opinions about it, which nothing but the reports looks at. */
-static fl_status compute_all(fl_case *one, fl_error *err) {
-	fl_status status = fl_case_compute(one, err);
-	return status < 0 ? status : fl_case_causes(one, one->causes, err);
+/* With the opinions about it, which take several times as long as everything else. */
+fl_status fl_case_look_for_causes(fl_case *one, fl_error *err) {
+	one->has_causes = true;
+	return fl_case_causes(one, one->causes, err);
 }
 
 fl_status fl_case_read(const fl_io *io, const char *path, fl_case *out, fl_error *err) {
@@ -59,7 +59,7 @@ fl_status fl_case_read(const fl_io *io, const char *path, fl_case *out, fl_error
 fl_status fl_case_load(const fl_io *io, const char *path, fl_case *out, fl_error *err) {
 	fl_status status = fl_case_read(io, path, out, err);
 	if (status >= 0)
-		status = compute_all(out, err);
+		status = fl_case_compute(out, err);
 	if (status < 0)
 		fl_case_free(out);
 	return status;
@@ -74,7 +74,7 @@ fl_status fl_case_replay(const char *bytes, size_t length, const char *name, fl_
 		status = fl_journal_replay(bytes, length, name, hasher, &out->session, out->head, err);
 	fl_hasher_free(hasher);
 	if (status >= 0)
-		status = compute_all(out, err);
+		status = fl_case_compute(out, err);
 	if (status < 0)
 		fl_case_free(out);
 	return status;
@@ -94,7 +94,9 @@ fl_status fl_case_load_to(const fl_io *io, const char *path, int sequence, fl_ar
 
 fl_status fl_case_of(const fl_session *session, const fl_stock *shelf, fl_case *out, fl_error *err) {
 	*out = (fl_case){.session = *session, .shelf = shelf, .borrowed = true};
-	fl_status status = compute_all(out, err);
+	fl_status status = fl_case_compute(out, err);
+	if (status >= 0)
+		status = fl_case_look_for_causes(out, err);
 	if (status < 0)
 		fl_case_free(out);
 	return status;

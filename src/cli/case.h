@@ -32,6 +32,7 @@ typedef struct fl_case {
 	const fl_stock *shelf; /* oils to choose a further point from; NULL: the session's */
 	bool borrowed;         /* the session is another's */
 	fl_result result;
+	bool has_causes;               /* causes were looked for; without, nothing is said about why */
 	fl_cause causes[FL_RUN_KINDS]; /* opinion: why each run is as it is; not available where there is nothing to say */
 	fl_beyond beyond;
 } fl_case;
@@ -50,6 +51,7 @@ fl_status fl_case_load_to(const fl_io *io, const char *path, int sequence, fl_ar
 /* Of a session under way, which stays its owner's; `shelf` the oils that further points could be taken with. */
 fl_status fl_case_of(const fl_session *session, const fl_stock *shelf, fl_case *out, fl_error *err) FL_MUST_USE;
 /* The opinion on each run; all zero where there is nothing to look into. To be freed with fl_cause_free. */
+fl_status fl_case_look_for_causes(fl_case *one, fl_error *err) FL_MUST_USE;
 fl_status fl_case_causes(const fl_case *one, fl_cause causes[FL_RUN_KINDS], fl_error *err) FL_MUST_USE;
 void fl_case_free(fl_case *one);
 

@@ -44,8 +44,8 @@ static const fl_command COMMANDS[] = {
      fl_command_import},
     {"assess", "JOURNAL", "compute errors, linearity, hysteresis, uncertainty, decision",
      "Prints tables and the error picture, or one JSON object with --json.", 1, 1,
-     BIT(FL_OPT_HOME) | BIT(FL_OPT_JSON) | BIT(FL_OPT_WIDTH) | BIT(FL_OPT_STRICT) | BIT(FL_OPT_BUDGET) |
-         BIT(FL_OPT_EXPLAIN) | BIT(FL_OPT_TRIALS) | BIT(FL_OPT_SEED) | BIT(FL_OPT_THREADS),
+     BIT(FL_OPT_HOME) | BIT(FL_OPT_JSON) | BIT(FL_OPT_WHY) | BIT(FL_OPT_WIDTH) | BIT(FL_OPT_STRICT) |
+         BIT(FL_OPT_BUDGET) | BIT(FL_OPT_EXPLAIN) | BIT(FL_OPT_TRIALS) | BIT(FL_OPT_SEED) | BIT(FL_OPT_THREADS),
      fl_command_assess},
     {"certify", "JOURNAL", "issue the certificate as PDF/A, signed with --signer",
      "The issue is an entry of the journal; the same number gives the same bytes again. A certificate that exists is "

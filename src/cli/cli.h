@@ -38,6 +38,7 @@ typedef enum fl_exit {
 	X(FL_OPT_PERFORMED_BY, "performed-by", "NAME", "who took the readings")                                     \
 	X(FL_OPT_REASON, "reason", "TEXT", "why it was adjusted or left alone; why a certificate is amended")       \
 	X(FL_OPT_JSON, "json", NULL, "one JSON object on standard output")                                          \
+	X(FL_OPT_WHY, "why", NULL, "also say why the instrument is off and what to do (opinion)")                   \
 	X(FL_OPT_WIDTH, "width", "COLUMNS", "width of tables and pictures (default: the terminal's, at most 100)")  \
 	X(FL_OPT_STRICT, "strict", NULL, "exit with 1 unless the last run's verdict is pass")                       \
 	X(FL_OPT_BUDGET, "budget", NULL, "the uncertainty budget of every point as a table")                        \

@@ -10,19 +10,6 @@
 
 /* ---- assess ---------------------------------------------------------------------------------------------------- */
 
-static fl_status width_of(const fl_cli *cli, int *columns, fl_error *err) {
-	*columns = fl_cli_columns(cli);
-	const char *text = cli->values[FL_OPT_WIDTH];
-	if (text == NULL)
-		return FL_OK;
-	char *rest;
-	long value = strtol(text, &rest, 10);
-	if (rest == text || *rest || value < 60 || value > 200)
-		return fl_fail(err, FL_E_USAGE, "--width takes a number of columns from 60 to 200, not `%s`", text);
-	*columns = (int)value;
-	return FL_OK;
-}
-
 /* The run that leaves the bench: as-left where it was taken, else as-found. */
 static fl_verdict last_verdict(const fl_result *result) {
 	const fl_run_result *left = &result->runs[FL_RUN_AS_LEFT];
@@ -34,12 +21,14 @@ fl_status fl_command_assess(fl_cli *cli, fl_exit *code, fl_error *err) {
 	fl_case one;
 	fl_text text = {0};
 	int columns;
-	fl_status status = width_of(cli, &columns, err);
+	fl_status status = fl_cli_width(cli, &columns, err);
 	if (status >= 0)
 		status = fl_place_journal(cli, cli->arguments[0], path, err);
 	if (status < 0)
 		return status;
 	status = fl_case_load(cli->io, path, &one, err);
+	if (status >= 0 && cli->values[FL_OPT_WHY])
+		status = fl_case_look_for_causes(&one, err);
 	if (status < 0)
 		return status;
 	status = fl_depth(cli, &one, err);

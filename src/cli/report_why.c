@@ -83,7 +83,19 @@ static void print_run(const fl_case *one, fl_run_kind run, int columns, fl_text 
 	fl_text_add(out, "\n");
 }
 
+static bool is_all_well(const fl_case *one) {
+	for (int run = 0; run < FL_RUN_KINDS; run++)
+		if (one->result.runs[run].available && one->result.runs[run].verdict != FL_VERDICT_PASS)
+			return false;
+	return true;
+}
+
 void fl_report_why(const fl_case *one, int columns, fl_text *out) {
+	if (!one->has_causes && !is_all_well(one))
+		fl_report_wrap(out, "  Why             ", "foundleft assess --why says what may be the cause, and what to do",
+		               columns < 60 ? 60 : columns);
+	if (!one->has_causes)
+		return;
 	for (fl_run_kind run = FL_RUN_AS_FOUND; run < FL_RUN_KINDS; run++)
 		print_run(one, run, columns < 60 ? 60 : columns, out);
 }

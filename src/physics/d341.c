@@ -23,17 +23,26 @@ static const struct low_term {
 };
 enum { LOW_TERM_COUNT = sizeof low_terms / sizeof *low_terms };
 
+/* Below this exponent a term, even times q, is under half a unit in the last place of Z and of its slope: leaving it
+ * out changes no bit, and most oils are far above the viscosities where the terms count. */
+static const double no_bit_below = -46.0;
+
+static double low_term(const struct low_term *term, double nu_mm2_s) {
+	double exponent = term->p - term->q * nu_mm2_s;
+	return exponent < no_bit_below ? 0.0 : term->sign * exp(exponent);
+}
+
 static double z_of(double nu_mm2_s) {
 	double z = nu_mm2_s + 0.7;
 	for (int i = 0; i < LOW_TERM_COUNT; i++)
-		z += low_terms[i].sign * exp(low_terms[i].p - low_terms[i].q * nu_mm2_s);
+		z += low_term(&low_terms[i], nu_mm2_s);
 	return z;
 }
 
 static double dz_of(double nu_mm2_s) {
 	double dz = 1.0;
 	for (int i = 0; i < LOW_TERM_COUNT; i++)
-		dz -= low_terms[i].sign * low_terms[i].q * exp(low_terms[i].p - low_terms[i].q * nu_mm2_s);
+		dz -= low_terms[i].q * low_term(&low_terms[i], nu_mm2_s);
 	return dz;
 }
 

@@ -535,7 +535,7 @@ static fl_status read_procedure(const fl_node *root, fl_procedure *p, fl_error *
 	TRY(read_extra_terms(root, p, err));
 	TRY(read_statement(root, p, err));
 	TRY(read_signatures(root, p, err));
-	p->opinions_on_certificate = true;
+	p->opinions_on_certificate = false;
 	TRY(fl_node_bool(root, "opinions on certificate", false, &p->opinions_on_certificate, err));
 	TRY(fl_procedure_read_questions(root, p, err));
 	return fl_procedure_read_checks(root, p, err);

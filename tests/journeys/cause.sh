@@ -9,12 +9,16 @@ here=$root/sample-sessions
 work=$(mktemp -d)
 trap 'rm -rf "$work"' EXIT
 export TZ=UTC FOUNDLEFT_HOME=$work/home
+# The bench's own procedure, which lets opinions stand on the certificate.
+mkdir -p "$FOUNDLEFT_HOME/templates"
+sed 's/^opinions on certificate: no /opinions on certificate: yes/' "$root/templates/workshop-calibration.yaml" \
+	>"$FOUNDLEFT_HOME/templates/workshop-calibration.yaml"
 bad=0
 complain() { echo "cause: $*"; bad=1; }
 replay() { # name, answers
 	"$program" replay "$2" --stock "$here/stock" --journal "$work/$1.flj" >"$work/$1.said" 2>&1 || { cat "$work/$1.said"; return 1; }
-	"$program" assess "$work/$1.flj" --json >"$work/$1.json"
-	"$program" assess "$work/$1.flj" >"$work/$1.txt"
+	"$program" assess "$work/$1.flj" --why --json >"$work/$1.json"
+	"$program" assess "$work/$1.flj" --why >"$work/$1.txt"
 }
 judge() { # name, python that sees `found` and `left` (cause objects) and `whole`
 	python3 - "$work/$1.json" "$2" <<'PY' || complain "$1: $2"
@@ -92,7 +96,7 @@ grep -q "measure.*applied-pa=15000" "$work/undone.flj" || complain "undone: the 
 "$program" import "$here/out-of-tolerance/readings.csv" --stock "$here/stock" --journal "$work/clip.flj" \
 	--procedure "$here/out-of-tolerance/three-cycles.yaml" --instrument VT-2 --performed-by "Ida Fenwick" \
 	--as-found B26F --as-left B26L --reason "out of tolerance" >/dev/null
-"$program" assess "$work/clip.flj" --json >"$work/clip.json"
+"$program" assess "$work/clip.flj" --why --json >"$work/clip.json"
 judge clip 'possible(found, "coupling") == {"coupling", "output-limit"} and group_of(found, "coupling")["z"] > 10'
 judge clip 'ids(found, "stop-adjustment") and ids(found, "trim-fails") and found["proposal"]["decision"] == "repair"'
 judge clip 'ids(left, "trim-fails") and "deposit" not in possible(found, "pump-slip")'
@@ -174,7 +178,7 @@ sys.exit(bool(missing))
 PY
 for columns in 60 80; do
 	for name in clip sound healthy bottles-no; do
-		"$program" assess "$work/$name.flj" --width $columns | python3 -c '
+		"$program" assess "$work/$name.flj" --why --width $columns | python3 -c '
 import sys
 wide = [line for line in sys.stdin.read().split("\n") if len(line) > int(sys.argv[1])]
 print(*wide[:3], sep="\n") if wide else None

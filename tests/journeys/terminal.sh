@@ -193,7 +193,7 @@ wait_for "The session is closed"
 
 journal=$(ls "$work"/home/sessions/*.flj)
 "$program" check "$journal" | grep -q "every digest fits, closed" || fail "check finds a fault"
-"$program" assess "$journal" --json >"$work/json"
+"$program" assess "$journal" --why --json >"$work/json"
 python3 - "$work/json" <<'PY' || fail "another result than was typed"
 import json, sys
 run = json.load(open(sys.argv[1]))["runs"][0]
