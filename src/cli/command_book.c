@@ -18,8 +18,7 @@ static const char *argument(const fl_cli *cli, int index) {
 	return index < cli->argument_count ? cli->arguments[index] : NULL;
 }
 
-/* ---- found, add
- * ------------------------------------------------------------------------------------------------------ */
+/* ---- found, add ---- */
 
 static fl_status book_found(fl_cli *cli, fl_exit *code, fl_error *err) {
 	(void)code;
@@ -67,8 +66,7 @@ static fl_status book_add(fl_cli *cli, fl_exit *code, fl_error *err) {
 	return first;
 }
 
-/* ---- copies
- * ---------------------------------------------------------------------------------------------------------- */
+/* ---- copies ---- */
 
 static fl_status book_backup(fl_cli *cli, fl_exit *code, fl_error *err) {
 	(void)code;
@@ -140,8 +138,7 @@ static fl_status book_restore(fl_cli *cli, fl_exit *code, fl_error *err) {
 	return status;
 }
 
-/* ---- bundles
- * ---------------------------------------------------------------------------------------------------------- */
+/* ---- bundles ---- */
 
 static fl_status book_bundle(fl_cli *cli, fl_exit *code, fl_error *err) {
 	(void)code;
@@ -218,8 +215,7 @@ static fl_status book_take(fl_cli *cli, fl_exit *code, fl_error *err) {
 	return status;
 }
 
-/* ---- export
- * ----------------------------------------------------------------------------------------------------------- */
+/* ---- export ---- */
 
 static fl_status write_out(void *self, const char *bytes, size_t length, fl_error *err) {
 	FILE *file = self;
@@ -282,8 +278,7 @@ static fl_status book_export(fl_cli *cli, fl_exit *code, fl_error *err) {
 	return status;
 }
 
-/* ---- trace
- * ------------------------------------------------------------------------------------------------------------- */
+/* ---- trace ---- */
 
 static fl_status print_fed(const fl_cli *cli, fl_store *store, const char *name, const fl_record_list *list,
                            fl_error *err) {
@@ -369,8 +364,7 @@ static fl_status book_check(fl_cli *cli, fl_exit *code, fl_error *err) {
 	return status < 0 ? status : fl_book_check(cli, path, code, err);
 }
 
-/* ---- the words
- * ------------------------------------------------------------------------------------------------------- */
+/* ---- the words ---- */
 
 typedef struct word {
 	const char *name, *needs; /* what stands behind it */

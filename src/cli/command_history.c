@@ -142,8 +142,7 @@ fl_status fl_command_due(fl_cli *cli, fl_exit *code, fl_error *err) {
 	return status;
 }
 
-/* ---- look-back
- * --------------------------------------------------------------------------------------------------------- */
+/* ---- look-back ---- */
 
 /* The record asked for, or the latest whose as-found was out of tolerance; *found past the end where there is none. */
 static fl_status pick(const fl_cli *cli, const fl_record_list *list, fl_arena *arena, size_t *found, fl_error *err) {

@@ -27,8 +27,7 @@ typedef struct canvas {
 	const char *cells[MOST_ROWS][MOST_COLUMNS];
 } canvas;
 
-/* ---- scales
- * ---------------------------------------------------------------------------------------------------------- */
+/* ---- scales ---- */
 
 typedef struct reach_of {
 	double low, high;
@@ -97,8 +96,7 @@ static int column_of(const canvas *c, double day) {
 	return column < 0.0 ? 0 : column > c->width - 1 ? c->width - 1 : (int)lround(column);
 }
 
-/* ---- drawing
- * --------------------------------------------------------------------------------------------------------- */
+/* ---- drawing ---- */
 
 static void mark(canvas *c, double day, double fraction, const char *what) {
 	if (!isnan(fraction))
@@ -164,8 +162,7 @@ static void draw_teeth(canvas *c) {
 	}
 }
 
-/* ---- printing
- * -------------------------------------------------------------------------------------------------------- */
+/* ---- printing ---- */
 
 static void print_row(const canvas *c, int row, fl_text *out) {
 	char label[FL_CELL_SIZE];

@@ -205,8 +205,7 @@ static void add_drift(const fl_history *h, int columns, fl_text *out) {
 	fl_text_add(out, "\n");
 }
 
-/* ---- intervals and what is to be done
- * --------------------------------------------------------------------------------- */
+/* ---- intervals and what is to be done ---- */
 
 static void add_proposal(const fl_proposal *p, int columns, fl_text *out) {
 	char lead[80];

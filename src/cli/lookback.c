@@ -110,8 +110,7 @@ void fl_lookback_text(const fl_lookback_report *r, int columns, fl_text *out) {
 	add_disposition(columns, out);
 }
 
-/* ---- JSON
- * ------------------------------------------------------------------------------------------------------------- */
+/* ---- JSON ---- */
 
 static void write_days(fl_json *to, const fl_lookback *l) {
 	fl_json_begin(to, "days", '[');

@@ -280,8 +280,7 @@ void fl_table_end(fl_table *table, int limit, fl_text *out) {
 	*table = (fl_table){0};
 }
 
-/* ---- points: values and names
- * ------------------------------------------------------------------------------------------------------ */
+/* ---- points: values and names ---- */
 
 bool fl_report_has_budget(const fl_point_result *point) {
 	return point->sum.coverage_factor > 0.0;

@@ -55,8 +55,7 @@ char *fl_table_cell(fl_table *table, size_t row, int column);
  * and frees it. */
 void fl_table_end(fl_table *table, int width, fl_text *out);
 
-/* ---- points: values and names
- * ------------------------------------------------------------------------------------------------------ */
+/* ---- points: values and names ---- */
 
 /* False where nothing stands in the budget, so that U, k and what follows from them are not determined. */
 bool fl_report_has_budget(const fl_point_result *point);

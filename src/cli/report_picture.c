@@ -364,8 +364,7 @@ static int draw_struck(report_panel *panel) {
 	return count;
 }
 
-/* ---- a panel as lines
- * ------------------------------------------------------------------------------------------------ */
+/* ---- a panel as lines ---- */
 
 static fl_arena panel_open(report_panel *panel, const fl_case *one, const fl_run_result *run, int width,
                            const fl_marks *marks) {

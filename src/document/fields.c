@@ -254,8 +254,7 @@ fl_status fl_node_day(const fl_node *map, const char *key, bool required, fl_day
 	return status == FL_OK ? FL_OK : fl_fail_at(err, status, fl_node_place(scalar), "%s", inner.message);
 }
 
-/* ---- numbers and amounts
- * --------------------------------------------------------------------------------------------- */
+/* ---- numbers and amounts ---- */
 
 /* In a file a point is the decimal mark ("2.968"); a comma with three digits behind it may be either, so: refused. */
 static fl_status settle_mark(const fl_node *scalar, fl_status status, const fl_decimal *number, fl_error *err) {

@@ -60,8 +60,7 @@ fl_status fl_entry_amount(const char *text, const fl_wanted *wanted, fl_decimal 
 	return FL_OK;
 }
 
-/* ---- several amounts on one line
- * --------------------------------------------------------------------------------------- */
+/* ---- several amounts on one line ---- */
 
 static bool begins_number(const char *token) {
 	if (strncmp(token, "\u2212", 3) == 0)

@@ -13,8 +13,7 @@ static fl_status refuse_yes_no(fl_error *err) {
 	return fl_fail(err, FL_E_VALUE, "answer yes or no");
 }
 
-/* ---- identification and people
- * -------------------------------------------------------------------------------------------- */
+/* ---- identification and people ---- */
 
 static fl_status answer_item(fl_entry *entry, const fl_step *step, const char *line, fl_error *err) {
 	const fl_entry_item *item = fl_entry_item_find(step->id);
@@ -25,8 +24,7 @@ static fl_status answer_item(fl_entry *entry, const fl_step *step, const char *l
 	return status < 0 ? status : fl_entry_set(entry, item->id, line, err);
 }
 
-/* ---- equipment and oils
- * ------------------------------------------------------------------------------------------------------ */
+/* ---- equipment and oils ---- */
 
 static void list_equipment(const fl_entry *entry, fl_role role, char *out, size_t size) {
 	const fl_stock *stock = entry->setup.stock;
@@ -105,8 +103,7 @@ static fl_status answer_oil(fl_entry *entry, const fl_step *step, const char *li
 	return fl_entry_assign_oil(entry, step->point, oil, err);
 }
 
-/* ---- questions of the procedure
- * ------------------------------------------------------------------------------------------------ */
+/* ---- questions of the procedure ---- */
 
 static fl_status commit_answer(fl_entry *entry, const fl_step *step, const char *typed, const char *unit,
                                const char *value, const char *reason, fl_error *err) {
@@ -212,9 +209,7 @@ static fl_status answer_question(fl_entry *entry, const fl_step *step, const cha
 	return status < 0 ? status : commit_answer(entry, step, line, NULL, NULL, NULL, err);
 }
 
-/* ---- runs
- * -----------------------------------------------------------------------------------------------------------------------
- */
+/* ---- runs ---- */
 
 static fl_status answer_as_found(fl_entry *entry, const char *line, fl_error *err) {
 	int yes = fl_entry_yes(line);
@@ -305,8 +300,7 @@ static fl_status answer_close_run(fl_entry *entry, const fl_step *step, const ch
 	return status;
 }
 
-/* ---- decision, adjustment, end
- * -------------------------------------------------------------------------------------------------- */
+/* ---- decision, adjustment, end ---- */
 
 static fl_status answer_adjustment(fl_entry *entry, const char *line, fl_error *err) {
 	if (strcasecmp(line, "done") == 0) {

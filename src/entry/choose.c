@@ -45,8 +45,7 @@ fl_status fl_entry_indicative(fl_entry *entry, const char *item, const char *rea
 	return fl_entry_commit(entry, &event, err);
 }
 
-/* ---- equipment
- * ---------------------------------------------------------------------------------------------------------- */
+/* ---- equipment ---- */
 
 const fl_equipment *fl_entry_propose_equipment(const fl_entry *entry, fl_role role) {
 	const fl_stock *stock = entry->setup.stock;
@@ -80,8 +79,7 @@ fl_status fl_entry_equip(fl_entry *entry, fl_role role, const char *id, fl_error
 	return fl_entry_commit(entry, &event, err);
 }
 
-/* ---- oils
- * ---------------------------------------------------------------------------------------------------------------- */
+/* ---- oils ---- */
 
 static bool fits_point(const fl_entry *entry, const fl_oil *oil, int point, double *pct) {
 	const fl_plan_point *plan = &entry->setup.procedure->points[point];

@@ -8,9 +8,7 @@
 #include <stdlib.h>
 #include <string.h>
 
-/* ---- help
- * --------------------------------------------------------------------------------------------------------------------
- */
+/* ---- help ---- */
 
 static const char *step_help(const fl_step *step) {
 	switch (step->kind) {
@@ -66,8 +64,7 @@ static fl_status help(fl_entry *entry, const char *rest, fl_text *say, fl_error 
 	return FL_OK;
 }
 
-/* ---- undo and strike
- * ----------------------------------------------------------------------------------------------------------- */
+/* ---- undo and strike ---- */
 
 /* Gives the form its reason, from the command line if it stands there. */
 static fl_status with_reason(fl_entry *entry, fl_form_kind kind, int target, const char *reason, fl_text *say,
@@ -135,8 +132,7 @@ static fl_status strike(fl_entry *entry, const char *rest, fl_text *say, fl_erro
 	return fl_fail(err, FL_E_VALUE, "entry %ld is no reading that can be struck: list shows those of this run", target);
 }
 
-/* ---- the others
- * ------------------------------------------------------------------------------------------------------------------ */
+/* ---- the others ---- */
 
 static fl_status watch(fl_entry *entry, const char *rest, fl_text *say, fl_error *err) {
 	fl_step step = fl_entry_step(entry->session, entry->setup.procedure);

@@ -78,8 +78,7 @@ fl_status fl_entry_line(fl_entry *entry, const char *line, fl_text *say, fl_erro
 	return FL_OK;
 }
 
-/* ---- a new session
- * ------------------------------------------------------------------------------------------------------------- */
+/* ---- a new session ---- */
 
 static fl_status put_text(fl_journal *journal, fl_utc now, const char *kind, const char *name, const char *body,
                           fl_error *err) {

@@ -97,8 +97,7 @@ struct fl_entry {
 	long advice_age; /* what it was computed from: grows with each measurement and each answer */
 };
 
-/* ---- step.c
- * ---------------------------------------------------------------------------------------------------------- */
+/* ---- step.c ---- */
 
 typedef struct fl_entry_item {
 	const char *id, *ask, *help;
@@ -113,8 +112,7 @@ fl_role fl_entry_meter_role(const fl_session *session);
 /* True if the reading stands at the step's run, cycle, pass and point and was not taken back. */
 bool fl_entry_at_place(const fl_reading *reading, const fl_step *step);
 
-/* ---- amount.c
- * -------------------------------------------------------------------------------------------------------- */
+/* ---- amount.c ---- */
 
 /* What an amount may be. */
 typedef struct fl_wanted {
@@ -131,8 +129,7 @@ int fl_entry_split(const char *line, char parts[][96], int most);
 /* The shortest text that reads back as the same double. */
 char *fl_entry_number(double value, char out[32]);
 
-/* ---- say.c
- * ----------------------------------------------------------------------------------------------------------- */
+/* ---- say.c ---- */
 
 fl_status fl_entry_check_text(const char *text, int most_points, bool required, const char *what,
                               fl_error *err) FL_MUST_USE;
@@ -142,8 +139,7 @@ fl_status fl_entry_commit(fl_entry *entry, fl_event *event, fl_error *err) FL_MU
 /* yes 1, no 0, neither -1. */
 int fl_entry_yes(const char *text);
 
-/* ---- reading.c
- * ------------------------------------------------------------------------------------------------------- */
+/* ---- reading.c ---- */
 
 /* Places a draft at the step; `watched` values have no number. */
 void fl_entry_draft_begin(fl_entry *entry, const fl_step *step, bool watched);
@@ -171,8 +167,7 @@ fl_status fl_entry_judge(const fl_entry *entry, const fl_reading *reading, fl_re
 /* The oil of a point, as the journal carries it; NULL if there is none. */
 const fl_oil *fl_entry_oil(const fl_entry *entry, int point);
 
-/* ---- settle.c
- * -------------------------------------------------------------------------------------------------------- */
+/* ---- settle.c ---- */
 
 typedef struct fl_settling {
 	int count;     /* values judged; 0: too few to judge */
@@ -191,8 +186,7 @@ typedef struct fl_settling {
 /* Judges the series at the step with `candidate` (NULL: none) as its last value. */
 fl_settling fl_entry_settling(const fl_entry *entry, const fl_step *step, const fl_reading *candidate);
 
-/* ---- answer.c, command.c
- * --------------------------------------------------------------------------------------------- */
+/* ---- answer.c, command.c ---- */
 
 fl_status fl_entry_answer(fl_entry *entry, const char *line, fl_text *say, fl_error *err) FL_MUST_USE;
 /* Answers the form that is open. */

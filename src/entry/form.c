@@ -38,8 +38,7 @@ const char *fl_entry_form_prompt(const fl_entry *entry) {
 	return entry->form.ask[0] ? entry->form.ask : forms[entry->form.kind].asks[entry->form.slot];
 }
 
-/* ---- finished forms
- * -------------------------------------------------------------------------------------------------------- */
+/* ---- finished forms ---- */
 
 static fl_status finish_mark(fl_entry *entry, fl_verb verb, fl_error *err) {
 	char target[16];
@@ -142,8 +141,7 @@ static fl_status finish(fl_entry *entry, fl_text *say, fl_error *err) {
 	}
 }
 
-/* ---- answers
- * ----------------------------------------------------------------------------------------------------------------- */
+/* ---- answers ---- */
 
 static fl_status answer_doubt(fl_entry *entry, const char *line, fl_text *say, fl_error *err) {
 	int yes = fl_entry_yes(line);

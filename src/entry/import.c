@@ -52,8 +52,7 @@ static fl_status at_cell(const table *t, const fl_csv_row *row, column which, fl
 	return fl_fail_at(err, status, place, "%s", message);
 }
 
-/* ---- the table
- * ----------------------------------------------------------------------------------------------------------- */
+/* ---- the table ---- */
 
 static fl_status need_column(table *t, column which, const char *name, fl_error *err) {
 	t->at[which] = fl_csv_column(&t->csv, name);
@@ -143,8 +142,7 @@ fl_status fl_entry_import_day(const char *csv, const char *file, const fl_import
 	return status;
 }
 
-/* ---- where a row stands on the plan
- * ----------------------------------------------------------------------------------------- */
+/* ---- where a row stands on the plan ---- */
 
 static bool is_zero(const table *t, const fl_csv_row *row) {
 	return strcmp(cell(t, row, COL_OIL), "ZERO") == 0;
@@ -218,8 +216,7 @@ static fl_status check_place(const fl_entry *entry, const table *t, const fl_csv
 	return FL_OK;
 }
 
-/* ---- readings
- * ----------------------------------------------------------------------------------------------------------------- */
+/* ---- readings ---- */
 
 static fl_status fill_draft(fl_entry *entry, const table *t, const fl_csv_row *row, fl_error *err) {
 	static const struct {
@@ -290,8 +287,7 @@ static fl_status import_run(fl_entry *entry, const table *t, fl_run_kind run, fl
 	return fl_entry_commit(entry, &event, err);
 }
 
-/* ---- what stands around the readings
- * -------------------------------------------------------------------------------------------- */
+/* ---- what stands around the readings ---- */
 
 static fl_status mark_indicative(fl_entry *entry, const char *item, const fl_error *why, fl_error *err) {
 	char reason[300];

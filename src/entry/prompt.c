@@ -8,8 +8,7 @@
 #include <stdio.h>
 #include <string.h>
 
-/* ---- parts of the work
- * -------------------------------------------------------------------------------------------------- */
+/* ---- parts of the work ---- */
 
 typedef enum part {
 	PART_IDENTITY,
@@ -117,8 +116,7 @@ static void show_heading(fl_entry *entry, part which, fl_text *out) {
 	entry->shown_place = -1;
 }
 
-/* ---- questions
- * ----------------------------------------------------------------------------------------------------------- */
+/* ---- questions ---- */
 
 static void ask_question(const fl_question *question, fl_text *out) {
 	if (question->caution)

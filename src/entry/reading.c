@@ -27,8 +27,7 @@ fl_status fl_entry_reference(const fl_entry *entry, fl_reference *out, fl_error 
 	return fl_reference_of(entry->session, entry->setup.procedure, &entry->used, entry->setup.instrument, out, err);
 }
 
-/* ---- the line taken apart
- * ------------------------------------------------------------------------------------------------- */
+/* ---- the line taken apart ---- */
 
 void fl_entry_draft_begin(fl_entry *entry, const fl_step *step, bool watched) {
 	entry->draft = (fl_draft){0};
@@ -169,8 +168,7 @@ fl_status fl_entry_draft_read(fl_entry *entry, const char *line, fl_error *err) 
 	return status;
 }
 
-/* ---- what cannot be
- * --------------------------------------------------------------------------------------------------------- */
+/* ---- what cannot be ---- */
 
 static fl_status check_signal(const fl_entry *entry, fl_error *err) {
 	const fl_draft *d = &entry->draft;
@@ -294,8 +292,7 @@ fl_status fl_entry_draft_check(fl_entry *entry, fl_error *err) {
 	return check_settled(entry, err);
 }
 
-/* ---- against what should come
- * ------------------------------------------------------------------------------------------------ */
+/* ---- against what should come ---- */
 
 fl_status fl_entry_judge(const fl_entry *entry, const fl_reading *r, fl_reading_result *out, fl_error *err) {
 	fl_reference reference;
@@ -303,8 +300,7 @@ fl_status fl_entry_judge(const fl_entry *entry, const fl_reading *r, fl_reading_
 	return status < 0 ? status : fl_reference_reading(&reference, fl_entry_oil(entry, r->point), r, out, err);
 }
 
-/* ---- what is doubted
- * --------------------------------------------------------------------------------------------------------- */
+/* ---- what is doubted ---- */
 
 static bool doubt_fahrenheit_unit(fl_entry *e, char *ask, size_t size) {
 	if (!e->draft.reading.has_temp || !e->draft.fahrenheit)
@@ -404,8 +400,7 @@ bool fl_entry_draft_doubt(fl_entry *entry, char *ask, size_t size) {
 	return false;
 }
 
-/* ---- into the journal
- * ---------------------------------------------------------------------------------------------------------- */
+/* ---- into the journal ---- */
 
 static fl_status begin_run(fl_entry *entry, fl_run_kind run, fl_error *err) {
 	if (entry->session->runs[run].begun)
@@ -471,8 +466,7 @@ fl_status fl_entry_draft_commit(fl_entry *entry, const char *answer, const char 
 	return fl_entry_commit(entry, &event, err);
 }
 
-/* ---- told afterwards
- * ------------------------------------------------------------------------------------------------------------ */
+/* ---- told afterwards ---- */
 
 static int places_of(fl_unit unit) {
 	return unit == FL_U_BAR ? 4 : 3;

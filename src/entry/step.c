@@ -42,8 +42,7 @@ bool fl_entry_at_place(const fl_reading *r, const fl_step *step) {
 	       r->point == step->point;
 }
 
-/* ---- parts before the runs
- * ------------------------------------------------------------------------------------------------ */
+/* ---- parts before the runs ---- */
 
 static bool settings_step(const fl_session *s, fl_step *step) {
 	for (const fl_entry_item *item = fl_entry_items; item->id; item++)
@@ -111,8 +110,7 @@ static bool condition_step(const fl_session *s, const fl_procedure *p, fl_step *
 	return false;
 }
 
-/* ---- the runs
- * -------------------------------------------------------------------------------------------------------------- */
+/* ---- the runs ---- */
 
 /* Place number `index` of one cycle, rising from the stopped zero and falling back to it; false behind the last. */
 static bool place_of(const fl_procedure *p, int index, fl_pass *pass, int *point) {

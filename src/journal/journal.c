@@ -44,8 +44,7 @@ static void first_head(char head[FL_DIGEST_HEX_SIZE]) {
 	head[FL_DIGEST_HEX_SIZE - 1] = '\0';
 }
 
-/* ---- reading
- * ----------------------------------------------------------------------------------------------------------- */
+/* ---- reading ---- */
 
 /* What came of reading the bytes of a journal. */
 typedef struct replayed {
@@ -211,8 +210,7 @@ fl_status fl_journal_read_to(const fl_io *io, const char *path, int sequence, fl
 	return status;
 }
 
-/* ---- writing
- * ----------------------------------------------------------------------------------------------------------- */
+/* ---- writing ---- */
 
 fl_status fl_journal_commit(fl_journal *journal, fl_event *event, fl_error *err) {
 	event->sequence = journal->session.last_sequence + 1;

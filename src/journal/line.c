@@ -10,8 +10,7 @@
 static const char prev_mark[] = "\tprev=", self_mark[] = "\tself=";
 #define HEX (FL_DIGEST_HEX_SIZE - 1)
 
-/* ---- writing
- * ----------------------------------------------------------------------------------------------------------- */
+/* ---- writing ---- */
 
 static void add_escaped(fl_text *out, const char *value) {
 	for (;;) {
@@ -46,8 +45,7 @@ fl_status fl_line_write(fl_hasher *hasher, const fl_event *event, const char *pr
 	return out->failed ? fl_fail(err, FL_E_MEMORY, "out of memory for a line of the journal") : FL_OK;
 }
 
-/* ---- reading
- * ----------------------------------------------------------------------------------------------------------- */
+/* ---- reading ---- */
 
 /* Is tail[] the mark and then HEX digits of lower case? */
 static bool is_digest(const char *tail, const char *mark) {

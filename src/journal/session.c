@@ -81,8 +81,7 @@ fl_status fl_session_prepare(fl_session *s, const fl_event *event, fl_event *kep
 	return FL_OK;
 }
 
-/* ---- taking
- * ----------------------------------------------------------------------------------------------------------- */
+/* ---- taking ---- */
 
 static fl_unit unit_of(const char *text) {
 	fl_unit unit = FL_U_NONE;
@@ -419,8 +418,7 @@ void fl_session_free(fl_session *session) {
 	*session = (fl_session){0};
 }
 
-/* ---- asking the session
- * ------------------------------------------------------------------------------------------------ */
+/* ---- asking the session ---- */
 
 const fl_setting *fl_session_setting(const fl_session *s, const char *id) {
 	for (size_t i = s->setting_count; i-- > 0;)

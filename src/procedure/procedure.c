@@ -362,8 +362,7 @@ static fl_status read_settled(const fl_node *root, fl_procedure *p, fl_error *er
 	return fl_node_integer(map, "identical readings", false, 2, 1000, &settle->identical_readings, err);
 }
 
-/* ---- limits and the rule
- * --------------------------------------------------------------------------------------------- */
+/* ---- limits and the rule ---- */
 
 static fl_status check_limits(const fl_node *root, const fl_procedure *p, fl_error *err) {
 	const fl_band *tolerance = &p->tolerance, *adjust = &p->adjust_limit;
@@ -431,8 +430,7 @@ static fl_status read_decision(const fl_node *root, fl_procedure *p, fl_error *e
 	return check_limits(root, p, err);
 }
 
-/* ---- uncertainty that the procedure adds
- * ------------------------------------------------------------------------------ */
+/* ---- uncertainty that the procedure adds ---- */
 
 static fl_status read_oil_terms(const fl_node *root, fl_procedure *p, fl_error *err) {
 	bool oil = p->medium == FL_MEDIUM_OIL;
@@ -521,8 +519,7 @@ static fl_status read_signatures(const fl_node *root, fl_procedure *p, fl_error 
 	return FL_OK;
 }
 
-/* ---- the whole
- * ---------------------------------------------------------------------------------------------------------- */
+/* ---- the whole ---- */
 
 static fl_status read_procedure(const fl_node *root, fl_procedure *p, fl_error *err) {
 	TRY(fl_node_only(root, fields, err));

@@ -30,8 +30,7 @@ fl_status fl_stock_dp_full(const fl_instrument *instrument, double *dp_pa, fl_er
 	return FL_OK;
 }
 
-/* ---- the usual slips
- * -------------------------------------------------------------------------------------------------- */
+/* ---- the usual slips ---- */
 
 typedef enum suspect { BORE, LENGTH, PUMP, PUMP_SPEED, DIAL_DENSITY, PRESSURE, SUSPECTS } suspect;
 
@@ -149,8 +148,7 @@ static size_t find_explanations(const fl_instrument *instrument, explanation fou
 	return kept;
 }
 
-/* ---- saying so
- * ----------------------------------------------------------------------------------------------------------- */
+/* ---- saying so ---- */
 
 static fl_place place_of(const fl_node *map, const fl_node *geometry, suspect field) {
 	return fl_stock_place(suspects[field].in_geometry ? geometry : map, suspects[field].key);

@@ -119,8 +119,7 @@ static fl_status read_row(const fl_node *row, fl_oil_point *point, double *U_nu_
 	return FL_OK;
 }
 
-/* ---- the table
- * ------------------------------------------------------------------------------------------------------- */
+/* ---- the table ---- */
 
 static fl_status check_falling(const fl_node *row, const fl_oil_point *above, const fl_oil_point *here, fl_error *err) {
 	if (here->temp_c <= above->temp_c)
@@ -196,8 +195,7 @@ fl_status fl_stock_read_oil(fl_arena *arena, const fl_node *map, fl_oil *out, fl
 	return read_table(arena, map, out, err);
 }
 
-/* ---- in use
- * ------------------------------------------------------------------------------------------------------------ */
+/* ---- in use ---- */
 
 fl_status fl_stock_oil_in_date(const fl_oil *oil, fl_day day, fl_error *err) {
 	char asked[FL_DAY_SIZE], limit[FL_DAY_SIZE];

@@ -209,8 +209,7 @@ void fl_stock_free(fl_stock *stock) {
 	*stock = (fl_stock){0};
 }
 
-/* ---- finding
- * ----------------------------------------------------------------------------------------------------------- */
+/* ---- finding ---- */
 
 const fl_oil *fl_stock_oil(const fl_stock *stock, const char *lot) {
 	const fl_oil *newest = NULL;

@@ -141,8 +141,7 @@ static void doubts_are_recorded_as_imported(void **state) {
 	talk_end(&t);
 }
 
-/* ---- tests/invalid/import/<what>/{input.csv,error}: a new case needs no code
- * --------------------------------------------- */
+/* ---- tests/invalid/import/<what>/{input.csv,error}: a new case needs no code ---- */
 
 static char *slurp(const char *folder, const char *what, const char *name) {
 	char path[600];

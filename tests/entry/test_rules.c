@@ -20,8 +20,7 @@ static char *prompt_of(talk *t) {
 	return prompt.data;
 }
 
-/* ---- readings as people type them
- * ------------------------------------------------------------------------------------------- */
+/* ---- readings as people type them ---- */
 
 static void a_line_is_taken_apart(void **state) {
 	(void)state;
@@ -119,8 +118,7 @@ static void a_pneumatic_output_takes_pressures_only(void **state) {
 	talk_end(&t);
 }
 
-/* ---- never before it is committed
- * ------------------------------------------------------------------------------------------------- */
+/* ---- never before it is committed ---- */
 
 static void the_expected_output_stands_only_behind_a_committed_reading(void **state) {
 	talk t;
@@ -202,8 +200,7 @@ static void a_changed_stock_file_does_not_change_a_session(void **state) {
 	fl_stock_free(&own);
 }
 
-/* ---- temperatures
- * ---------------------------------------------------------------------------------------------------------------- */
+/* ---- temperatures ---- */
 
 static void fahrenheit_is_asked_and_never_converted_silently(void **state) {
 	talk t;
@@ -243,9 +240,7 @@ static void a_temperature_may_follow_on_its_own_line(void **state) {
 	talk_end(&t);
 }
 
-/* ---- settling
- * ---------------------------------------------------------------------------------------------------------------------
- */
+/* ---- settling ---- */
 
 /* The sequence of the job description: 30 s apart, refused, end value about 10.09 mA, ready in about 3 min. */
 static void a_value_still_moving_is_refused_as_settled(void **state) {
@@ -330,8 +325,7 @@ static void identical_values_raise_a_question(void **state) {
 	talk_end(&t);
 }
 
-/* ---- gates and conditions
- * -------------------------------------------------------------------------------------------------------------- */
+/* ---- gates and conditions ---- */
 
 static void a_gate_that_is_no_stops_the_work(void **state) {
 	talk t;
@@ -375,8 +369,7 @@ static void a_wrong_supply_stops_before_anybody_adjusts(void **state) {
 	talk_end(&t);
 }
 
-/* ---- what is out of date
- * ------------------------------------------------------------------------------------------------------------------ */
+/* ---- what is out of date ---- */
 
 static void overdue_equipment_goes_on_only_as_indicative(void **state) {
 	talk t;
@@ -412,9 +405,7 @@ static void an_expired_lot_goes_on_only_as_indicative(void **state) {
 	talk_end(&t);
 }
 
-/* ---- commands
- * ------------------------------------------------------------------------------------------------------------------------------
- */
+/* ---- commands ---- */
 
 static void undo_takes_back_by_a_new_line(void **state) {
 	talk t;
@@ -492,9 +483,7 @@ static void names_of_any_script_up_to_120_characters(void **state) {
 	talk_end(&t);
 }
 
-/* ---- the disk
- * -------------------------------------------------------------------------------------------------------------------------------
- */
+/* ---- the disk ---- */
 
 static void a_full_disk_ends_the_talk_and_loses_nothing(void **state) {
 	talk t;

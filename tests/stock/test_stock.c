@@ -192,8 +192,7 @@ static void knows_overdue_equipment(void **state) {
 	assert_int_equal(FL_OK, fl_stock_equipment_in_date(fl_stock_equipment(&stock, "MA-3"), day(2026, 4, 14), NULL));
 }
 
-/* ---- corrections and uncertainty
- * ------------------------------------------------------------------------------------- */
+/* ---- corrections and uncertainty ---- */
 
 /* PS-1: corrections 0, +0.02, -0.03, -0.06 mbar at 0, 150, 350, 700 mbar. */
 static void applies_corrections(void **state) {
@@ -222,8 +221,7 @@ static void splits_equipment_uncertainty(void **state) {
 	check_near("no drift before the calibration", 0.0, u.drift_half_width, 0);
 }
 
-/* ---- excerpts: what the journal keeps says the same
- * ------------------------------------------------------------------- */
+/* ---- excerpts: what the journal keeps says the same ---- */
 
 static void check_same_oil(const fl_oil *a, const fl_oil *b) {
 	assert_string_equal(a->name, b->name);
@@ -308,8 +306,7 @@ static void excerpts_say_the_same(void **state) {
 	fl_stock_free(&again);
 }
 
-/* ---- other ways of writing
- * --------------------------------------------------------------------------------------------- */
+/* ---- other ways of writing ---- */
 
 static void reads_other_dials_and_units(void **state) {
 	(void)state;
