@@ -79,12 +79,13 @@ uint32_t fl_utf8_next(const char **cursor) {
 	return code;
 }
 
+/* Counted on the bytes, as tables ask this of every cell again and again: each code point has one byte that does not
+ * continue another, and U+0300..U+036F are CC 80..BF and CD 80..AF. */
 int fl_utf8_columns(const char *text) {
 	int columns = 0;
-	while (*text) {
-		uint32_t code = fl_utf8_next(&text);
-		if (code < 0x300 || code > 0x36F)
-			columns++;
+	for (const unsigned char *byte = (const unsigned char *)text; *byte; byte++) {
+		bool combines = *byte == 0xCC || (*byte == 0xCD && byte[1] <= 0xAF);
+		columns += (*byte & 0xC0) != 0x80 && !combines;
 	}
 	return columns;
 }

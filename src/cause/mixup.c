@@ -80,10 +80,16 @@ static int by_size(const void *a, const void *b) {
 	return (x > y) - (x < y);
 }
 
-/* Residuals by size; the one that more than half stay within. */
-static double median_residual(const hunt *h, double zero, double gain, double *room) {
-	for (size_t i = 0; i < h->count; i++)
+/* Residuals by size; the one that more than half stay within, or INFINITY where it is not below `best`: counting tells
+ * that long before sorting would. */
+static double median_residual(const hunt *h, double zero, double gain, double best, double *room) {
+	size_t below = 0;
+	for (size_t i = 0; i < h->count; i++) {
 		room[i] = fabs(h->items[i].e - zero - gain * h->items[i].x);
+		below += room[i] < best;
+	}
+	if (below <= h->count / 2)
+		return INFINITY;
 	qsort(room, h->count, sizeof *room, by_size);
 	return room[h->count / 2];
 }
@@ -100,7 +106,7 @@ static bool find_line(hunt *h, double *room) {
 			double gain = (h->items[j].e - h->items[i].e) / dx, zero = h->items[i].e - gain * h->items[i].x;
 			if (fabs(gain) > largest_gain || fabs(zero) > 0.1)
 				continue;
-			double median = median_residual(h, zero, gain, room);
+			double median = median_residual(h, zero, gain, best, room);
 			if (median >= best)
 				continue;
 			best = median;

@@ -30,9 +30,13 @@ static fl_status check_capillary(const fl_capillary *c, double mu_pa_s, double r
 	return FL_OK;
 }
 
+static double fourth_power(double v) {
+	return v * v * v * v;
+}
+
 /* Pressure drop of a tube per metre of length: 128 mu Q / (pi d^4). */
 static double poiseuille_pa_per_m(double bore_m, double mu_pa_s, double flow_m3_s) {
-	return 128.0 * mu_pa_s * flow_m3_s / (pi * pow(bore_m, 4.0));
+	return 128.0 * mu_pa_s * flow_m3_s / (pi * fourth_power(bore_m));
 }
 
 fl_status fl_physics_capillary(const fl_capillary *capillary, double mu_pa_s, double rho_kg_m3, fl_flow *out,
@@ -58,7 +62,7 @@ fl_status fl_physics_capillary(const fl_capillary *capillary, double mu_pa_s, do
 }
 
 double fl_physics_poiseuille_mu(double bore_m, double dp_per_m_pa, double flow_m3_s) {
-	return pi * pow(bore_m, 4.0) * dp_per_m_pa / (128.0 * flow_m3_s);
+	return pi * fourth_power(bore_m) * dp_per_m_pa / (128.0 * flow_m3_s);
 }
 
 double fl_physics_bore_loss(double gain) {

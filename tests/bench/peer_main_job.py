@@ -194,7 +194,7 @@ class Session:
         self.decision = next(e for e in events if e["verb"] == "decide")
         self.remarks = [e["typed"] for e in events if e["verb"] == "remark"]
         self.day = day(events[0]["day"])
-        self.closed_by = events[-1]["by"]
+        self.closed_by = next(e["by"] for e in events if e["verb"] == "close")
         self.oils = {int(e["point"]): Oil(texts["oil", e["lot"]]) for e in events if e["verb"] == "point"}
         self.tools = {e["role"]: yaml_fields(texts["equipment", e["id"]])[0] for e in events if e["verb"] == "equip"}
         self.unit = yaml_fields(next(body for (kind, _), body in texts.items() if kind == "instrument"))[0]
