@@ -46,6 +46,18 @@ static double dz_of(double nu_mm2_s) {
 	return dz;
 }
 
+/* Both at once: Newton's iteration asks for them together, and the terms are the same. */
+static double z_with_slope(double nu_mm2_s, double *dz) {
+	double z = nu_mm2_s + 0.7;
+	*dz = 1.0;
+	for (int i = 0; i < LOW_TERM_COUNT; i++) {
+		double term = low_term(&low_terms[i], nu_mm2_s);
+		z += term;
+		*dz -= low_terms[i].q * term;
+	}
+	return z;
+}
+
 fl_status fl_physics_d341_z(double nu_m2_s, double *z, fl_error *err) {
 	double nu = nu_m2_s / m2_per_mm2;
 	/* The conversion may cost the last digit of 0.21 itself. */
@@ -65,12 +77,12 @@ static double nu_of_z(double z) {
 	double low = lowest_nu_mm2_s, high = z; /* Z(nu) > nu, so the root is below z */
 	double nu = fmax(lowest_nu_mm2_s, z - 0.7);
 	for (int i = 0; i < 200; i++) {
-		double excess = z_of(nu) - z;
+		double slope, excess = z_with_slope(nu, &slope) - z;
 		if (excess > 0.0)
 			high = nu;
 		else
 			low = nu;
-		double next = nu - excess / dz_of(nu);
+		double next = nu - excess / slope;
 		if (!(next >= low && next <= high))
 			next = low + (high - low) / 2.0;
 		if (fabs(next - nu) <= DBL_EPSILON * nu)
