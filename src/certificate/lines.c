@@ -25,8 +25,11 @@ static void add_line(fl_breaker *breaker, const char *start, const char *end) {
 	breaker->lines[breaker->count++] = (fl_line_of_text){start, (size_t)(end - start)};
 }
 
-static bool fits(const fl_breaker *breaker, const char *start, const char *end) {
-	double width = fl_press_width(breaker->press, breaker->weight, breaker->size, start, (size_t)(end - start));
+static double width_of(const fl_breaker *breaker, const char *start, const char *end) {
+	return fl_press_width(breaker->press, breaker->weight, breaker->size, start, (size_t)(end - start));
+}
+
+static bool has_room(const fl_breaker *breaker, double width) {
 	double room = breaker->width - (breaker->count == 0 ? breaker->indent : 0);
 	return width <= room + 0.01;
 }
@@ -37,7 +40,7 @@ static const char *split_word(const fl_breaker *breaker, const char *start, cons
 	fl_utf8_next(&last);
 	for (const char *next = last; next < end;) {
 		fl_utf8_next(&next);
-		if (!fits(breaker, start, next))
+		if (!has_room(breaker, width_of(breaker, start, next)))
 			break;
 		last = next;
 	}
@@ -47,6 +50,7 @@ static const char *split_word(const fl_breaker *breaker, const char *start, cons
 /* Breaks one paragraph, start to end, without newlines. */
 static void break_paragraph(fl_breaker *breaker, const char *start, const char *end) {
 	const char *line = start, *good = start;
+	double set = 0; /* width from line to good: a word is measured once, not with all before it */
 	while (good < end && breaker->press->status == FL_OK) {
 		const char *word = good;
 		while (word < end && *word == ' ')
@@ -54,10 +58,13 @@ static void break_paragraph(fl_breaker *breaker, const char *start, const char *
 		const char *stop = word;
 		while (stop < end && *stop != ' ')
 			stop++;
-		if (fits(breaker, line, stop)) {
+		double more = width_of(breaker, good, stop);
+		if (has_room(breaker, set + more)) {
 			good = stop;
+			set += more;
 			continue;
 		}
+		set = 0;
 		if (good > line) { /* the word goes to the next line */
 			add_line(breaker, line, good);
 			line = good = word;
