@@ -12,6 +12,9 @@
 
 struct fl_node; /* foundleft/document.h */
 
+/* Bounds that a template may not pass. */
+enum { FL_MOST_POINTS = 50, FL_MOST_CYCLES = 20 };
+
 typedef enum fl_medium {
 	FL_MEDIUM_OIL,     /* reference oils flow through the capillary */
 	FL_MEDIUM_PRESSURE /* a differential pressure from a pressure standard is injected into the transmitter alone */

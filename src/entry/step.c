@@ -128,32 +128,40 @@ static bool place_of(const fl_procedure *p, int index, fl_pass *pass, int *point
 	return true;
 }
 
-/* Live readings at the step's place; the number that the next one gets goes to step->number. */
-static int count_live(const fl_session *s, fl_step *step) {
-	int live = 0;
-	step->number = 1;
+/* What each place of a run has, taken from the readings in one pass. */
+typedef struct place_counts {
+	short live[FL_MOST_CYCLES][2][FL_MOST_POINTS + 1]; /* readings that are neither struck nor undone */
+	short last[FL_MOST_CYCLES][2][FL_MOST_POINTS + 1]; /* highest number given */
+} place_counts;
+
+static void count_places(const fl_session *s, fl_run_kind run, place_counts *counts) {
+	*counts = (place_counts){0};
 	for (size_t i = 0; i < s->reading_count; i++) {
 		const fl_reading *r = &s->readings[i];
-		if (r->watched || !fl_entry_at_place(r, step))
+		bool on_plan = r->cycle >= 1 && r->cycle <= FL_MOST_CYCLES && r->point >= -1 && r->point < FL_MOST_POINTS;
+		if (r->watched || r->undone || r->run != run || !on_plan)
 			continue;
-		live += !r->struck;
-		if (r->number >= step->number)
-			step->number = r->number + 1;
+		short *last = &counts->last[r->cycle - 1][r->pass][r->point + 1];
+		counts->live[r->cycle - 1][r->pass][r->point + 1] += !r->struck;
+		if (r->number > *last)
+			*last = (short)r->number;
 	}
-	return live;
 }
 
 static bool reading_step(const fl_session *s, const fl_procedure *p, fl_run_kind run, fl_step *step) {
 	fl_step found = {.kind = FL_STEP_READING, .run = run}, at = found;
+	place_counts counts;
 	bool open = false;
 	int total = 0, done = 0;
+	count_places(s, run, &counts);
 	for (int cycle = 1; cycle <= p->cycles; cycle++)
 		for (int index = 0; place_of(p, index, &at.pass, &at.point); index++) {
 			at.cycle = cycle;
-			int live = count_live(s, &at);
+			int live = counts.live[cycle - 1][at.pass][at.point + 1];
 			total += p->readings;
 			done += live < p->readings ? live : p->readings;
 			if (!open && live < p->readings) {
+				at.number = counts.last[cycle - 1][at.pass][at.point + 1] + 1;
 				found = at;
 				open = true;
 			}

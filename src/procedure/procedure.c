@@ -12,7 +12,7 @@
 
 #include "read.h"
 
-enum { MAX_POINTS = 50, MAX_CYCLES = 20, MAX_READINGS = 50 };
+enum { MAX_POINTS = FL_MOST_POINTS, MAX_CYCLES = FL_MOST_CYCLES, MAX_READINGS = 50 };
 
 static const char *const fields[] = {
     "id",
