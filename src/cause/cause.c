@@ -120,6 +120,7 @@ static fl_status give_rows(fl_search *s, fl_error *err) {
 static fl_status search(fl_search *s, fl_error *err) {
 	TRY(fl_cause_model_begin(s->instrument, &s->model, err));
 	s->model.memo = s->memo;
+	s->model.flows = s->flows;
 	fl_cause_saturated(s);
 	TRY(fl_cause_take_rows(s, err));
 	if (s->reading_rows < 2) {

@@ -54,6 +54,16 @@ typedef struct fl_oil_memo {
 	fl_oil_state state;
 } fl_oil_memo;
 
+/* The flow's pressure last found for a row: most faults do not touch the flow, and a search asks for the same ones
+ * again for each of them. By all that it depends on, exactly. */
+enum { FL_FLOW_PLACES = 64, FL_FLOW_FAULTS = 8 };
+typedef struct fl_flow_memo {
+	const fl_oil *oil, *before;
+	double temp_c;
+	double amounts[FL_FLOW_FAULTS];
+	double share;
+} fl_flow_memo;
+
 /* The instrument, brought to proportions of its full scale. */
 typedef struct fl_cause_model {
 	const fl_instrument *instrument;
@@ -62,6 +72,7 @@ typedef struct fl_cause_model {
 	double rho_full;                   /* density at full scale, for its kinetic term */
 	double dp_full_pa;                 /* of the sound instrument, by its geometry; 1 without geometry */
 	fl_oil_memo *memo;                 /* [FL_MEMO_PLACES]; NULL for none */
+	fl_flow_memo *flows;               /* [FL_FLOW_PLACES]; NULL: none */
 	const fl_setting_of_row *thickest; /* the row that COUPLING and LIMIT are measured at; NULL if none */
 } fl_cause_model;
 
@@ -125,6 +136,7 @@ typedef struct fl_search {
 	fl_cause_extra extra;
 	fl_cause_model model;
 	fl_oil_memo memo[FL_MEMO_PLACES];
+	fl_flow_memo flows[FL_FLOW_PLACES];
 	fl_row_data rows[FL_CAUSE_ROWS];
 	size_t row_count, reading_rows;      /* extra rows stand behind those of the readings */
 	double *V;                           /* covariance of the rows' values, row_count squared */

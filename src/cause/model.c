@@ -167,12 +167,34 @@ static double dial_shift(const fl_cause_model *m, const fl_faults *faults, doubl
 	return equivalent * (1.0 / (1.0 + faults->amount[FL_FAULT_DENSITY]) - 1.0);
 }
 
+/* The share of full-scale pressure that the row's oil gives with these faults. */
+static fl_status flow_share(const fl_cause_model *m, const fl_setting_of_row *row, const fl_faults *faults,
+                            double *share, fl_error *err) {
+	static const fl_fault touching[FL_FLOW_FAULTS] = {FL_FAULT_DEPOSIT,     FL_FAULT_SLIP,      FL_FAULT_SPEED,
+	                                                  FL_FAULT_AIR,         FL_FAULT_PARTICLE,  FL_FAULT_KINETIC,
+	                                                  FL_FAULT_TEMPERATURE, FL_FAULT_CARRY_OVER};
+	fl_flow_memo now = {.oil = row->oil, .before = row->before, .temp_c = row->temp_c};
+	for (int i = 0; i < FL_FLOW_FAULTS; i++)
+		now.amounts[i] = faults->amount[touching[i]];
+	fl_flow_memo *memo = m->flows ? &m->flows[place_in_memo(row->oil, row->temp_c) % FL_FLOW_PLACES] : NULL;
+	if (memo && memo->oil == now.oil && memo->before == now.before && memo->temp_c == now.temp_c &&
+	    memcmp(memo->amounts, now.amounts, sizeof now.amounts) == 0) {
+		*share = memo->share;
+		return FL_OK;
+	}
+	oil_now oil;
+	TRY(oil_in_capillary(m, row, faults, &oil, err));
+	TRY(pressure(m, faults, oil, share, err));
+	now.share = *share;
+	if (memo)
+		*memo = now;
+	return FL_OK;
+}
+
 static fl_status flowing_output(const fl_cause_model *m, const fl_setting_of_row *row, const fl_faults *faults,
                                 double *y, fl_error *err) {
-	oil_now oil;
 	double share;
-	TRY(oil_in_capillary(m, row, faults, &oil, err));
-	TRY(pressure(m, faults, oil, &share, err));
+	TRY(flow_share(m, row, faults, &share, err));
 	double out = output_of(m, share) + dial_shift(m, faults, row->x);
 	if (row->from_elsewhere)
 		out -= faults->amount[FL_FAULT_LAG] * (row->x - row->x_before);
