@@ -130,6 +130,10 @@ fl_status fl_place_files(const char *folder, const char *suffix, fl_arena *arena
                          fl_error *err) FL_MUST_USE;
 /* All stock files of the stock folder; bench.yaml, which says who issues, is none of them. */
 fl_status fl_place_stock(const fl_cli *cli, fl_stock *stock, fl_error *err) FL_MUST_USE;
+/* Name and address of who issues: from the options, else from bench.yaml of the stock folder (arena memory). A file
+ * without one of them is an error where it is `required`; no file leaves what the options do not say NULL. */
+fl_status fl_place_issuer(const fl_cli *cli, fl_arena *arena, bool required, const char **issuer, const char **address,
+                          fl_error *err) FL_MUST_USE;
 /* Each procedure there is, the bench's own first; a template that does not load is named on standard error. */
 typedef fl_status (*fl_procedure_visitor)(void *context, const fl_procedure *procedure, fl_error *err);
 fl_status fl_place_each_procedure(const fl_cli *cli, fl_procedure_visitor visit, void *context,

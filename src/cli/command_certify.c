@@ -5,7 +5,6 @@
 
 #include "book.h"
 #include "derive.h"
-#include "foundleft/document.h"
 #include "signing.h"
 
 #define CERTIFICATE_MOST ((size_t)256 << 20)
@@ -19,33 +18,6 @@ typedef struct fl_order {
 	char day[FL_DAY_SIZE];
 	bool day_given;
 } fl_order;
-
-/* Name and address of the issuer from bench.yaml, unless the options say them. */
-static fl_status issuer_of(const fl_cli *cli, fl_arena *arena, fl_session_issue *issue, fl_error *err) {
-	static const char *const KNOWN[] = {"issuer", "address", NULL};
-	char path[FL_PATH_SIZE], *text;
-	size_t length;
-	const fl_node *root;
-	fl_error local = {0};
-	issue->issuer = cli->values[FL_OPT_ISSUER];
-	issue->address = cli->values[FL_OPT_ISSUER_ADDRESS];
-	fl_status status = fl_place_join(path, cli->stock, "bench.yaml", err);
-	if (status < 0)
-		return status;
-	status = fl_file_read(cli->io, path, 1 << 20, arena, &text, &length, &local);
-	if (status == FL_E_NOT_FOUND)
-		return FL_OK;
-	if (status < 0)
-		return fl_fail(err, status, "%s", local.message);
-	status = fl_document_parse(arena, text, path, &root, err);
-	if (status >= 0)
-		status = fl_node_only(root, KNOWN, err);
-	if (status >= 0 && issue->issuer == NULL)
-		status = fl_node_text(root, "issuer", true, &issue->issuer, err);
-	if (status >= 0 && issue->address == NULL)
-		status = fl_node_text(root, "address", true, &issue->address, err);
-	return status;
-}
 
 /* "folder/2026-04-14-VT-1.flj" -> "2026-04-14-VT-1" */
 static char *stem_of(fl_arena *arena, const char *path) {
@@ -101,7 +73,7 @@ static fl_status read_order(const fl_cli *cli, const fl_case *one, fl_order *ord
 	if (status >= 0)
 		status = day_of(cli, one, order, err);
 	if (status >= 0)
-		status = issuer_of(cli, &order->arena, &order->entry, err);
+		status = fl_place_issuer(cli, &order->arena, true, &order->entry.issuer, &order->entry.address, err);
 	return status;
 }
 

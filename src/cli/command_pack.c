@@ -6,7 +6,6 @@
 
 #include "book.h"
 #include "derive.h"
-#include "foundleft/document.h"
 #include "history.h"
 #include "shelves.h"
 
@@ -21,36 +20,11 @@ typedef struct fl_letterhead {
 	fl_day day;
 } fl_letterhead;
 
-static fl_status read_bench(const fl_cli *cli, fl_letterhead *head, fl_error *err) {
-	static const char *const KNOWN[] = {"issuer", "address", NULL};
-	char path[FL_PATH_SIZE], *text;
-	size_t length;
-	const fl_node *root;
-	fl_error local = {0};
-	fl_status status = fl_place_join(path, cli->stock, "bench.yaml", err);
-	if (status >= 0)
-		status = fl_file_read(cli->io, path, 1 << 20, &head->arena, &text, &length, &local);
-	if (status == FL_E_NOT_FOUND)
-		return FL_OK;
-	if (status < 0)
-		return fl_fail(err, status, "%s", local.message);
-	status = fl_document_parse(&head->arena, text, path, &root, err);
-	if (status >= 0)
-		status = fl_node_only(root, KNOWN, err);
-	if (status >= 0)
-		status = fl_node_text(root, "issuer", false, &head->issuer, err);
-	return status < 0 ? status : fl_node_text(root, "address", false, &head->address, err);
-}
-
 static fl_status letterhead(const fl_cli *cli, fl_letterhead *head, fl_error *err) {
 	*head = (fl_letterhead){.day = fl_day_of(fl_cli_now())};
-	fl_status status = read_bench(cli, head, err);
+	fl_status status = fl_place_issuer(cli, &head->arena, false, &head->issuer, &head->address, err);
 	if (status >= 0 && cli->values[FL_OPT_DATE])
 		status = fl_day_parse(cli->values[FL_OPT_DATE], &head->day, err);
-	if (cli->values[FL_OPT_ISSUER])
-		head->issuer = cli->values[FL_OPT_ISSUER];
-	if (cli->values[FL_OPT_ISSUER_ADDRESS])
-		head->address = cli->values[FL_OPT_ISSUER_ADDRESS];
 	return status;
 }
 

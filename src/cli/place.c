@@ -7,6 +7,7 @@
 #include <unistd.h>
 
 #include "cli.h"
+#include "foundleft/document.h"
 
 fl_status fl_place_join(char path[FL_PATH_SIZE], const char *folder, const char *name, fl_error *err) {
 	int length = snprintf(path, FL_PATH_SIZE, "%s/%s", folder, name);
@@ -225,5 +226,32 @@ fl_status fl_place_stock(const fl_cli *cli, fl_stock *stock, fl_error *err) {
 		if (strcmp(strrchr(paths[i], '/') + 1, "bench.yaml") != 0)
 			status = fl_stock_load(stock, cli->io, paths[i], err);
 	fl_arena_free(&arena);
+	return status;
+}
+
+fl_status fl_place_issuer(const fl_cli *cli, fl_arena *arena, bool required, const char **issuer, const char **address,
+                          fl_error *err) {
+	static const char *const KNOWN[] = {"issuer", "address", NULL};
+	char path[FL_PATH_SIZE], *text;
+	size_t length;
+	const fl_node *root;
+	fl_error local = {0};
+	*issuer = cli->values[FL_OPT_ISSUER];
+	*address = cli->values[FL_OPT_ISSUER_ADDRESS];
+	fl_status status = fl_place_join(path, cli->stock, "bench.yaml", err);
+	if (status < 0)
+		return status;
+	status = fl_file_read(cli->io, path, 1 << 20, arena, &text, &length, &local);
+	if (status == FL_E_NOT_FOUND)
+		return FL_OK;
+	if (status < 0)
+		return fl_fail(err, status, "%s", local.message);
+	status = fl_document_parse(arena, text, path, &root, err);
+	if (status >= 0)
+		status = fl_node_only(root, KNOWN, err);
+	if (status >= 0 && *issuer == NULL)
+		status = fl_node_text(root, "issuer", required, issuer, err);
+	if (status >= 0 && *address == NULL)
+		status = fl_node_text(root, "address", required, address, err);
 	return status;
 }
